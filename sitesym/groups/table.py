@@ -1,0 +1,146 @@
+"""Character tables: irreps with labels, exact characters and unitary matrices, verified on construction."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from sitesym.arrays import ComplexArray, FloatArray, IntArray, frozen
+from sitesym.groups.abstract import AbstractGroup
+from sitesym.groups.characters import irreducible_characters
+from sitesym.groups.irreps import irrep_matrices
+from sitesym.groups.labels import LabelFrame, label_frame, letter_and_number, pair_member, parity_mark
+from sitesym.groups.orientation import standard_rotation
+from sitesym.groups.pointgroup import PointGroup
+from sitesym.groups.rootsum import RootSum, integer
+from sitesym.groups.verify import Checks, verified
+
+
+@dataclass(frozen=True, eq=False)
+class Irrep:
+    """One irreducible representation over the complex numbers.
+
+    ``characters`` holds one exact value a class, ``matrices`` one unitary (d, d) matrix an element, ``reality`` is
+    'real', 'complex' (its conjugate is another irrep) or 'quaternionic' (Frobenius and Schur 1906).
+    """
+
+    label: str
+    dimension: int
+    reality: str
+    characters: tuple[RootSum, ...]
+    matrices: ComplexArray
+
+    @property
+    def characters_numeric(self) -> ComplexArray:
+        """One complex number a class."""
+        return np.array([complex(value) for value in self.characters])
+
+
+@dataclass(frozen=True, eq=False)
+class JoinedIrrep:
+    """A physically irreducible representation: a real irrep, or a complex one together with its conjugate."""
+
+    label: str
+    dimension: int
+    members: tuple[int, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class CharacterTable:
+    """All irreps of a point group. ``rotation`` leads from the group's axes to those the labels refer to."""
+
+    group: PointGroup
+    rotation: FloatArray
+    irreps: tuple[Irrep, ...]
+    joined: tuple[JoinedIrrep, ...]
+    checks: Checks
+
+    def element_characters(self, index: int) -> ComplexArray:
+        """Character of one irrep for every element, shape (n,)."""
+        return self.irreps[index].characters_numeric[self.group.abstract.class_of]
+
+
+def character_table(group: PointGroup, rotation: FloatArray | None = None) -> CharacterTable:
+    """Character table of a point group, its irreps labelled in the standard orientation.
+
+    ``rotation`` (3, 3) leads to the standard orientation; where it is not given, `standard_rotation` finds one. The
+    matrices are written in that orientation. Raises SymmetryError if any check of the table fails.
+    """
+    matrix = standard_rotation(group) if rotation is None else np.asarray(rotation, dtype=np.float64)
+    oriented = group.rotated(matrix)
+    characters = _exact_characters(group.abstract)
+    labels = _labels(oriented, characters)
+    irreps = [
+        Irrep(label, row[0].as_integer() or 0, _reality(row, group.abstract), row, _matrices(oriented, row))
+        for label, row in zip(labels, characters, strict=True)
+    ]
+    irreps.sort(key=_place)
+    checks = verified(group.abstract, [(irrep.characters, irrep.matrices) for irrep in irreps])
+    return CharacterTable(group, frozen(matrix), tuple(irreps), _joined(irreps), checks)
+
+
+@lru_cache(maxsize=512)
+def _exact_characters(group: AbstractGroup) -> tuple[tuple[RootSum, ...], ...]:
+    return irreducible_characters(group)
+
+
+def _on_elements(row: tuple[RootSum, ...], class_of: IntArray) -> ComplexArray:
+    return np.array([complex(value) for value in row])[class_of]
+
+
+def _matrices(oriented: PointGroup, row: tuple[RootSum, ...]) -> ComplexArray:
+    return frozen(irrep_matrices(oriented, _on_elements(row, oriented.abstract.class_of)))
+
+
+def _reality(row: tuple[RootSum, ...], group: AbstractGroup) -> str:
+    """Frobenius-Schur indicator: the mean of chi(g^2) is 1, 0 or -1."""
+    squares = group.class_of[group.powers(2)]
+    total = integer(0, row[0].n)
+    for c in squares:
+        total = total + row[int(c)]
+    indicator = total.as_integer()
+    return {group.order: "real", 0: "complex", -group.order: "quaternionic"}[indicator if indicator is not None else 0]
+
+
+def _labels(oriented: PointGroup, characters: tuple[tuple[RootSum, ...], ...]) -> list[str]:
+    """One label an irrep; numbers that tell nothing apart (a single E of its parity) are left out."""
+    frame = label_frame(oriented)
+    on_elements = [_on_elements(row, oriented.abstract.class_of) for row in characters]
+    parts = [_parts(frame, character) for character in on_elements]
+    numbers_of_e: dict[str, set[int]] = {}
+    for letter, number, mark, _ in parts:
+        if letter == "E":
+            numbers_of_e.setdefault(mark, set()).add(number)
+    return [
+        f"{pair}{letter}{'' if letter == 'E' and len(numbers_of_e[mark]) == 1 else number or ''}{mark}"
+        for letter, number, mark, pair in parts
+    ]
+
+
+def _parts(frame: LabelFrame, character: ComplexArray) -> tuple[str, int, str, str]:
+    is_complex = bool(np.abs(character.imag).max() > 1e-9)
+    letter, number = letter_and_number(frame, character, is_complex)
+    return letter, number, parity_mark(frame, character), pair_member(frame, character) if is_complex else ""
+
+
+def _place(irrep: Irrep) -> tuple[bool, int, str]:
+    """Order in the table: g and one prime before u and two primes, then by dimension, then by label."""
+    plain = irrep.label.lstrip("12")
+    return irrep.label.endswith(("u", "''")), "ABET".find(plain[0]), plain + irrep.label
+
+
+def _joined(irreps: list[Irrep]) -> tuple[JoinedIrrep, ...]:
+    """Complex irreps joined with their conjugates, in the order of the table."""
+    joined: list[JoinedIrrep] = []
+    for index, irrep in enumerate(irreps):
+        partner = next(
+            k for k, other in enumerate(irreps)
+            if all(a.equals(b.conjugate()) for a, b in zip(other.characters, irrep.characters, strict=True))
+        )
+        if partner == index:
+            joined.append(JoinedIrrep(irrep.label, irrep.dimension, (index,)))
+        elif partner > index:
+            joined.append(JoinedIrrep(irrep.label[1:], 2 * irrep.dimension, (index, partner)))
+    return tuple(joined)
