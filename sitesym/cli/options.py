@@ -1,0 +1,72 @@
+"""Options that subcommands share, and how a document leaves the program."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+from typing import Any, TypeVar
+
+import click
+
+from sitesym.errors import UsageError
+from sitesym.reports.markup import Document
+from sitesym.reports.render import FORMATS, render
+from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
+
+_Command = TypeVar("_Command", bound=Callable[..., Any])
+
+
+def output_options(command: _Command) -> _Command:
+    """``--format`` and ``--output``."""
+    output = click.option("--output", metavar="PATH", help="Write to this file and not to the terminal.")
+    format_choice = click.option(
+        "--format",
+        "format_name",
+        type=click.Choice(FORMATS),
+        default="text",
+        show_default=True,
+        help="Output format.",
+    )
+    return format_choice(output(command))
+
+
+tolerance_option = click.option(
+    "--tolerance",
+    "tolerance_angstrom",
+    type=click.FloatRange(min=0, min_open=True),
+    default=DEFAULT_TOLERANCE_ANGSTROM,
+    show_default=True,
+    metavar="ANGSTROM",
+    help="Distance within which atoms count as related by symmetry.",
+)
+
+
+def emit(document: Document, format_name: str, output: str | None) -> None:
+    """Write the document to standard output or to a file.
+
+    Raises
+    ------
+    UsageError
+        The file cannot be written.
+    """
+    text = render(document, format_name)
+    if output is None:
+        click.echo(text, nl=False)
+        return
+    try:
+        Path(output).write_text(text, encoding="utf-8")
+    except OSError as error:
+        reason = error.strerror or str(error)
+        raise UsageError(
+            "The output cannot be written.", reason, "", "Give --output a path that can be written.", output
+        ) from error
+
+
+def split_names(values: tuple[str, ...]) -> list[str]:
+    """Names from a repeated option whose values may be lists separated by commas; doubles are dropped.
+
+    >>> split_names(("pyroelectric, seebeck", "seebeck"))
+    ['pyroelectric', 'seebeck']
+    """
+    names = (name.strip() for value in values for name in value.split(","))
+    return list(dict.fromkeys(name for name in names if name))

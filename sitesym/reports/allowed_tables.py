@@ -1,0 +1,146 @@
+"""An `allowed` document as CSV, Markdown and LaTeX."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from sitesym.reports.component_matrix import (
+    ComponentMatrix,
+    Property,
+    component_matrix,
+    kind_text,
+    relations,
+)
+from sitesym.reports.expressions import (
+    Namer,
+    combination,
+    latex_combination,
+    latex_namer,
+    text_namer,
+)
+from sitesym.reports.headings import header_lines
+from sitesym.reports.markup import (
+    Document,
+    csv_text,
+    latex_escape,
+    latex_table,
+    markdown_escape,
+    markdown_table,
+)
+from sitesym.reports.provenance import CAUTION, versions_line
+
+CSV_COLUMNS = (
+    "group", "axes", "property", "component", "name", "status", "expression", "exact", "unit",
+    "index_symmetry",
+)  # fmt: skip
+
+
+def allowed_csv(document: Document) -> str:
+    """One row a component, zero ones included; ``status`` is independent, dependent or zero."""
+    return csv_text(CSV_COLUMNS, _csv_rows(document))
+
+
+def _csv_rows(document: Document) -> Iterator[tuple[object, ...]]:
+    group, axes = document["group"]["oriented"], document["axes"]["name"]
+    for entry in document["properties"]:
+        name = text_namer(entry["symbol"])
+        conventions = (entry["exact"], entry["unit"], entry["index_symmetry"])
+        for key in entry["keys"]:
+            terms = entry["components"].get(key, {})
+            expression = combination(terms, name)
+            yield group, axes, entry["name"], key, name(key), _status(entry, key), expression, *conventions
+
+
+def _status(entry: Property, key: str) -> str:
+    if key in entry["independent"]:
+        return "independent"
+    return "dependent" if key in entry["components"] else "zero"
+
+
+def allowed_markdown(document: Document) -> str:
+    """Conventions as a list, each property as a table of its matrix and a line of equations."""
+    lines = ["# Symmetry-allowed components", ""]
+    for label, text in header_lines(document):
+        lines.append(f"- **{label}** {markdown_escape('; '.join(text.splitlines()))}")
+    for entry in document["properties"]:
+        lines.extend(
+            ["", f"## {entry['name']} ({markdown_escape(entry['symbol'])})", "", *_markdown_property(entry)]
+        )
+    lines.extend(["", f"Versions: {versions_line(document['versions'])}", "", f"> {CAUTION}"])
+    return "\n".join(lines) + "\n"
+
+
+def _markdown_property(entry: Property) -> Iterator[str]:
+    name = text_namer(entry["symbol"])
+    yield markdown_escape(_summary(entry))
+    yield ""
+    if not entry["components"]:
+        return
+    matrix = component_matrix(entry)
+    if matrix is not None:
+        head = ["", *(f"{digit} {axes}" for digit, axes in matrix.columns)] if matrix.columns else ["", ""]
+        rows = [
+            [f"{digit} {axes}", *(combination(entry["components"].get(key, {}), name) for key in keys)]
+            for (digit, axes), keys in zip(matrix.rows, matrix.keys, strict=True)
+        ]
+        yield markdown_table(head, rows)
+        yield ""
+    equations = relations(entry, name)
+    if equations:
+        yield f"Relations: {'; '.join(f'`{equation}`' for equation in equations)}"
+
+
+def _summary(entry: Property) -> str:
+    """The facts that stand beside the matrix, in one sentence each."""
+    exact = "exact" if entry["exact"] else "floating-point coefficients, not exact"
+    name = text_namer(entry["symbol"])
+    independent = f": {', '.join(map(name, entry['independent']))} ({exact})" if entry["components"] else ""
+    facts = [
+        f"{entry['independent_count']} of {len(entry['keys'])} components independent{independent}.",
+        f"{kind_text(entry)}.",
+    ]
+    labels = (("Indices", "indices"), ("Order", "order"), ("Factors", "factor_rule"))
+    facts.extend(f"{label}: {entry[field]}." for label, field in labels if entry[field])
+    return " ".join(facts)
+
+
+def allowed_latex(document: Document) -> str:
+    """A fragment for a paper: conventions as a table, each property as a matrix (amsmath)."""
+    lines = [
+        "% needs amsmath",
+        latex_table(["", ""], [(label, _one_line(text)) for label, text in _head(document)]),
+    ]
+    for entry in document["properties"]:
+        lines.extend(["", rf"\paragraph{{{latex_escape(entry['name'])}}} {latex_escape(_summary(entry))}"])
+        lines.extend(_latex_property(entry))
+    lines.extend(["", latex_escape(CAUTION)])
+    return "\n".join(lines) + "\n"
+
+
+def _head(document: Document) -> Iterator[tuple[str, str]]:
+    yield from header_lines(document)
+    yield "versions", versions_line(document["versions"])
+
+
+def _one_line(text: str) -> str:
+    return "; ".join(text.splitlines())
+
+
+def _latex_property(entry: Property) -> Iterator[str]:
+    if not entry["components"]:
+        return
+    name = latex_namer(entry["symbol"])
+    matrix = component_matrix(entry)
+    if matrix is not None:
+        yield from ("\\[", _pmatrix(entry, matrix, name), "\\]")
+    equations = relations(entry, name, latex_combination)
+    if equations:
+        yield "$" + "$, $".join(equations) + "$."
+
+
+def _pmatrix(entry: Property, matrix: ComponentMatrix, name: Namer) -> str:
+    rows = [
+        " & ".join(latex_combination(entry["components"].get(key, {}), name) for key in row)
+        for row in matrix.keys
+    ]
+    return "\\begin{pmatrix}\n" + " \\\\\n".join(rows) + "\n\\end{pmatrix}"

@@ -1,0 +1,156 @@
+"""An `irreps` document as text, CSV, Markdown and LaTeX."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping, Sequence
+from typing import Any
+
+from sitesym.reports.headings import footer, header, header_lines
+from sitesym.reports.layout import labelled, table
+from sitesym.reports.markup import (
+    Document,
+    csv_text,
+    latex_escape,
+    latex_table,
+    markdown_escape,
+    markdown_table,
+)
+from sitesym.reports.provenance import CAUTION, versions_line
+
+CSV_COLUMNS = (
+    "group", "irrep", "dimension", "reality", "class", "class_size", "character", "real_part",
+    "imaginary_part",
+)  # fmt: skip
+
+
+def irreps_text(document: Document, matrices: bool = False) -> str:
+    """Character table, what transforms as which irrep, the checks made; matrices on request."""
+    head, rows = _table_cells(document)
+    sizes = ["", "", *(str(entry["size"]) for entry in document["classes"]), "", ""]
+    drawn = table(None, [head, sizes, *rows], right=range(1, len(head) - 2), indent=2)
+    blocks = [
+        header(document),
+        f"characters (columns: classes; second line: elements in the class)\n\n{drawn}",
+    ]
+    blocks.extend(_notes(document))
+    blocks.append("elements\n\n" + table(("number", "name", "class"), _element_rows(document), indent=2))
+    if matrices:
+        blocks.append("matrices (unitary; one for each element)")
+        blocks.extend(_matrix_blocks(document))
+    blocks.append(footer(document))
+    return "\n\n".join(blocks) + "\n"
+
+
+def irreps_csv(document: Document) -> str:
+    """One row for each irrep and class."""
+    return csv_text(CSV_COLUMNS, _csv_rows(document))
+
+
+def irreps_markdown(document: Document) -> str:
+    """The character table and the notes."""
+    lines = ["# Irreducible representations", ""]
+    for label, text in header_lines(document):
+        lines.append(f"- **{label}** {markdown_escape('; '.join(text.splitlines()))}")
+    lines.extend(["", markdown_table(*_sized_table(document)), ""])
+    lines.extend(f"{markdown_escape(note)}\n" for note in _notes(document))
+    lines.extend([f"Versions: {versions_line(document['versions'])}", "", f"> {CAUTION}"])
+    return "\n".join(lines) + "\n"
+
+
+def irreps_latex(document: Document) -> str:
+    """The character table as a tabular, and the notes."""
+    lines = [
+        latex_table(
+            ("", ""), [(label, "; ".join(text.splitlines())) for label, text in header_lines(document)]
+        )
+    ]
+    lines.extend(["", latex_table(*_sized_table(document)), ""])
+    lines.extend(f"{latex_escape(note)}\n" for note in _notes(document))
+    lines.append(latex_escape(CAUTION))
+    return "\n".join(lines) + "\n"
+
+
+def _table_cells(document: Document) -> tuple[list[str], list[list[str]]]:
+    head = ["", "dim", *(entry["label"] for entry in document["classes"]), "type", "transforms like"]
+    rows = [
+        [
+            irrep["label"],
+            str(irrep["dimension"]),
+            *irrep["characters"],
+            irrep["reality"],
+            ", ".join(irrep["components"]),
+        ]
+        for irrep in document["irreps"]
+    ]
+    return head, rows
+
+
+def _sized_table(document: Document) -> tuple[list[str], list[list[str]]]:
+    """The same with the size of each class inside the head, for formats with a single head line."""
+    head, rows = _table_cells(document)
+    sized = [f"{entry['label']} ({entry['size']})" for entry in document["classes"]]
+    return [*head[:2], *sized, *head[-2:]], rows
+
+
+def _csv_rows(document: Document) -> Iterator[tuple[object, ...]]:
+    group = document["group"]["oriented"]
+    for irrep in document["irreps"]:
+        common = (group, irrep["label"], irrep["dimension"], irrep["reality"])
+        columns = zip(document["classes"], irrep["characters"], irrep["characters_numeric"], strict=True)
+        for entry, exact, (real, imaginary) in columns:
+            yield *common, entry["label"], entry["size"], exact, real, imaginary
+
+
+def _notes(document: Document) -> Iterator[str]:
+    pairs = document.get("joined")
+    if pairs:
+        yield labelled(
+            "joined", "; ".join(f"{pair['label']} = {' + '.join(pair['members'])}" for pair in pairs)
+        )
+    reduction = document.get("reduction")
+    if reduction:
+        yield labelled("reduction", f"{reduction['property']} = {_sum(reduction['multiplicity'])}")
+    yield labelled(
+        "checks", "; ".join(_check_text(name, value) for name, value in document["checks"].items())
+    )
+
+
+def _sum(multiplicity: Mapping[str, int]) -> str:
+    """A direct sum such as "2 A1 + E"; irreps that do not occur are left out."""
+    terms = (label if times == 1 else f"{times} {label}" for label, times in multiplicity.items() if times)
+    return " + ".join(terms) or "0"
+
+
+def _check_text(name: str, value: object) -> str:
+    words = name.replace("_", " ")
+    if isinstance(value, bool):
+        return f"{words}: {'holds' if value else 'FAILS'}"
+    return f"{words}: {value:.1e}" if isinstance(value, float) else f"{words}: {value}"
+
+
+def _element_rows(document: Document) -> Iterator[tuple[object, ...]]:
+    class_of = {index: entry["label"] for entry in document["classes"] for index in entry["elements"]}
+    for number, element in enumerate(document["elements"]):
+        yield number, element["name"], class_of[number]
+
+
+def _matrix_blocks(document: Document) -> Iterator[str]:
+    for irrep in document["irreps"]:
+        lines = [f"{irrep['label']}"]
+        for element, matrix in zip(document["elements"], irrep["matrices"], strict=True):
+            rows = [[_complex_text(entry) for entry in row] for row in matrix]
+            drawn = table(None, rows, right=range(len(rows)), indent=4)
+            lines.append(f"  {element['name']}\n{drawn}")
+        yield "\n".join(lines)
+
+
+def _complex_text(entry: Sequence[float] | Any, digits: int = 6) -> str:
+    """A complex number given as [real, imaginary], short where it is real.
+
+    >>> _complex_text([1.0, 0.0]), _complex_text([-0.5, 0.8660254])
+    ('1', '-0.5+0.866025i')
+    """
+    real, imaginary = (round(float(part), digits) + 0.0 for part in entry)
+    if imaginary == 0:
+        return f"{real:g}"
+    return f"{real:g}{imaginary:+g}i" if real else f"{imaginary:g}i"

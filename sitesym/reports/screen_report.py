@@ -1,0 +1,107 @@
+"""A `screen` document as text, CSV, Markdown and LaTeX."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterator
+
+from sitesym.reports.layout import cell_text, labelled, paragraph, table
+from sitesym.reports.markup import Document, csv_text, latex_escape, latex_table, markdown_table
+from sitesym.reports.provenance import CAUTION, versions_line
+
+#: What a person sees of a row: head and column. Every column is in CSV and JSON.
+_SHOWN = (
+    ("id", "id"),
+    ("formula", "formula"),
+    ("space group", "space_group"),
+    ("point group", "point_group"),
+    ("centric", "centrosymmetric"),
+    ("chiral", "chiral"),
+    ("polar", "polar"),
+    ("piezo", "piezoelectric"),
+    ("pyro", "pyroelectric"),
+    ("SHG", "second_harmonic"),
+    ("optical act.", "optical_activity"),
+    ("d", "count_piezoelectric_strain"),
+    ("eps", "count_permittivity"),
+    ("c", "count_elastic_stiffness"),
+)
+_HEAD = tuple(head for head, _ in _SHOWN)
+_RIGHT = (11, 12, 13)
+_VERDICTS = ("centrosymmetric", "chiral", "polar", "piezoelectric", "second_harmonic", "optical_activity")
+
+
+def screen_text(document: Document) -> str:
+    """The table of structures, the failures with their reasons, and the counts."""
+    rows = document["rows"]
+    blocks = [labelled("folder", document["folder"]), labelled("tolerance", _tolerance(document))]
+    blocks = ["\n".join(blocks)]
+    good = [row for row in rows if row["status"] == "ok"]
+    bad = [row for row in rows if row["status"] != "ok"]
+    if good:
+        blocks.append(table(_HEAD, ([row[column] for _, column in _SHOWN] for row in good), right=_RIGHT))
+        blocks.append(paragraph("Columns d, eps and c count the independent components of these tensors."))
+    if bad:
+        blocks.append(
+            "could not be read or settled\n\n" + table(("id", "code", "reason"), _failures(bad), indent=2)
+        )
+    blocks.append(labelled("summary", _summary(document)))
+    blocks.append(f"{labelled('versions', versions_line(document['versions']))}\n\n{paragraph(CAUTION)}")
+    return "\n\n".join(blocks) + "\n"
+
+
+def screen_csv(document: Document) -> str:
+    """Every column of every row.
+
+    Read it with the columns as text (in pandas: ``dtype=str, keep_default_na=False``): point groups may all be "-1",
+    and a formula may be "NaN".
+    """
+    columns = document["columns"]
+    return csv_text(columns, ([row[column] for column in columns] for row in document["rows"]))
+
+
+def screen_markdown(document: Document) -> str:
+    """The table a person sees, failures included, and the counts."""
+    lines = ["# Screening", "", _summary(document), f"Tolerance: {_tolerance(document)}.", ""]
+    head, rows = _with_status(document)
+    lines.extend([markdown_table(head, rows), "", f"Versions: {versions_line(document['versions'])}", ""])
+    return "\n".join([*lines, f"> {CAUTION}"]) + "\n"
+
+
+def screen_latex(document: Document) -> str:
+    """The same as a tabular."""
+    lines = [
+        latex_table(*_with_status(document)),
+        "",
+        latex_escape(_summary(document)),
+        "",
+        latex_escape(CAUTION),
+    ]
+    return "\n".join(lines) + "\n"
+
+
+def _with_status(document: Document) -> tuple[tuple[str, ...], list[list[object]]]:
+    rows = [
+        [*(row[column] for _, column in _SHOWN), row["error_code"] or row["status"]]
+        for row in document["rows"]
+    ]
+    return (*_HEAD, "status"), rows
+
+
+def _failures(rows: list[Document]) -> Iterator[tuple[str, str, str]]:
+    for row in rows:
+        yield row["id"], row["error_code"], cell_text(row["error_message"])
+
+
+def _tolerance(document: Document) -> str:
+    return f"{document['tolerance_angstrom']:g} angstrom"
+
+
+def _summary(document: Document) -> str:
+    rows = document["rows"]
+    statuses = Counter(row["status"] for row in rows)
+    verdicts = (
+        f"{column.replace('_', ' ')} {sum(bool(row[column]) for row in rows)}" for column in _VERDICTS
+    )
+    counted = ", ".join(f"{number} {status}" for status, number in sorted(statuses.items(), reverse=True))
+    return f"{len(rows)} structures ({counted}); {', '.join(verdicts)}"
