@@ -27,16 +27,21 @@ def labelled(label: str, text: str, width: int = TEXT_WIDTH, label_width: int = 
     axes       ieee
     """
     indent = " " * label_width
-    lines = [
-        textwrap.fill(line, width, initial_indent=indent, subsequent_indent=indent, break_on_hyphens=False)
-        for line in text.splitlines()
-    ]
+    lines = [paragraph(line, width, label_width) for line in text.splitlines()]
     return label.ljust(label_width) + "\n".join(lines).removeprefix(indent)
 
 
-def paragraph(text: str, width: int = TEXT_WIDTH) -> str:
-    """Wrapped prose."""
-    return textwrap.fill(text, width, break_on_hyphens=False)
+def paragraph(text: str, width: int = TEXT_WIDTH, indent: int = 0) -> str:
+    """Wrapped prose behind a left margin."""
+    margin = " " * indent
+    return textwrap.fill(
+        text,
+        width,
+        initial_indent=margin,
+        subsequent_indent=margin,
+        break_on_hyphens=False,
+        break_long_words=False,
+    )
 
 
 def joined(items: Iterable[str], gap: str = "    ", width: int = TEXT_WIDTH, indent: str = "  ") -> str:
@@ -68,7 +73,7 @@ def table(
     listed = [[str(cell) if head is None else cell_text(cell) for cell in row] for row in rows]
     columns = len(head) if head is not None else max((len(row) for row in listed), default=0)
     drawn = Table(
-        box=_UNDERLINED, show_header=head is not None, show_edge=False, pad_edge=False, padding=(0, 1)
+        box=_UNDERLINED, show_header=head is not None, show_edge=False, pad_edge=False, padding=(0, 1, 0, 0)
     )
     for position in range(columns):
         flush = "right" if right is not None and position in right else "left"

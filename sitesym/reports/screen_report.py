@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterator
 
 from sitesym.reports.layout import cell_text, labelled, paragraph, table
 from sitesym.reports.markup import Document, csv_text, latex_escape, latex_table, markdown_table
@@ -42,9 +41,7 @@ def screen_text(document: Document) -> str:
         blocks.append(table(_HEAD, ([row[column] for _, column in _SHOWN] for row in good), right=_RIGHT))
         blocks.append(paragraph("Columns d, eps and c count the independent components of these tensors."))
     if bad:
-        blocks.append(
-            "could not be read or settled\n\n" + table(("id", "code", "reason"), _failures(bad), indent=2)
-        )
+        blocks.append("\n".join(["could not be read or settled", *map(_failure, bad)]))
     blocks.append(labelled("summary", _summary(document)))
     blocks.append(f"{labelled('versions', versions_line(document['versions']))}\n\n{paragraph(CAUTION)}")
     return "\n\n".join(blocks) + "\n"
@@ -53,8 +50,8 @@ def screen_text(document: Document) -> str:
 def screen_csv(document: Document) -> str:
     """Every column of every row.
 
-    Read it with the columns as text (in pandas: ``dtype=str, keep_default_na=False``): point groups may all be "-1",
-    and a formula may be "NaN".
+    Read it with the columns as text (in pandas: ``dtype=str, keep_default_na=False``): point groups may all
+    be "-1", and a formula may be "NaN".
     """
     columns = document["columns"]
     return csv_text(columns, ([row[column] for column in columns] for row in document["rows"]))
@@ -88,9 +85,10 @@ def _with_status(document: Document) -> tuple[tuple[str, ...], list[list[object]
     return (*_HEAD, "status"), rows
 
 
-def _failures(rows: list[Document]) -> Iterator[tuple[str, str, str]]:
-    for row in rows:
-        yield row["id"], row["error_code"], cell_text(row["error_message"])
+def _failure(row: Document) -> str:
+    """Name and code of a failed structure, its reason indented below."""
+    reason = paragraph(cell_text(row["error_message"]), indent=4)
+    return f"  {cell_text(row['id'])}  {row['error_code']}\n{reason}"
 
 
 def _tolerance(document: Document) -> str:

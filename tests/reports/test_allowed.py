@@ -1,0 +1,134 @@
+"""Allowed forms on paper: matrices, equations and the statements beside them."""
+
+from __future__ import annotations
+
+import csv
+import io
+from typing import Any
+
+import pytest
+
+from sitesym.reports.component_matrix import component_matrix, relations
+from sitesym.reports.expressions import combination, latex_combination, latex_namer, text_namer
+from sitesym.reports.render import render
+
+Document = dict[str, Any]
+
+
+def matrix_rows(text: str, title: str, rows: int) -> list[list[str]]:
+    """Cells of the drawn matrix below a title, without the two heads of each row."""
+    lines = text.split(title)[1].splitlines()
+    start = next(index for index, line in enumerate(lines) if line.split() == list("123456"))
+    return [line.split(maxsplit=2)[2].split("  ") for line in lines[start + 1 : start + 1 + rows]]
+
+
+def test_a_matrix_shows_each_component_by_the_independent_one_it_equals(allowed: Document) -> None:
+    rows = matrix_rows(render(allowed, "text"), "piezoelectric-strain", 3)
+    cells = [[cell.strip() for cell in row if cell.strip()] for row in rows]
+    assert cells == [["d11", "-d11", ".", "d14", ".", "."], [".", ".", ".", ".", "-d14", "-2 d11"], ["."] * 6]
+
+
+def test_a_symmetric_matrix_repeats_the_upper_triangle_below(allowed: Document) -> None:
+    layout = component_matrix(allowed["properties"][1])
+    assert layout is not None
+    assert layout.keys[1][0] == "12"
+    assert layout.keys[5][3] == "46"
+
+
+def test_relations_chain_what_is_equal_and_write_the_rest_as_equations(allowed: Document) -> None:
+    piezoelectric, elastic = allowed["properties"]
+    assert relations(piezoelectric, text_namer("d")) == ["d11 = -d12", "d14 = -d25", "d26 = -2 d11"]
+    assert relations(elastic, text_namer("c")) == [
+        "c11 = c22 = c33",
+        "c12 = c13 = c23",
+        "c44 = (c11 - c12)/2",
+        "c55 = (c11 - c12)/2",
+        "c66 = (c11 - c12)/2",
+    ]
+
+
+def test_text_states_group_axes_order_factors_unit_exactness_and_caution(allowed: Document) -> None:
+    text = render(allowed, "text")
+    for statement in (
+        "31m (class 3m, C3v)",
+        "IEEE Std 176-1978",
+        "11 22 33 23 13 12",
+        "factor 2 in columns 4 to 6",
+        "pC/N",
+        "2 independent of 18 (exact)",
+        "first: field; second: stress",
+        "sitesym 0.0.0",
+    ):
+        assert statement in text
+    assert text.rstrip().endswith("licensed practice.")
+
+
+def test_a_forbidden_property_says_so(allowed: Document) -> None:
+    allowed["properties"][0] |= {"components": {}, "independent": [], "independent_count": 0}
+    assert "forbidden: all 18 components are zero" in render(allowed, "text")
+    assert "0 of 18 components independent" in render(allowed, "markdown")
+
+
+def test_floating_point_coefficients_are_announced(allowed: Document) -> None:
+    allowed["properties"][0]["exact"] = False
+    for format_name in ("text", "markdown", "latex"):
+        assert "floating-point coefficients, not exact" in render(allowed, format_name)
+
+
+def test_an_expression_too_long_for_a_cell_is_marked_and_given_below(allowed: Document) -> None:
+    entry = allowed["properties"][0]
+    entry["components"]["26"] = {"11": "-0.333333333333", "14": "0.577350269190"}
+    text = render(allowed, "text")
+    assert "d26*" in text
+    assert "d26 = -0.333333333333 d11 + 0.577350269190 d14" in text
+
+
+def test_a_property_of_three_indices_is_listed(allowed: Document) -> None:
+    entry = allowed["properties"][1]
+    entry |= {
+        "symbol": "C",
+        "blocks": [6, 6, 6],
+        "keys": ["111", "112", "222"],
+        "independent": ["111"],
+        "independent_count": 1,
+        "components": {"111": {"111": "1"}, "222": {"111": "1"}},
+    }
+    text = render(allowed, "text")
+    assert "C111 = C222" in text
+    assert "1 of 3 components are zero by symmetry" in text
+
+
+def test_csv_has_one_row_a_component_and_keeps_zero_ones(allowed: Document) -> None:
+    rows = list(csv.DictReader(io.StringIO(render(allowed, "csv"))))
+    assert len(rows) == 18 + 21
+    by_name = {row["name"]: (row["status"], row["expression"]) for row in rows}
+    assert by_name["d26"] == ("dependent", "-2 d11")
+    assert by_name["d11"] == ("independent", "d11")
+    assert by_name["d13"] == ("zero", "0")
+
+
+def test_latex_writes_a_matrix_of_names_with_indices(allowed: Document) -> None:
+    text = render(allowed, "latex")
+    assert r"d_{11} & -d_{11} & 0 & d_{14} & 0 & 0 \\" in text
+    assert r"\frac{c_{11} - c_{12}}{2}" in text
+    assert text.count("{") == text.count("}")
+
+
+def test_markdown_has_a_head_for_every_column(allowed: Document) -> None:
+    assert "|  | 1 xx | 2 yy | 3 zz | 4 yz | 5 xz | 6 xy |" in render(allowed, "markdown")
+
+
+@pytest.mark.parametrize(
+    ("terms", "text", "latex"),
+    [
+        ({}, "0", "0"),
+        ({"11": "-1"}, "-d11", "-d_{11}"),
+        ({"11": "1/2"}, "d11/2", r"\frac{d_{11}}{2}"),
+        ({"11": "-sqrt(3)/2", "12": "1/2"}, "(-sqrt(3) d11 + d12)/2", r"\frac{-\sqrt{3} d_{11} + d_{12}}{2}"),
+        ({"11": "1/3", "12": "1/2"}, "(2 d11 + 3 d12)/6", r"\frac{2 d_{11} + 3 d_{12}}{6}"),
+        ({"11": "0.25"}, "0.25 d11", "0.25 d_{11}"),
+    ],
+)
+def test_a_combination_is_written_over_one_denominator(terms: dict[str, str], text: str, latex: str) -> None:
+    assert combination(terms, text_namer("d")) == text
+    assert latex_combination(terms, latex_namer("d")) == latex
