@@ -2,6 +2,7 @@
 
     SitesymError
     ├── UsageError               a name or an option that does not exist
+    │   └── AxesError
     ├── ReadingError             a file that cannot be turned into a crystal
     │   ├── UnknownFormatError
     │   ├── EmptyStructureError
@@ -11,7 +12,8 @@
     │   ├── SingularCellError
     │   ├── OverlappingAtomsError
     │   ├── OccupancyError
-    │   └── NotPeriodicError
+    │   ├── NotPeriodicError
+    │   └── SpaceGroupStatementError
     ├── SymmetryError            a set of operations, or a crystal, whose symmetry cannot be settled
     │   ├── NotAGroupError
     │   └── SymmetryNotFoundError
@@ -59,6 +61,12 @@ class UsageError(SitesymError):
     """A name, option or combination of options that does not exist."""
 
     code = "usage"
+
+
+class AxesError(UsageError):
+    """A matrix of axes that is not a right-handed set of orthogonal directions."""
+
+    code = "axes"
 
 
 class ReadingError(SitesymError):
@@ -119,6 +127,12 @@ class NotPeriodicError(ReadingError):
     """A structure that is not periodic in all three directions."""
 
     code = "not-periodic"
+
+
+class SpaceGroupStatementError(ReadingError):
+    """A file that states its space group not at all, in more than one way to read it, or against itself."""
+
+    code = "space-group-statement"
 
 
 class SymmetryError(SitesymError):

@@ -28,3 +28,15 @@ REPRESENTATION: Final = 1e-10
 
 #: Two atoms closer than this cannot both be there (angstrom).
 SMALLEST_DISTANCE_ANGSTROM: Final = 0.1
+
+#: Images of one site, or sites of a file, closer than this are one atom of a special or mixed position (angstrom).
+MERGE_DISTANCE_ANGSTROM: Final = 0.1
+
+#: Cell edges beyond this are taken for a mistaken unit (angstrom).
+LARGEST_CELL_EDGE_ANGSTROM: Final = 10000.0
+
+#: By how much rounded occupancies of a site may add up to more than one (no unit).
+OCCUPANCY_EXCESS: Final = 0.011
+
+#: Largest relative difference between a cell's metric and its image under an operation said to be a symmetry.
+CELL_METRIC: Final = 0.02

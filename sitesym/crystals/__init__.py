@@ -1,0 +1,25 @@
+"""Crystals: reading, validation, space group, sites and named axes."""
+
+from sitesym.crystals.axes import AXES_NAMES, Axes, axes_for
+from sitesym.crystals.crystal import Crystal, Source
+from sitesym.crystals.reading import FORMATS, named_format, read_crystal, read_crystals
+from sitesym.crystals.sites import Site, SiteAxis
+from sitesym.crystals.species import Species
+from sitesym.crystals.symmetry import CrystalSymmetry, Idealisation, find_symmetry
+
+__all__ = [
+    "AXES_NAMES",
+    "FORMATS",
+    "Axes",
+    "Crystal",
+    "CrystalSymmetry",
+    "Idealisation",
+    "Site",
+    "SiteAxis",
+    "Species",
+    "axes_for",
+    "find_symmetry",
+    "named_format",
+    "read_crystal",
+    "read_crystals",
+]

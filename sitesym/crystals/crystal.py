@@ -1,0 +1,167 @@
+"""A crystal as read: cell, atoms and where they came from."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+from functools import cached_property
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.crystals.species import SYMBOLS, Species, reduced_formula
+from sitesym.crystals.validation import check_structure
+from sitesym.errors import CountMismatchError, NotPeriodicError, ReadingError
+
+if TYPE_CHECKING:
+    from ase import Atoms
+
+FRAME_OF_VECTORS = "x, y, z are the Cartesian axes in which the source gives the cell vectors"
+
+
+@dataclass(frozen=True)
+class Source:
+    """Where a crystal came from: file name (empty for none), format, and which part of the file."""
+
+    file: str = ""
+    format: str = "python"
+    part: str = ""
+
+
+@dataclass(frozen=True, eq=False)
+class Crystal:
+    """A periodic arrangement of atoms, validated when it is made.
+
+    ``lattice``: (3, 3), rows a, b, c in angstrom, in the file's Cartesian axes. ``positions_frac``: (n, 3).
+    ``species`` and ``labels``: one for each site. ``frame_note`` says where the Cartesian axes come from,
+    ``declared_space_group`` what the file claims (empty where it claims nothing), ``remarks`` what was noticed
+    or changed on reading.
+
+    Raises one of the ReadingError classes, see `sitesym.crystals.validation`.
+    """
+
+    lattice: FloatArray
+    positions_frac: FloatArray
+    species: tuple[Species, ...]
+    labels: tuple[str, ...] = ()
+    source: Source = field(default_factory=Source)
+    frame_note: str = FRAME_OF_VECTORS
+    declared_space_group: str = ""
+    remarks: tuple[str, ...] = ()
+
+    def __post_init__(self) -> None:
+        object.__setattr__(self, "lattice", frozen(np.asarray(self.lattice, dtype=np.float64)))
+        object.__setattr__(self, "positions_frac", frozen(np.asarray(self.positions_frac, dtype=np.float64)))
+        if not self.labels:
+            object.__setattr__(self, "labels", numbered_labels(self.species))
+        if len(self.labels) != len(self.species):
+            raise CountMismatchError(
+                "labels and atoms differ in number",
+                f"{len(self.labels)} labels, {len(self.species)} atoms",
+                "one label for each atom",
+                "correct the labels or leave them out",
+            )
+        check_structure(self.lattice, self.positions_frac, self.labels)
+
+    @classmethod
+    def from_tuple(cls, cell: tuple[ArrayLike, ArrayLike, Sequence[int]]) -> Crystal:
+        """From (lattice rows in angstrom, fractional positions, atomic numbers), every site filled.
+
+        Raises ReadingError for a number that is no element, and the errors of validation.
+        """
+        lattice, positions, numbers = cell
+        species = tuple(Species.pure(_symbol(number)) for number in numbers)
+        return cls(_as_floats(lattice, "cell"), _as_floats(positions, "positions"), species)
+
+    @classmethod
+    def from_ase(cls, atoms: Atoms, source: Source | None = None, remarks: tuple[str, ...] = ()) -> Crystal:
+        """From ASE Atoms, periodic in all three directions; partial occupancies in ``atoms.info`` are kept.
+
+        Raises NotPeriodicError and the errors of validation.
+        """
+        if not all(atoms.pbc):
+            raise NotPeriodicError(
+                "the structure is not periodic in all three directions",
+                f"pbc {' '.join('TF'[not flag] for flag in atoms.pbc)}, cell {atoms.cell.lengths().round(4).tolist()}",
+                "a crystal repeats along a, b and c",
+                "give all three cell vectors; a molecule or a slab has no space group",
+            )
+        lattice = np.asarray(atoms.cell.array, dtype=np.float64)
+        positions = np.asarray(atoms.get_positions(), dtype=np.float64)
+        fractional = _fractional(lattice, positions)
+        return cls(
+            lattice, fractional, _ase_species(atoms), source=source or Source(format="ase"), remarks=remarks
+        )
+
+    def with_remarks(self, *remarks: str) -> Crystal:
+        """The same crystal with more remarks."""
+        return replace(self, remarks=self.remarks + remarks)
+
+    def __len__(self) -> int:
+        return len(self.species)
+
+    @cached_property
+    def formula(self) -> str:
+        """Reduced formula, elements from electropositive to electronegative (IUPAC 2005, Table VI)."""
+        return reduced_formula(self.species)
+
+    @cached_property
+    def species_indices(self) -> IntArray:
+        """(n,) whole numbers from 1, equal for sites that hold the same species."""
+        kinds = {kind: index for index, kind in enumerate(dict.fromkeys(self.species), start=1)}
+        return frozen(np.array([kinds[kind] for kind in self.species], dtype=np.int64))
+
+    @property
+    def is_ordered(self) -> bool:
+        """False when a site is mixed or partly vacant: the crystal is then an average structure."""
+        return all(kind.is_ordered for kind in self.species)
+
+
+def numbered_labels(species: Sequence[Species]) -> tuple[str, ...]:
+    """Labels such as Ti1, O1, O2: the first element of the site and a running number."""
+    seen: Counter[str] = Counter()
+    labels = []
+    for kind in species:
+        element = kind.parts[0][0]
+        seen[element] += 1
+        labels.append(f"{element}{seen[element]}")
+    return tuple(labels)
+
+
+def _as_floats(values: ArrayLike, name: str) -> FloatArray:
+    try:
+        return np.asarray(values, dtype=np.float64)
+    except (TypeError, ValueError) as error:
+        raise CountMismatchError(
+            f"the {name} cannot be read as rows of three numbers",
+            str(error),
+            "rows of three numbers",
+            "correct them",
+        ) from error
+
+
+def _symbol(number: int) -> str:
+    if not 0 < int(number) < len(SYMBOLS):
+        raise ReadingError(
+            "an atom of no known element", str(number), "atomic numbers are 1 to 118", "correct it"
+        )
+    return SYMBOLS[int(number)]
+
+
+def _fractional(lattice: FloatArray, positions_cart: FloatArray) -> FloatArray:
+    """Fractional coordinates; a cell that cannot be inverted is left for validation to name."""
+    if not np.isfinite(lattice).all() or abs(np.linalg.det(lattice)) == 0.0:
+        return positions_cart
+    return np.linalg.solve(lattice.T, positions_cart.T).T
+
+
+def _ase_species(atoms: Atoms) -> tuple[Species, ...]:
+    occupancies = atoms.info.get("occupancy")
+    kinds = atoms.arrays.get("spacegroup_kinds")
+    if occupancies is None or kinds is None:
+        return tuple(Species.pure(_symbol(number)) for number in atoms.numbers)
+    table = {str(kind): Species.mixed(parts) for kind, parts in occupancies.items()}
+    return tuple(table[str(kind)] for kind in kinds)

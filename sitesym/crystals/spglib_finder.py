@@ -1,0 +1,133 @@
+"""Adapter to spglib: its search, its database of space-group settings, its errors.
+
+It is called with validated crystals only: numbers that are not finite end the process inside the library. The
+angle tolerance stays at the library's -1, so that one length decides.
+"""
+
+from __future__ import annotations
+
+from functools import lru_cache
+
+import numpy as np
+
+from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.crystals.crystal import Crystal
+from sitesym.crystals.found import FoundSymmetry, SpaceGroupSetting
+from sitesym.errors import SymmetryNotFoundError
+
+_ANGLE_TOLERANCE = -1.0
+
+
+def find_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmetry:
+    """Space group and orbits of a crystal. Raises SymmetryNotFoundError when the library gives no answer."""
+    import spglib
+    import spglib.error
+
+    # Without this the library returns None and keeps the reason in a global.
+    spglib.error.OLD_ERROR_HANDLING = False
+    cell = (crystal.lattice, crystal.positions_frac, crystal.species_indices)
+    try:
+        dataset = spglib.get_symmetry_dataset(
+            cell, symprec=tolerance_angstrom, angle_tolerance=_ANGLE_TOLERANCE
+        )
+    except spglib.SpglibError as error:
+        raise _not_found(str(error), tolerance_angstrom) from error
+    if dataset is None:
+        raise _not_found("no dataset", tolerance_angstrom)
+    transformation = np.asarray(dataset.transformation_matrix, dtype=np.float64)
+    origin_shift = np.asarray(dataset.origin_shift, dtype=np.float64)
+    primitive = np.asarray(dataset.mapping_to_primitive)
+    std_primitive = np.asarray(dataset.std_mapping_to_primitive)
+    positions = _conventional_positions(
+        crystal.positions_frac @ transformation.T + origin_shift,
+        dataset.std_positions,
+        primitive,
+        std_primitive,
+    )
+    orbits = np.asarray(dataset.crystallographic_orbits, dtype=np.int64)
+    return FoundSymmetry(
+        setting(int(dataset.hall_number)),
+        frozen(transformation),
+        frozen(origin_shift),
+        frozen(positions),
+        frozen(orbits),
+        frozen(_multiplicities(orbits, primitive, std_primitive)),
+        tuple(dataset.wyckoffs),
+        tuple(dataset.site_symmetry_symbols),
+        f"spglib {spglib.__version__}",
+    )
+
+
+@lru_cache(maxsize=530)
+def setting(hall_number: int) -> SpaceGroupSetting:
+    """The operations and symbols of one of the 530 settings, numbered as in spglib's database."""
+    import spglib
+
+    operations = spglib.get_symmetry_from_database(hall_number)
+    kind = spglib.get_spacegroup_type(hall_number)
+    if operations is None or kind is None:
+        raise SymmetryNotFoundError(
+            "there is no such space-group setting",
+            str(hall_number),
+            "Hall numbers are 1 to 530",
+            "correct the number",
+        )
+    rotations = np.asarray(operations["rotations"], dtype=np.int64)
+    # Translations are 12ths or 8ths; the database holds them as decimals.
+    translations = np.rint(np.asarray(operations["translations"]) * 24) / 24
+    unique = list({rotation.tobytes(): rotation for rotation in rotations}.values())
+    return SpaceGroupSetting(
+        int(kind.number),
+        str(kind.international_short),
+        hall_number,
+        str(kind.hall_symbol),
+        str(kind.choice),
+        frozen(rotations),
+        frozen(translations),
+        frozen(np.array(unique, dtype=np.int64)),
+    )
+
+
+def niggli_lattice(lattice: FloatArray) -> FloatArray:
+    """Niggli-reduced cell vectors (rows) of the same lattice. Raises SymmetryNotFoundError when it fails."""
+    import spglib
+    import spglib.error
+
+    spglib.error.OLD_ERROR_HANDLING = False
+    try:
+        reduced = spglib.niggli_reduce(lattice)
+    except spglib.SpglibError as error:
+        raise SymmetryNotFoundError("the cell cannot be reduced", str(error)) from error
+    if reduced is None:
+        raise SymmetryNotFoundError("the cell cannot be reduced", "no answer of spglib")
+    return np.asarray(reduced, dtype=np.float64)
+
+
+def _conventional_positions(
+    transformed: FloatArray, std_positions: FloatArray, primitive: IntArray, std_primitive: IntArray
+) -> FloatArray:
+    """Idealised position of each file atom: of its copies under the centring translations, the nearest one."""
+    copies = np.argsort(std_primitive, kind="stable").reshape(len(np.unique(std_primitive)), -1)
+    candidates = np.asarray(std_positions, dtype=np.float64)[copies[primitive]]
+    difference = candidates - transformed[:, None, :]
+    difference -= np.rint(difference)
+    nearest = np.argmin(np.linalg.norm(difference, axis=2), axis=1)
+    chosen: FloatArray = transformed + difference[np.arange(len(transformed)), nearest]
+    return chosen
+
+
+def _multiplicities(orbits: IntArray, primitive: IntArray, std_primitive: IntArray) -> IntArray:
+    """Atoms of each file atom's orbit in the conventional cell, counted in that cell."""
+    orbit_of_primitive = np.zeros(int(primitive.max()) + 1, dtype=np.int64)
+    orbit_of_primitive[primitive] = orbits
+    counts: IntArray = (orbit_of_primitive[std_primitive][None, :] == orbits[:, None]).sum(axis=1)
+    return counts
+
+
+def _not_found(reason: str, tolerance_angstrom: float) -> SymmetryNotFoundError:
+    return SymmetryNotFoundError(
+        "spglib found no symmetry",
+        f"{reason}; tolerance {tolerance_angstrom:g} angstrom",
+        "the tolerance is smaller than the distances between atoms",
+        "try another tolerance",
+    )

@@ -1,0 +1,142 @@
+"""Checks of a structure before any symmetry finder sees it: a finder may crash on numbers that are none.
+
+Every fault has its own error class and code: wrong counts, no atoms, not a number, infinite, a cell without
+volume, atoms on top of each other. Occupancies are checked where a species is made.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from sitesym.arrays import FloatArray
+from sitesym.errors import (
+    CountMismatchError,
+    EmptyStructureError,
+    InfiniteValueError,
+    NotANumberError,
+    OverlappingAtomsError,
+    SingularCellError,
+)
+from sitesym.tolerances import LARGEST_CELL_EDGE_ANGSTROM, SMALLEST_DISTANCE_ANGSTROM
+
+
+def check_structure(lattice: FloatArray, positions_frac: FloatArray, labels: Sequence[str]) -> None:
+    """Return when the structure can be given to a symmetry finder.
+
+    ``lattice`` (3, 3) rows in angstrom, ``positions_frac`` (n, 3), ``labels`` n names used in messages.
+
+    Raises CountMismatchError, EmptyStructureError, NotANumberError, InfiniteValueError, SingularCellError or
+    OverlappingAtomsError.
+    """
+    _check_shapes(lattice, positions_frac, len(labels))
+    _check_finite(lattice, [f"cell vector {name}" for name in "abc"])
+    _check_finite(positions_frac, [f"the position of {label}" for label in labels])
+    _check_cell(lattice)
+    _check_distances(lattice, positions_frac, labels)
+
+
+def plane_spacings(lattice: FloatArray) -> FloatArray:
+    """(3,) distances in angstrom between neighbouring (100), (010) and (001) lattice planes."""
+    inverse: FloatArray = np.linalg.inv(lattice)
+    return 1.0 / np.asarray(np.linalg.norm(inverse, axis=0))
+
+
+def closest_pair(
+    lattice: FloatArray, positions_frac: FloatArray, within_angstrom: float
+) -> tuple[int, int, float] | None:
+    """Indices and distance (angstrom) of the closest two atoms nearer than a limit, periodic images included.
+
+    None when there is no such pair. The limit must be smaller than the spacings of the lattice planes.
+    """
+    from scipy.spatial import cKDTree
+
+    wrapped = positions_frac - np.floor(positions_frac)
+    index = np.arange(len(wrapped))
+    for axis, margin in enumerate(within_angstrom / plane_spacings(lattice)):
+        # An atom this close to the lower face has a neighbour, if any, beyond the upper one.
+        at_face = wrapped[:, axis] < margin
+        wrapped = np.vstack([wrapped, wrapped[at_face] + np.eye(3)[axis]])
+        index = np.concatenate([index, index[at_face]])
+    cartesian = wrapped @ lattice
+    pairs = cKDTree(cartesian).query_pairs(within_angstrom, output_type="ndarray")
+    if len(pairs) == 0:
+        return None
+    distances = np.linalg.norm(cartesian[pairs[:, 0]] - cartesian[pairs[:, 1]], axis=1)
+    nearest = int(np.argmin(distances))
+    first, second = sorted(int(index[atom]) for atom in pairs[nearest])
+    return first, second, float(distances[nearest])
+
+
+def _check_shapes(lattice: FloatArray, positions_frac: FloatArray, count: int) -> None:
+    if lattice.shape != (3, 3):
+        raise CountMismatchError(
+            "the cell is not three vectors of three numbers",
+            f"shape {lattice.shape}",
+            "3 x 3 numbers",
+            "correct it",
+        )
+    if count == 0 and positions_frac.size == 0:
+        raise EmptyStructureError(
+            "the structure has no atoms",
+            "0 atoms",
+            "a crystal has at least one atom",
+            "look for the missing atoms",
+        )
+    if positions_frac.shape != (count, 3):
+        raise CountMismatchError(
+            "positions and species differ in number",
+            f"positions of shape {positions_frac.shape}, {count} species",
+            "one row of three coordinates for each atom",
+            "look for missing or doubled lines",
+        )
+
+
+def _check_finite(rows: FloatArray, names: Sequence[str]) -> None:
+    if np.isfinite(rows).all():
+        return
+    faulty = next(number for number, row in enumerate(rows) if not np.isfinite(row).all())
+    value = f"{names[faulty]} is {' '.join(f'{entry:g}' for entry in rows[faulty])}"
+    rule, step = "all coordinates and cell entries are finite numbers", "correct the value in the file"
+    if np.isnan(rows).any():
+        raise NotANumberError("a value is not a number", value, rule, step)
+    raise InfiniteValueError("a value is infinite", value, rule, step)
+
+
+def _check_cell(lattice: FloatArray) -> None:
+    edges = np.linalg.norm(lattice, axis=1)
+    text = f"edges {' '.join(f'{edge:.6g}' for edge in edges)} angstrom"
+    if edges.max() > LARGEST_CELL_EDGE_ANGSTROM:
+        raise SingularCellError(
+            "the cell is absurdly large",
+            text,
+            f"edges are at most {LARGEST_CELL_EDGE_ANGSTROM:g} angstrom",
+            "look at the unit of length",
+        )
+    # The product of the edges sets the scale on which a volume counts as zero.
+    if edges.min() == 0.0 or abs(np.linalg.det(lattice)) < 1e-9 * float(np.prod(edges)):
+        raise SingularCellError(
+            "the cell vectors span no volume", text, "a, b and c are not in one plane", "correct the cell"
+        )
+    spacings = plane_spacings(lattice)
+    if spacings.min() <= SMALLEST_DISTANCE_ANGSTROM:
+        raise SingularCellError(
+            "the cell is too flat to hold atoms",
+            f"{text}; lattice planes {' '.join(f'{spacing:.3g}' for spacing in spacings)} angstrom apart",
+            f"lattice planes are more than {SMALLEST_DISTANCE_ANGSTROM:g} angstrom apart",
+            "look at the unit of length, or reduce the cell",
+        )
+
+
+def _check_distances(lattice: FloatArray, positions_frac: FloatArray, labels: Sequence[str]) -> None:
+    pair = closest_pair(lattice, positions_frac, SMALLEST_DISTANCE_ANGSTROM)
+    if pair is None:
+        return
+    first, second, distance = pair
+    raise OverlappingAtomsError(
+        "two atoms overlap",
+        f"{labels[first]} (atom {first + 1}) and {labels[second]} (atom {second + 1}) are {distance:.4g} angstrom apart",
+        f"atoms are at least {SMALLEST_DISTANCE_ANGSTROM:g} angstrom apart",
+        "remove the doubled atom, or give both as one mixed site with occupancies",
+    )
