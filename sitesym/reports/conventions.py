@@ -17,7 +17,7 @@ from sitesym.reports.markup import (
     markdown_table,
 )
 from sitesym.reports.provenance import CAUTION
-from sitesym.tensors import KINDS
+from sitesym.tensors import all_kinds
 
 _KIND_COLUMNS: Final = (
     "property",
@@ -42,8 +42,8 @@ def conventions_document() -> dict[str, Any]:
 
 
 def _kinds() -> Iterator[dict[str, str]]:
-    for kind in KINDS.values():
-        values = (kind.name, kind.symbol, kind.index_symmetry, kind.parity, kind.unit, kind.factor_rule)
+    for kind in all_kinds():
+        values = (kind.name, kind.symbol, kind.jahn, kind.parity, kind.unit, kind.factor_rule)
         yield dict(zip(_KIND_COLUMNS, values, strict=True))
 
 

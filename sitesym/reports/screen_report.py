@@ -1,12 +1,15 @@
-"""A `screen` document as text, CSV, Markdown and LaTeX."""
+"""The `screen` document, and the document as text, CSV, Markdown and LaTeX."""
 
 from __future__ import annotations
 
 from collections import Counter
+from collections.abc import Iterable
+from typing import Any
 
 from sitesym.reports.layout import cell_text, labelled, paragraph, table
 from sitesym.reports.markup import Document, csv_text, latex_escape, latex_table, markdown_table
-from sitesym.reports.provenance import CAUTION, versions_line
+from sitesym.reports.provenance import CAUTION, library_versions, versions_line
+from sitesym.screening import COLUMNS, Row
 
 #: What a person sees of a row: head and column. Every column is in CSV and JSON.
 _SHOWN = (
@@ -28,6 +31,18 @@ _SHOWN = (
 _HEAD = tuple(head for head, _ in _SHOWN)
 _RIGHT = (11, 12, 13)
 _VERDICTS = ("centrosymmetric", "chiral", "polar", "piezoelectric", "second_harmonic", "optical_activity")
+
+
+def screen_document(folder: str, rows: Iterable[Row], tolerance_angstrom: float) -> dict[str, Any]:
+    """Schema ``sitesym.screen/1``: the rows of a folder with the tolerance they were made at."""
+    return {
+        "schema": "sitesym.screen/1",
+        "folder": folder,
+        "tolerance_angstrom": tolerance_angstrom,
+        "columns": list(COLUMNS),
+        "rows": list(rows),
+        "versions": library_versions(),
+    }
 
 
 def screen_text(document: Document) -> str:
