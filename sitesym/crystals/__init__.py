@@ -16,6 +16,7 @@ __all__ = [
     "Idealisation",
     "Site",
     "SiteAxis",
+    "Source",
     "Species",
     "axes_for",
     "find_symmetry",

@@ -10,8 +10,8 @@ from pathlib import Path
 from sitesym.crystals.crystal import Crystal, Source
 from sitesym.errors import EmptyStructureError, ReadingError, UnknownFormatError
 
-# ASE's readers let whatever a malformed text provokes escape: these are the classes that bad content, and not a
-# fault of this program, gives rise to.
+# ASE's readers let whatever a malformed text provokes escape: these are the classes that bad content, and
+# not a fault of this program, gives rise to.
 _CONTENT_ERRORS = (
     ArithmeticError,
     AssertionError,
@@ -87,13 +87,13 @@ def detected_format(path: Path) -> str:
 
 
 def _require_symbols(path: Path) -> None:
-    """Refuse a POSCAR whose sixth line counts atoms without a line of symbols before it: guesses would be made."""
+    """Refuse a POSCAR that counts atoms in line 6, where the symbols belong: they would be guessed."""
     lines = path.read_text(encoding="utf-8", errors="replace").splitlines()
     counts = lines[5].split() if len(lines) > 5 else []
     if counts and all(token.isdigit() for token in counts):
         raise UnknownFormatError(
             "a POSCAR without element symbols",
             f"line 6 is '{lines[5].strip()}'",
-            "a line with the element symbols stands before the line with the counts (the format since VASP 5)",
+            "the element symbols stand in the line before the counts (the format since VASP 5)",
             "insert the symbols as line 6; they are not guessed from the comment",
         )

@@ -1,13 +1,15 @@
 """Named Cartesian axes of a crystal, each with the rotation from the axes of the file.
 
-`file`: the file's own. `lattice`: conventional cell, a || x, b in the xy plane. `ieee`: the orientation of IEEE Std
-176-1978; the operations decide what they can, the lattice rules of the standard the rest. `given`: the user's.
+`file`: the file's own. `lattice`: conventional cell, a || x, b in the xy plane. `ieee`: the orientation of
+IEEE Std 176-1978; the operations decide what they can, the lattice rules of the standard the rest. `given`:
+the user's.
 """
 
 from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -22,8 +24,8 @@ AXES_NAMES = ("file", "lattice", "ieee", "given")
 IEEE_EDITION = "IEEE Std 176-1978"
 
 _SENSE_NOTE = (
-    "the standard fixes the senses of the axes by the signs of measured constants; without data they are open, and "
-    "those of the cell are taken"
+    "the standard fixes the senses of the axes by the signs of measured constants; without data they are "
+    "open, and those of the cell are taken"
 )
 # Rounded matrices of users are accepted up to this deviation from orthogonality, then made exact.
 _GIVEN_ORTHOGONAL = 1e-3
@@ -35,9 +37,9 @@ _EQUAL_LENGTHS = 1e-4
 class Axes:
     """A right-handed Cartesian frame.
 
-    ``rotation_from_file`` R (3, 3): the new axes as rows in the file's axes, v_new = R v_file. ``edition``: of the
-    standard the name refers to, or empty. ``note``: what fixed the axes and what stays open. ``lattice`` (3, 3): the
-    conventional cell vectors as rows in these axes, angstrom.
+    ``rotation_from_file`` R (3, 3): the new axes as rows in the file's axes, v_new = R v_file. ``edition``:
+    of the standard the name refers to, or empty. ``note``: what fixed the axes and what stays open.
+    ``lattice`` (3, 3): the conventional cell vectors as rows in these axes, angstrom.
     """
 
     name: str
@@ -50,7 +52,8 @@ class Axes:
 def axes_for(symmetry: CrystalSymmetry, name: str, given: ArrayLike | None = None) -> Axes:
     """The axes of this name; ``given`` is the (3, 3) matrix for `given`, new axes as rows in the file's axes.
 
-    Raises UsageError for an unknown name or a missing matrix, AxesError for a matrix that is no right-handed frame.
+    Raises UsageError for an unknown name or a missing matrix, AxesError for a matrix that is no
+    right-handed frame.
     """
     if (name == "given") != (given is not None):
         raise UsageError(
@@ -96,13 +99,13 @@ def _given_frame(given: ArrayLike) -> tuple[FloatArray, str]:
     if lengths.min() == 0.0:
         raise _axes_error("an axis has no length", text)
     rows = matrix / lengths[:, None]
-    error = float(np.abs(rows @ rows.T - np.eye(3)).max())
-    if error > _GIVEN_ORTHOGONAL:
-        raise _axes_error(f"the axes are not orthogonal (largest cosine {error:.3g})", text)
+    deviation = float(np.abs(rows @ rows.T - np.eye(3)).max())
+    if deviation > _GIVEN_ORTHOGONAL:
+        raise _axes_error(f"the axes are not orthogonal (largest cosine {deviation:.3g})", text)
     if np.linalg.det(rows) < 0.0:
         raise _axes_error("the axes are left-handed", text)
     left, _, right = np.linalg.svd(rows)
-    note = f"given by the user; rows scaled to unit length, orthogonality error {error:.1e} removed"
+    note = f"given by the user; rows scaled to unit length, orthogonality error {deviation:.1e} removed"
     return left @ right, note
 
 
@@ -144,10 +147,7 @@ def _equal_length_note(symmetry: CrystalSymmetry) -> str:
     if symmetry.point_group.system != "orthorhombic":
         return ""
     lengths = sorted(np.linalg.norm(symmetry.conventional_lattice, axis=1))
-    if any(
-        longer - shorter < _EQUAL_LENGTHS * longer
-        for shorter, longer in zip(lengths, lengths[1:], strict=False)
-    ):
+    if any(longer - shorter < _EQUAL_LENGTHS * longer for shorter, longer in pairwise(lengths)):
         return "; two cell edges are equal within 0.01 %, so their order is open"
     return ""
 
@@ -182,7 +182,7 @@ def _unique_axis(symmetry: CrystalSymmetry) -> int:
 
 
 def _monoclinic_cell(lattice: FloatArray, unique: int) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Cell with b along the unique axis, c < a the shortest vectors across it, beta not acute, right-handed."""
+    """Cell with b along the unique axis, c < a shortest across it, beta not acute, right-handed."""
     c, a = (lattice[index] for index in range(3) if index != unique)
     while True:
         if c @ c > a @ a:
@@ -210,4 +210,5 @@ def _mm2_wishes(lattice: FloatArray, polar: FloatArray) -> FloatArray:
 def _right_handed(rows: FloatArray) -> FloatArray:
     """The rows, the second reversed where they are left-handed."""
     signs = np.array([1.0, np.sign(np.linalg.det(rows)), 1.0])
-    return rows * signs[:, None]
+    handed: FloatArray = rows * signs[:, None]
+    return handed

@@ -182,8 +182,6 @@ def _element(text: str) -> str:
         symbol = text[:length].capitalize()
         known = symbol in ATOMIC_NUMBERS or symbol in _ISOTOPES
         if known and symbol.isalpha() and len(symbol) == length:
-            # 'CA1' of a label may be carbon or calcium; capitals after the first are read as part of the element
-            # only where the text has nothing else to say.
             return symbol
     letters = "".join(character for character in text if character.isalpha())
     if letters.upper() in _VACANCIES:

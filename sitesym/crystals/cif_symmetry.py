@@ -1,7 +1,8 @@
-"""Which symmetry operations a CIF states: its list of operations, else Hall, else Hermann-Mauguin, else number.
+"""Which symmetry operations a CIF states: its list, else Hall, else Hermann-Mauguin, else number.
 
-A statement that can be read in more than one way, statements that contradict each other or the cell, and a file
-without any statement are errors that name the choices. A file is never taken for P 1 because it is silent.
+A statement that can be read in more than one way, statements that contradict each other or the cell, and a
+file without any statement are errors that name the choices. A file is never taken for P 1 because it is
+silent.
 """
 
 from __future__ import annotations
@@ -51,7 +52,7 @@ class Statements:
 
 @dataclass(frozen=True, eq=False)
 class StatedOperations:
-    """``rotations`` (n, 3, 3) and ``translations`` (n, 3) in the basis of the file's cell; ``stated_by`` says what."""
+    """``rotations`` (n, 3, 3), ``translations`` (n, 3) in the basis of the file's cell; what stated them."""
 
     rotations: IntArray
     translations: FloatArray
@@ -59,7 +60,7 @@ class StatedOperations:
 
 
 def stated_operations(block: gemmi.cif.Block, lattice: FloatArray) -> tuple[StatedOperations, Statements]:
-    """The operations of a block with the cell ``lattice`` (rows, angstrom), and the statements they came from.
+    """The operations of a block with the cell ``lattice`` (rows, angstrom), and what the block states.
 
     Raises SpaceGroupStatementError.
     """
@@ -256,7 +257,7 @@ def _check_cell_fits(operations: StatedOperations, lattice: FloatArray) -> None:
 
 
 def _is_closed(operations: StatedOperations) -> bool:
-    """True when every product of two operations is listed, lattice translations aside (24ths, exact integers)."""
+    """True when every product of two operations is listed, lattice translations aside (in whole 24ths)."""
     rotations = operations.rotations
     shifts = np.rint(operations.translations * 24).astype(np.int64) % 24
     listed = _codes(rotations, shifts)
@@ -276,3 +277,13 @@ def _cell_text(lattice: FloatArray) -> str:
     edges = np.linalg.norm(lattice, axis=1)
     cosines = [lattice[i] @ lattice[j] / (edges[i] * edges[j]) for i, j in ((1, 2), (0, 2), (0, 1))]
     return " ".join(f"{value:.5g}" for value in (*edges, *np.degrees(np.arccos(cosines))))
+
+
+def xyz_text(rotation: IntArray, translation: FloatArray) -> str:
+    """An operation as in a CIF: rotation (3, 3) integers and translation (3,) in whole 24ths give -y,x-y,z+1/3."""
+    import gemmi
+
+    operation = gemmi.Op()
+    operation.rot = (rotation * operation.DEN).tolist()
+    operation.tran = [round(float(step) * operation.DEN) for step in translation]
+    return str(operation.triplet())

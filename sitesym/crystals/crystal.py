@@ -37,8 +37,8 @@ class Crystal:
 
     ``lattice``: (3, 3), rows a, b, c in angstrom, in the file's Cartesian axes. ``positions_frac``: (n, 3).
     ``species`` and ``labels``: one for each site. ``frame_note`` says where the Cartesian axes come from,
-    ``declared_space_group`` what the file claims (empty where it claims nothing), ``remarks`` what was noticed
-    or changed on reading.
+    ``declared_space_group`` what the file claims (empty where it claims nothing), ``remarks`` what was
+    noticed or changed on reading.
 
     Raises one of the ReadingError classes, see `sitesym.crystals.validation`.
     """
@@ -85,12 +85,12 @@ class Crystal:
         if not all(atoms.pbc):
             raise NotPeriodicError(
                 "the structure is not periodic in all three directions",
-                f"pbc {' '.join('TF'[not flag] for flag in atoms.pbc)}, cell {atoms.cell.lengths().round(4).tolist()}",
+                f"pbc {atoms.pbc.tolist()}, edges {atoms.cell.lengths().tolist()} angstrom",
                 "a crystal repeats along a, b and c",
                 "give all three cell vectors; a molecule or a slab has no space group",
             )
         lattice = np.asarray(atoms.cell.array, dtype=np.float64)
-        positions = np.asarray(atoms.get_positions(), dtype=np.float64)
+        positions = np.asarray(atoms.positions, dtype=np.float64)
         fractional = _fractional(lattice, positions)
         return cls(
             lattice, fractional, _ase_species(atoms), source=source or Source(format="ase"), remarks=remarks
@@ -155,7 +155,7 @@ def _fractional(lattice: FloatArray, positions_cart: FloatArray) -> FloatArray:
     """Fractional coordinates; a cell that cannot be inverted is left for validation to name."""
     if not np.isfinite(lattice).all() or abs(np.linalg.det(lattice)) == 0.0:
         return positions_cart
-    return np.linalg.solve(lattice.T, positions_cart.T).T
+    return np.asarray(np.linalg.solve(lattice.T, positions_cart.T).T, dtype=np.float64)
 
 
 def _ase_species(atoms: Atoms) -> tuple[Species, ...]:

@@ -1,7 +1,7 @@
 """From the atoms of an asymmetric unit to all atoms of the cell.
 
-Images of a site closer together than the merge distance are one atom on a special position: the site is moved to
-the mean of those images, and the move is reported. Sites of the list that meet are one mixed site.
+Images of a site closer together than the merge distance are one atom on a special position: the site is
+moved to the mean of those images, and the move is reported. Sites of the list that meet are one mixed site.
 """
 
 from __future__ import annotations
@@ -24,7 +24,7 @@ _REPORTED_MOVE_ANGSTROM = 1e-6
 
 @dataclass(frozen=True, eq=False)
 class ListedSite:
-    """A line of the asymmetric unit: label, position (3,) in fractions of the cell, elements and occupancies."""
+    """A line of the asymmetric unit: label, fractional position (3,), elements with occupancies."""
 
     label: str
     position_frac: FloatArray
@@ -33,7 +33,7 @@ class ListedSite:
 
 @dataclass(frozen=True, eq=False)
 class ExpandedSites:
-    """All atoms of the cell: positions (n, 3) in [0, 1), species, labels, and remarks on what was merged or moved."""
+    """All atoms of the cell: positions (n, 3) in [0, 1), species, labels; what was merged or moved."""
 
     positions_frac: FloatArray
     species: tuple[Species, ...]
@@ -80,7 +80,8 @@ def _orbit(site: ListedSite, operations: StatedOperations, lattice: FloatArray) 
         difference -= np.rint(difference)
         near = np.linalg.norm(difference @ lattice, axis=1) < MERGE_DISTANCE_ANGSTROM
         position = position + difference[near].mean(axis=0)
-        # The mean over part of a stabiliser comes nearer to the position; repeat until its images are all there.
+        # The mean over part of a stabiliser comes nearer to the position; repeat until its images are all
+        # there.
         if np.array_equal(near, fixing):
             break
         fixing = near
@@ -92,8 +93,8 @@ def _orbit(site: ListedSite, operations: StatedOperations, lattice: FloatArray) 
     if len(distinct) * int(fixing.sum()) != len(images):
         raise OverlappingAtomsError(
             f"images of site {site.label} come close without meeting on a special position",
-            f"{len(images)} operations, {int(fixing.sum())} images within {MERGE_DISTANCE_ANGSTROM:g} angstrom",
-            f"images are farther apart than {MERGE_DISTANCE_ANGSTROM:g} angstrom or meet on a special position",
+            f"{int(fixing.sum())} of {len(images)} images within {MERGE_DISTANCE_ANGSTROM:g} angstrom",
+            f"images farther apart than {MERGE_DISTANCE_ANGSTROM:g} angstrom, or a special position",
             f"give the exact coordinates of site {site.label}",
         )
     move = position - site.position_frac

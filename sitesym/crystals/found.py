@@ -11,8 +11,9 @@ from sitesym.arrays import FloatArray, IntArray
 class SpaceGroupSetting:
     """A space group in one choice of axes and origin.
 
-    ``rotations`` (n, 3, 3) integers and ``translations`` (n, 3): all operations of the conventional cell, centring
-    translations included. ``point_rotations`` (k, 3, 3): the rotation parts, each once, identity first.
+    ``rotations`` (n, 3, 3) integers and ``translations`` (n, 3): all operations of the conventional cell,
+    centring translations included. ``point_rotations`` (k, 3, 3): the rotation parts, each once, identity
+    first.
     """
 
     number: int
@@ -32,8 +33,8 @@ class FoundSymmetry:
     ``transformation`` P (3, 3) and ``origin_shift`` p (3,): x_conventional = P x_file + p (modulo 1).
     ``conventional_positions`` (n, 3): idealised position of each file atom in the conventional cell.
     ``orbits`` (n,): equal for atoms related by the space group, translations of a supercell included.
-    ``multiplicities`` (n,): atoms of the orbit in the conventional cell. ``wyckoffs`` and ``site_symbols``: one for
-    each atom. ``finder``: name and version of the library.
+    ``multiplicities`` (n,): atoms of the orbit in the conventional cell. ``wyckoffs`` and ``site_symbols``:
+    one for each atom. ``finder``: name and version of the library.
     """
 
     setting: SpaceGroupSetting

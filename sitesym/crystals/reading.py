@@ -41,8 +41,8 @@ FORMATS: Final = tuple(dict.fromkeys(name for _, name in FILE_NAMES))
 def read_crystal(path: str | os.PathLike[str], file_format: str | None = None) -> Crystal:
     """The one structure of a file.
 
-    ``file_format`` (one of `FORMATS`) overrides the file name. Raises ReadingError and its subclasses, also when the
-    file holds several structures: then they are named, and `read_crystals` gives them all.
+    ``file_format`` (one of `FORMATS`) overrides the file name. Raises ReadingError and its subclasses, also
+    when the file holds several structures: then they are named, and `read_crystals` gives them all.
     """
     crystals = read_crystals(path, file_format)
     if len(crystals) > 1:

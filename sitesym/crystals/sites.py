@@ -1,7 +1,7 @@
 """Sites of a crystal: orbits of the full space group with their site-symmetry groups.
 
-The site group is computed: the operations of the conventional cell that leave the idealised position where it is.
-Wyckoff letter and oriented symbol come from the finder; letters depend on setting and origin.
+The site group is computed: the operations of the conventional cell that leave the idealised position where
+it is. Wyckoff letter and oriented symbol come from the finder; letters depend on setting and origin.
 """
 
 from __future__ import annotations
@@ -24,9 +24,9 @@ _SAME_POSITION_ANGSTROM = 1e-6
 class SiteAxis:
     """A direction that operations of a site single out.
 
-    ``symbol``: 4, -3, m ... of the operation of highest order about it, proper and improper ones listed apart;
-    ``order`` that of its proper part; ``direction_file`` a unit vector in the file's Cartesian axes (of a mirror:
-    its normal); ``direction_lattice`` the same in the conventional cell, as text.
+    ``symbol``: 4, -3, m ... of the operation of highest order about it, proper and improper ones listed
+    apart; ``order`` that of its proper part; ``direction_file`` a unit vector in the file's Cartesian axes
+    (of a mirror: its normal); ``direction_lattice`` the same in the conventional cell, as text.
     """
 
     symbol: str
@@ -40,11 +40,11 @@ class SiteAxis:
 class Site:
     """One orbit of atoms.
 
-    ``atoms``: indices in the file, from 0. ``multiplicity``: atoms in the conventional cell. ``symbol``: oriented
-    site-symmetry symbol of International Tables A, such as 4/mm.m. ``position_frac``: idealised position of the
-    first atom in the conventional cell. ``point_group``: the site group, in the basis and axes of the crystal's.
-    ``rotations``, ``translations``: its operations in the conventional cell, in the order of the group's elements,
-    each leaving the position where it is.
+    ``atoms``: indices in the file, from 0. ``multiplicity``: atoms in the conventional cell. ``symbol``:
+    oriented site-symmetry symbol of International Tables A, such as 4/mm.m. ``position_frac``: idealised
+    position of the first atom in the conventional cell. ``point_group``: the site group, in the basis and
+    axes of the crystal's. ``rotations``, ``translations``: its operations in the conventional cell, in the
+    order of the group's elements, each leaving the position where it is.
     """
 
     label: str
@@ -89,8 +89,8 @@ def build_sites(
 ) -> tuple[Site, ...]:
     """One site for each orbit, in the order of the first atom; ``lattice`` is the conventional cell (rows).
 
-    Raises SymmetryError when the order of a site group times the multiplicity is not the order of the space group
-    in the conventional cell: the finder's answer is then not consistent.
+    Raises SymmetryError when the order of a site group times the multiplicity is not the order of the space
+    group in the conventional cell: the finder's answer is then not consistent.
     """
     members: dict[int, list[int]] = {}
     for atom, orbit in enumerate(found.orbits.tolist()):
@@ -142,7 +142,7 @@ def _check_orbit(label: str, order: int, multiplicity: int, setting: SpaceGroupS
         return
     raise SymmetryError(
         f"the orbit of {label} does not fit its site group",
-        f"{order} site operations x {multiplicity} atoms, {len(setting.rotations)} operations of {setting.symbol}",
+        f"{order} site operations x {multiplicity} atoms; {setting.symbol} has {len(setting.rotations)}",
         "site operations times multiplicity is the number of operations of the conventional cell",
         "try another tolerance; the atoms are near a more symmetric arrangement",
     )

@@ -11,13 +11,14 @@ from typing import Final
 from sitesym.errors import OccupancyError, ReadingError
 from sitesym.tolerances import OCCUPANCY_EXCESS
 
-#: Element symbols by atomic number; number 0 is no element.
-SYMBOLS: Final = tuple(
-    """- H He Li Be B C N O F Ne Na Mg Al Si P S Cl Ar K Ca Sc Ti V Cr Mn Fe Co Ni Cu Zn Ga Ge As Se Br Kr
+_SYMBOLS_IN_ORDER: Final = """
+    - H He Li Be B C N O F Ne Na Mg Al Si P S Cl Ar K Ca Sc Ti V Cr Mn Fe Co Ni Cu Zn Ga Ge As Se Br Kr
     Rb Sr Y Zr Nb Mo Tc Ru Rh Pd Ag Cd In Sn Sb Te I Xe Cs Ba La Ce Pr Nd Pm Sm Eu Gd Tb Dy Ho Er Tm Yb Lu
     Hf Ta W Re Os Ir Pt Au Hg Tl Pb Bi Po At Rn Fr Ra Ac Th Pa U Np Pu Am Cm Bk Cf Es Fm Md No Lr
-    Rf Db Sg Bh Hs Mt Ds Rg Cn Nh Fl Mc Lv Ts Og""".split()
-)
+    Rf Db Sg Bh Hs Mt Ds Rg Cn Nh Fl Mc Lv Ts Og
+"""
+#: Element symbols by atomic number; number 0 is no element.
+SYMBOLS: Final = tuple(_SYMBOLS_IN_ORDER.split())
 ATOMIC_NUMBERS: Final = {symbol: number for number, symbol in enumerate(SYMBOLS) if number}
 _NOBLE_GASES: Final = (0, 2, 10, 18, 36, 54, 86, 118)
 
@@ -80,17 +81,18 @@ def _occupancy_error(value: str) -> OccupancyError:
 
 
 def reduced_formula(species: Iterable[Species]) -> str:
-    """Reduced formula, such as 'BaTiO3': elements in the order of IUPAC, from electropositive to electronegative.
+    """Reduced formula, such as 'BaTiO3': elements from electropositive to electronegative.
 
-    Counts are divided by the largest whole number that divides the site counts of all species, so that a supercell
-    has the formula of its cell. Order: N. G. Connelly et al., Nomenclature of Inorganic Chemistry (2005), Table VI.
+    Counts are divided by the largest whole number that divides the site counts of all species, so that a
+    supercell has the formula of its cell. Order: N. G. Connelly et al., Nomenclature of Inorganic Chemistry
+    (2005), Table VI.
     """
     sites = Counter(species)
     divisor = gcd(*sites.values())
-    totals: Counter[str] = Counter()
+    totals: dict[str, float] = {}
     for kind, count in sites.items():
         for element, occupancy in kind.parts:
-            totals[element] += occupancy * count / divisor  # type: ignore[assignment]
+            totals[element] = totals.get(element, 0.0) + occupancy * count / divisor
     ordered = sorted(totals, key=_iupac_order)
     return _counts_text({element: totals[element] for element in ordered})
 
@@ -102,7 +104,7 @@ def _counts_text(counts: Mapping[str, float]) -> str:
 
 
 def _iupac_order(element: str) -> tuple[float, int]:
-    """Sort key: noble gases, then group 1 to 17; heavy before light in a group; hydrogen between groups 15 and 16."""
+    """Sort key: noble gases, groups 1 to 17, heavy before light; hydrogen between groups 15 and 16."""
     number = ATOMIC_NUMBERS[element]
     if element == "H":
         return 15.5, 0

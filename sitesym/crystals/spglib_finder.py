@@ -25,7 +25,7 @@ def find_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmet
 
     # Without this the library returns None and keeps the reason in a global.
     spglib.error.OLD_ERROR_HANDLING = False
-    cell = (crystal.lattice, crystal.positions_frac, crystal.species_indices)
+    cell = (crystal.lattice.tolist(), crystal.positions_frac.tolist(), crystal.species_indices.tolist())
     try:
         dataset = spglib.get_symmetry_dataset(
             cell, symprec=tolerance_angstrom, angle_tolerance=_ANGLE_TOLERANCE
@@ -36,8 +36,8 @@ def find_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmet
         raise _not_found("no dataset", tolerance_angstrom)
     transformation = np.asarray(dataset.transformation_matrix, dtype=np.float64)
     origin_shift = np.asarray(dataset.origin_shift, dtype=np.float64)
-    primitive = np.asarray(dataset.mapping_to_primitive)
-    std_primitive = np.asarray(dataset.std_mapping_to_primitive)
+    primitive = np.asarray(dataset.mapping_to_primitive, dtype=np.int64)
+    std_primitive = np.asarray(dataset.std_mapping_to_primitive, dtype=np.int64)
     positions = _conventional_positions(
         crystal.positions_frac @ transformation.T + origin_shift,
         dataset.std_positions,
@@ -106,7 +106,7 @@ def niggli_lattice(lattice: FloatArray) -> FloatArray:
 def _conventional_positions(
     transformed: FloatArray, std_positions: FloatArray, primitive: IntArray, std_primitive: IntArray
 ) -> FloatArray:
-    """Idealised position of each file atom: of its copies under the centring translations, the nearest one."""
+    """Idealised position of each file atom: the nearest of its copies under the centring translations."""
     copies = np.argsort(std_primitive, kind="stable").reshape(len(np.unique(std_primitive)), -1)
     candidates = np.asarray(std_positions, dtype=np.float64)[copies[primitive]]
     difference = candidates - transformed[:, None, :]

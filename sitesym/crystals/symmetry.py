@@ -1,8 +1,8 @@
 """The symmetry of a crystal: space group, conventional cell, full point group, sites.
 
-The point group is that of the crystal, whatever cell describes it. A finder's list of operations for a supercell
-holds only those that map the supercell onto itself (of GaAs 1x1x2: -42m, not -43m); here the operations of the
-conventional cell, from the database, are taken to the file's Cartesian axes.
+The point group is that of the crystal, whatever cell describes it. A finder's list of operations for a
+supercell holds only those that map the supercell onto itself (of GaAs 1x1x2: -42m, not -43m); here the
+operations of the conventional cell, from the database, are taken to the file's Cartesian axes.
 """
 
 from __future__ import annotations
@@ -26,8 +26,8 @@ from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 class Idealisation:
     """What was changed to make the symmetry exact.
 
-    ``largest_strain``: of the cell, no unit. ``orthogonality_error``: largest entry of R R^T - 1 over the operations
-    before the cell was idealised. ``largest_shift_angstrom``: of an atom.
+    ``largest_strain``: of the cell, no unit. ``orthogonality_error``: largest entry of R R^T - 1 over the
+    operations before the cell was idealised. ``largest_shift_angstrom``: of an atom.
     """
 
     largest_strain: float
@@ -39,8 +39,9 @@ class Idealisation:
 class CrystalSymmetry:
     """A crystal with its symmetry at one tolerance.
 
-    ``conventional_lattice``: (3, 3) rows of the idealised conventional cell, angstrom, in the file's Cartesian axes.
-    ``point_group``: of the crystal, in the basis of that cell and the file's Cartesian axes.
+    ``conventional_lattice``: (3, 3) rows of the idealised conventional cell, angstrom, in the file's
+    Cartesian axes. ``point_group``: of the crystal, in the basis of that cell and the file's Cartesian
+    axes.
     """
 
     crystal: Crystal
@@ -82,7 +83,7 @@ class CrystalSymmetry:
 
     @cached_property
     def sites(self) -> tuple[Site, ...]:
-        """One for each orbit, in the order of its first atom in the file. Raises SymmetryError, see `build_sites`."""
+        """One for each orbit, in the order of its first atom. Raises SymmetryError, see `build_sites`."""
         return build_sites(self.crystal, self.found, self.conventional_lattice, self.point_group)
 
     def site(self, label: str) -> Site:
@@ -105,7 +106,7 @@ class CrystalSymmetry:
 def find_symmetry(
     crystal: Crystal, tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM
 ) -> CrystalSymmetry:
-    """The symmetry of a crystal; atoms within the tolerance (angstrom) of each other's images count as related.
+    """The symmetry of a crystal; atoms within the tolerance of each other's images count as related.
 
     Raises UsageError for a tolerance that is none, SymmetryNotFoundError when the finder gives no answer.
     """
@@ -117,7 +118,7 @@ def find_symmetry(
             "correct it",
         )
     found = find_with_spglib(crystal, tolerance_angstrom)
-    measured = np.linalg.solve(found.transformation.T, crystal.lattice)
+    measured = np.asarray(np.linalg.solve(found.transformation.T, crystal.lattice), dtype=np.float64)
     rotations = found.setting.point_rotations
     lattice = _idealised(measured, rotations)
     return CrystalSymmetry(
@@ -135,7 +136,8 @@ def find_symmetry(
 
 
 def _idealised(lattice: FloatArray, rotations: IntArray) -> FloatArray:
-    """The nearest cell (rows) that the rotations leave unchanged: mean metric tensor, turned as little as can be."""
+    """The nearest cell (rows) that the rotations leave unchanged: mean metric, turned as little as
+    possible."""
     metric = np.mean(np.swapaxes(rotations, 1, 2) @ (lattice @ lattice.T) @ rotations, axis=0)
     upper = np.linalg.cholesky(metric).T
     # lattice.T = turn @ upper up to the strain; the orthogonal factor of the polar decomposition is the turn.

@@ -39,8 +39,9 @@ def check_structure(lattice: FloatArray, positions_frac: FloatArray, labels: Seq
 
 def plane_spacings(lattice: FloatArray) -> FloatArray:
     """(3,) distances in angstrom between neighbouring (100), (010) and (001) lattice planes."""
-    inverse: FloatArray = np.linalg.inv(lattice)
-    return 1.0 / np.asarray(np.linalg.norm(inverse, axis=0))
+    inverse = np.asarray(np.linalg.inv(lattice), dtype=np.float64)
+    spacings: FloatArray = 1.0 / np.linalg.norm(inverse, axis=0)
+    return spacings
 
 
 def closest_pair(
@@ -52,7 +53,7 @@ def closest_pair(
     """
     from scipy.spatial import cKDTree
 
-    wrapped = positions_frac - np.floor(positions_frac)
+    wrapped: FloatArray = positions_frac - np.floor(positions_frac)
     index = np.arange(len(wrapped))
     for axis, margin in enumerate(within_angstrom / plane_spacings(lattice)):
         # An atom this close to the lower face has a neighbour, if any, beyond the upper one.
@@ -136,7 +137,7 @@ def _check_distances(lattice: FloatArray, positions_frac: FloatArray, labels: Se
     first, second, distance = pair
     raise OverlappingAtomsError(
         "two atoms overlap",
-        f"{labels[first]} (atom {first + 1}) and {labels[second]} (atom {second + 1}) are {distance:.4g} angstrom apart",
+        f"{labels[first]} and {labels[second]} (atoms {first + 1}, {second + 1}): {distance:.4g} angstrom",
         f"atoms are at least {SMALLEST_DISTANCE_ANGSTROM:g} angstrom apart",
         "remove the doubled atom, or give both as one mixed site with occupancies",
     )
