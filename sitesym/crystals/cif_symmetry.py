@@ -280,7 +280,7 @@ def _cell_text(lattice: FloatArray) -> str:
 
 
 def xyz_text(rotation: IntArray, translation: FloatArray) -> str:
-    """An operation as in a CIF: rotation (3, 3) integers and translation (3,) in whole 24ths give -y,x-y,z+1/3."""
+    """An operation as in a CIF, such as -y,x-y,z+1/3: rotation (3, 3), translation (3,) in whole 24ths."""
     import gemmi
 
     operation = gemmi.Op()

@@ -16,8 +16,9 @@ AVERAGE_STRUCTURE = "average structure: mixed or partly filled sites count as sp
 def sites_document(symmetry: CrystalSymmetry) -> Document:
     """The document `sitesym.sites/1` of a crystal's symmetry: strict JSON types, lengths in angstrom.
 
-    Directions ending in ``_file`` are unit vectors in the file's Cartesian axes, those ending in ``_lattice`` refer
-    to the conventional cell, as do the operations. Raises SymmetryError when a site is not consistent.
+    Directions ending in ``_file`` are unit vectors in the file's Cartesian axes, those ending in
+    ``_lattice`` refer to the conventional cell, as do the operations. Raises SymmetryError when a site is
+    not consistent.
     """
     return {
         "schema": SCHEMA,
@@ -30,7 +31,8 @@ def sites_document(symmetry: CrystalSymmetry) -> Document:
 
 
 def crystal_entry(symmetry: CrystalSymmetry) -> dict[str, Any]:
-    """What every document says of a crystal: formula, space group, setting, cells, tolerance, idealisation."""
+    """What every document says of a crystal: formula, space group, setting, cells, tolerance,
+    idealisation."""
     crystal, setting, change = symmetry.crystal, symmetry.setting, symmetry.idealisation
     return {
         "formula": crystal.formula,
