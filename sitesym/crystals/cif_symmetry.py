@@ -13,6 +13,13 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray
+from sitesym.crystals.operations import (
+    StatedOperations,
+    cell_text,
+    check_cell_fits,
+    check_closed,
+    metric_misfit,
+)
 from sitesym.errors import SpaceGroupStatementError
 from sitesym.tolerances import CELL_METRIC
 
@@ -50,15 +57,6 @@ class Statements:
         return f"number {self.number}" if self.number else ""
 
 
-@dataclass(frozen=True, eq=False)
-class StatedOperations:
-    """``rotations`` (n, 3, 3), ``translations`` (n, 3) in the basis of the file's cell; what stated them."""
-
-    rotations: IntArray
-    translations: FloatArray
-    stated_by: str
-
-
 def stated_operations(block: gemmi.cif.Block, lattice: FloatArray) -> tuple[StatedOperations, Statements]:
     """The operations of a block with the cell ``lattice`` (rows, angstrom), and what the block states.
 
@@ -71,14 +69,9 @@ def stated_operations(block: gemmi.cif.Block, lattice: FloatArray) -> tuple[Stat
         np.array([operation.tran for operation in operations], dtype=np.float64) / operations[0].DEN,
         stated_by,
     )
-    if not _is_closed(result):
-        raise SpaceGroupStatementError(
-            "the listed operations are not a group",
-            f"{len(operations)} operations",
-            "the product of two operations is in the list",
-            "complete the list of operations",
-        )
-    _check_cell_fits(result, lattice)
+    if statements.operations:
+        check_closed(result)
+    check_cell_fits(result, lattice)
     return result, statements
 
 
@@ -191,14 +184,14 @@ def _numbered_settings(number: str) -> list[gemmi.SpaceGroup]:
 
 def _setting(settings: list[gemmi.SpaceGroup], stated: str, lattice: FloatArray) -> gemmi.SpaceGroup:
     """The one setting that fits the cell; more than one, or none, is an error that lists them."""
-    fitting = [group for group in settings if _metric_misfit(_rotations(group), lattice) < CELL_METRIC]
+    fitting = [group for group in settings if metric_misfit(_rotations(group), lattice) < CELL_METRIC]
     if len(fitting) == 1:
         return fitting[0]
     listed = ", ".join(group.xhm() for group in (fitting or settings))
     if not fitting:
         raise SpaceGroupStatementError(
             "the cell does not fit the stated space group",
-            f"{stated} ({listed}); cell {_cell_text(lattice)}",
+            f"{stated} ({listed}); cell {cell_text(lattice)}",
             "the operations leave the cell unchanged",
             "correct the cell or the space group",
         )
@@ -235,55 +228,3 @@ def _check_against_name(operations: list[gemmi.Op], statements: Statements, latt
 def _rotations(group: gemmi.SpaceGroup) -> IntArray:
     operations = list(group.operations().sym_ops)
     return np.array([operation.rot for operation in operations], dtype=np.int64) // operations[0].DEN
-
-
-def _metric_misfit(rotations: IntArray, lattice: FloatArray) -> float:
-    """Largest change of the metric tensor a.b under any rotation, relative to the longest edge squared."""
-    metric = lattice @ lattice.T
-    images = np.einsum("nki,kl,nlj->nij", rotations, metric, rotations)
-    scale = np.sqrt(np.outer(np.diag(metric), np.diag(metric)))
-    return float((np.abs(images - metric) / scale).max())
-
-
-def _check_cell_fits(operations: StatedOperations, lattice: FloatArray) -> None:
-    misfit = _metric_misfit(operations.rotations, lattice)
-    if misfit > CELL_METRIC:
-        raise SpaceGroupStatementError(
-            "the cell does not fit the stated operations",
-            f"{operations.stated_by}; cell {_cell_text(lattice)}; metric changes by {misfit:.2g} of itself",
-            "the operations leave the cell unchanged",
-            "correct the cell or the operations",
-        )
-
-
-def _is_closed(operations: StatedOperations) -> bool:
-    """True when every product of two operations is listed, lattice translations aside (in whole 24ths)."""
-    rotations = operations.rotations
-    shifts = np.rint(operations.translations * 24).astype(np.int64) % 24
-    listed = _codes(rotations, shifts)
-    products = np.einsum("aij,bjk->abik", rotations, rotations).reshape(-1, 3, 3)
-    moved = (np.einsum("aij,bj->abi", rotations, shifts) + shifts[:, None, :]).reshape(-1, 3) % 24
-    return bool(np.isin(_codes(products, moved), listed).all())
-
-
-def _codes(rotations: IntArray, shifts: IntArray) -> IntArray:
-    """One whole number for each operation: digits of W (offset by 4, base 9) and of 24 w."""
-    digits = np.clip(rotations.reshape(-1, 9) + 4, 0, 8) @ (9 ** np.arange(9))
-    codes: IntArray = digits * 24**3 + shifts @ np.array([1, 24, 24**2])
-    return codes
-
-
-def _cell_text(lattice: FloatArray) -> str:
-    edges = np.linalg.norm(lattice, axis=1)
-    cosines = [lattice[i] @ lattice[j] / (edges[i] * edges[j]) for i, j in ((1, 2), (0, 2), (0, 1))]
-    return " ".join(f"{value:.5g}" for value in (*edges, *np.degrees(np.arccos(cosines))))
-
-
-def xyz_text(rotation: IntArray, translation: FloatArray) -> str:
-    """An operation as in a CIF, such as -y,x-y,z+1/3: rotation (3, 3), translation (3,) in whole 24ths."""
-    import gemmi
-
-    operation = gemmi.Op()
-    operation.rot = (rotation * operation.DEN).tolist()
-    operation.tran = [round(float(step) * operation.DEN) for step in translation]
-    return str(operation.triplet())

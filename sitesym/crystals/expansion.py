@@ -11,14 +11,17 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from sitesym.arrays import FloatArray
-from sitesym.crystals.cif_symmetry import StatedOperations
+from sitesym.arrays import FloatArray, IntArray
+from sitesym.crystals.operations import StatedOperations
 from sitesym.crystals.species import Species
 from sitesym.errors import OverlappingAtomsError
 from sitesym.tolerances import MERGE_DISTANCE_ANGSTROM
 
-# After a site has been moved its images coincide to rounding; distinct images are farther apart than this.
-_SAME_IMAGE_ANGSTROM = 0.5 * MERGE_DISTANCE_ANGSTROM
+# Points of the grid along a cell edge on which images count as the same. A site that was moved onto its
+# special position has images equal to rounding; the offset keeps simple fractions away from the limits
+# between grid points.
+_GRID = 24 * 41666
+_GRID_OFFSET = 0.137
 _REPORTED_MOVE_ANGSTROM = 1e-6
 
 
@@ -86,10 +89,7 @@ def _orbit(site: ListedSite, operations: StatedOperations, lattice: FloatArray) 
             break
         fixing = near
     images = _images(position, operations)
-    apart = images[:, None, :] - images[None, :, :]
-    apart -= np.rint(apart)
-    same = np.linalg.norm(apart @ lattice, axis=2) < _SAME_IMAGE_ANGSTROM
-    distinct = images[same.argmax(axis=1) == np.arange(len(images))]
+    distinct = images[np.sort(np.unique(_grid_codes(images), return_index=True)[1])]
     if len(distinct) * int(fixing.sum()) != len(images):
         raise OverlappingAtomsError(
             f"images of site {site.label} come close without meeting on a special position",
@@ -104,6 +104,13 @@ def _orbit(site: ListedSite, operations: StatedOperations, lattice: FloatArray) 
 def _images(position: FloatArray, operations: StatedOperations) -> FloatArray:
     images: FloatArray = operations.rotations @ position + operations.translations
     return images
+
+
+def _grid_codes(images: FloatArray) -> IntArray:
+    """One whole number for each image (m, 3), equal for images that are the same modulo the lattice."""
+    nodes = np.rint(images * _GRID + _GRID_OFFSET).astype(np.int64) % _GRID
+    codes: IntArray = nodes @ np.array([_GRID * _GRID, _GRID, 1])
+    return codes
 
 
 def _in_cell(positions: FloatArray) -> FloatArray:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from sitesym.crystals import CrystalSymmetry, Site, SiteAxis
-from sitesym.crystals.cif_symmetry import xyz_text
+from sitesym.crystals.operations import xyz_text
 from sitesym.reports.markup import Document
 from sitesym.reports.provenance import CAUTION, library_versions
 

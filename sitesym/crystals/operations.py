@@ -1,0 +1,85 @@
+"""Space-group operations in the basis of a cell: whether they are a group, fit the cell, and their text."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from sitesym.arrays import FloatArray, IntArray
+from sitesym.errors import SpaceGroupStatementError
+from sitesym.tolerances import CELL_METRIC
+
+
+@dataclass(frozen=True, eq=False)
+class StatedOperations:
+    """``rotations`` (n, 3, 3), ``translations`` (n, 3) in the basis of the file's cell; what stated them."""
+
+    rotations: IntArray
+    translations: FloatArray
+    stated_by: str
+
+
+def xyz_text(rotation: IntArray, translation: FloatArray) -> str:
+    """An operation as in a CIF, such as -y,x-y,z+1/3: rotation (3, 3), translation (3,) in whole 24ths."""
+    import gemmi
+
+    operation = gemmi.Op()
+    operation.rot = (rotation * operation.DEN).tolist()
+    operation.tran = [round(float(step) * operation.DEN) for step in translation]
+    return str(operation.triplet())
+
+
+def check_closed(operations: StatedOperations) -> None:
+    """Every product of two operations is listed, lattice translations aside; else
+    SpaceGroupStatementError."""
+    rotations, count = operations.rotations, len(operations.rotations)
+    shifts = np.rint(operations.translations * 24).astype(np.int64) % 24
+    # One product of floats (small whole numbers, so exact) is far faster than many of integers.
+    rows = rotations.astype(np.float64).reshape(-1, 3)
+    columns = np.concatenate([rotations.transpose(1, 0, 2).reshape(3, -1), shifts.T], axis=1)
+    both = (rows @ columns).astype(np.int64).reshape(count, 3, -1)
+    products = both[:, :, : 3 * count].reshape(count, 3, count, 3).transpose(0, 2, 1, 3).reshape(-1, 3, 3)
+    moved = (both[:, :, 3 * count :].transpose(0, 2, 1) + shifts[:, None, :]).reshape(-1, 3) % 24
+    missing = ~np.isin(_codes(products, moved), _codes(rotations, shifts))
+    if missing.any():
+        raise SpaceGroupStatementError(
+            "the listed operations are not a group",
+            f"{int(missing.sum())} of {count * count} products of the {count} operations are not listed",
+            "the product of two operations is in the list",
+            "complete the list of operations",
+        )
+
+
+def check_cell_fits(operations: StatedOperations, lattice: FloatArray) -> None:
+    """The operations leave the cell ``lattice`` (rows, angstrom) unchanged; else SpaceGroupStatementError."""
+    misfit = metric_misfit(operations.rotations, lattice)
+    if misfit > CELL_METRIC:
+        raise SpaceGroupStatementError(
+            "the cell does not fit the stated operations",
+            f"{operations.stated_by}; cell {cell_text(lattice)}; metric changes by {misfit:.2g} of itself",
+            "the operations leave the cell unchanged",
+            "correct the cell or the operations",
+        )
+
+
+def metric_misfit(rotations: IntArray, lattice: FloatArray) -> float:
+    """Largest change of the metric tensor a.b under any rotation, relative to the longest edge squared."""
+    metric = lattice @ lattice.T
+    images = np.einsum("nki,kl,nlj->nij", rotations, metric, rotations)
+    scale = np.sqrt(np.outer(np.diag(metric), np.diag(metric)))
+    return float((np.abs(images - metric) / scale).max())
+
+
+def cell_text(lattice: FloatArray) -> str:
+    """Lengths in angstrom and angles in degrees of a cell (rows)."""
+    edges = np.linalg.norm(lattice, axis=1)
+    cosines = [lattice[i] @ lattice[j] / (edges[i] * edges[j]) for i, j in ((1, 2), (0, 2), (0, 1))]
+    return " ".join(f"{value:.5g}" for value in (*edges, *np.degrees(np.arccos(cosines))))
+
+
+def _codes(rotations: IntArray, shifts: IntArray) -> IntArray:
+    """One whole number for each operation: digits of W (offset by 4, base 9) and of 24 w."""
+    digits = np.clip(rotations.reshape(-1, 9) + 4, 0, 8) @ (9 ** np.arange(9))
+    codes: IntArray = digits * 24**3 + shifts @ np.array([1, 24, 24**2])
+    return codes
