@@ -1,6 +1,93 @@
 """From a crystal structure file to its site symmetries, irreps and symmetry-allowed tensor components.
 
-The names below load on first use, so that ``import sitesym`` stays light.
+>>> import sitesym
+>>> group = sitesym.PointGroup.from_symbol("32")
+>>> form = sitesym.allowed_form(sitesym.kind("piezoelectric-strain"), group)
+>>> form.independent, str(form.components["26"]["11"])
+(('11', '14'), '-2')
+
+Names load on first use, so that ``import sitesym`` stays light.
 """
 
+from __future__ import annotations
+
+import importlib
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from sitesym.crystals import (
+        Axes,
+        Crystal,
+        CrystalSymmetry,
+        Site,
+        axes_for,
+        find_symmetry,
+        read_crystal,
+        read_crystals,
+    )
+    from sitesym.errors import SitesymError
+    from sitesym.groups import CharacterTable, PointGroup, character_table, standard_rotation
+    from sitesym.screening import screen_folder
+    from sitesym.tensors import (
+        AllowedForm,
+        TensorKind,
+        TensorSpace,
+        all_kinds,
+        allowed_form,
+        independent_count,
+        kind,
+        kind_from_jahn,
+    )
+
 __version__ = "0.1.0"
+
+_HOMES = {
+    "sitesym.crystals": (
+        "Axes", "Crystal", "CrystalSymmetry", "Site", "axes_for", "find_symmetry", "read_crystal",
+        "read_crystals",
+    ),
+    "sitesym.errors": ("SitesymError",),
+    "sitesym.groups": ("CharacterTable", "PointGroup", "character_table", "standard_rotation"),
+    "sitesym.screening": ("screen_folder",),
+    "sitesym.tensors": (
+        "AllowedForm", "TensorKind", "TensorSpace", "all_kinds", "allowed_form", "independent_count", "kind",
+        "kind_from_jahn",
+    ),
+}  # fmt: skip
+_HOME_OF = {name: home for home, names in _HOMES.items() for name in names}
+
+__all__ = [
+    "AllowedForm",
+    "Axes",
+    "CharacterTable",
+    "Crystal",
+    "CrystalSymmetry",
+    "PointGroup",
+    "Site",
+    "SitesymError",
+    "TensorKind",
+    "TensorSpace",
+    "all_kinds",
+    "allowed_form",
+    "axes_for",
+    "character_table",
+    "find_symmetry",
+    "independent_count",
+    "kind",
+    "kind_from_jahn",
+    "read_crystal",
+    "read_crystals",
+    "screen_folder",
+    "standard_rotation",
+]
+
+
+def __getattr__(name: str) -> Any:
+    """The public name, from the module that defines it."""
+    if name not in _HOME_OF:
+        raise AttributeError(f"module 'sitesym' has no attribute {name!r}")
+    return getattr(importlib.import_module(_HOME_OF[name]), name)
+
+
+def __dir__() -> list[str]:
+    return [*__all__, "__version__"]

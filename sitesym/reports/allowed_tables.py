@@ -18,16 +18,8 @@ from sitesym.reports.expressions import (
     latex_namer,
     text_namer,
 )
-from sitesym.reports.headings import header_lines
-from sitesym.reports.markup import (
-    Document,
-    csv_text,
-    latex_escape,
-    latex_table,
-    markdown_escape,
-    markdown_table,
-)
-from sitesym.reports.provenance import CAUTION, versions_line
+from sitesym.reports.headings import latex_footer, latex_header, markdown_footer, markdown_header
+from sitesym.reports.markup import Document, csv_text, latex_escape, markdown_escape, markdown_table
 
 CSV_COLUMNS = (
     "group", "axes", "property", "component", "name", "status", "expression", "exact", "unit",
@@ -59,21 +51,16 @@ def _status(entry: Property, key: str) -> str:
 
 def allowed_markdown(document: Document) -> str:
     """Conventions as a list, each property as a table of its matrix and a line of equations."""
-    lines = ["# Symmetry-allowed components", ""]
-    for label, text in header_lines(document):
-        lines.append(f"- **{label}** {markdown_escape('; '.join(text.splitlines()))}")
+    blocks = ["# Symmetry-allowed components", markdown_header(document)]
     for entry in document["properties"]:
-        lines.extend(
-            ["", f"## {entry['name']} ({markdown_escape(entry['symbol'])})", "", *_markdown_property(entry)]
-        )
-    lines.extend(["", f"Versions: {versions_line(document['versions'])}", "", f"> {CAUTION}"])
-    return "\n".join(lines) + "\n"
+        blocks.append(f"## {entry['name']} ({markdown_escape(entry['symbol'])})")
+        blocks.extend(_markdown_property(entry))
+    return "\n\n".join([*blocks, markdown_footer(document)])
 
 
 def _markdown_property(entry: Property) -> Iterator[str]:
     name = text_namer(entry["symbol"])
     yield markdown_escape(_summary(entry))
-    yield ""
     if not entry["components"]:
         return
     matrix = component_matrix(entry)
@@ -84,7 +71,6 @@ def _markdown_property(entry: Property) -> Iterator[str]:
             for (digit, axes), keys in zip(matrix.rows, matrix.keys, strict=True)
         ]
         yield markdown_table(head, rows)
-        yield ""
     equations = relations(entry, name)
     if equations:
         yield f"Relations: {'; '.join(f'`{equation}`' for equation in equations)}"
@@ -105,25 +91,12 @@ def _summary(entry: Property) -> str:
 
 
 def allowed_latex(document: Document) -> str:
-    """A fragment for a paper: conventions as a table, each property as a matrix (amsmath)."""
-    lines = [
-        "% needs amsmath",
-        latex_table(["", ""], [(label, _one_line(text)) for label, text in _head(document)]),
-    ]
+    """A fragment for a paper: conventions as a list, each property as a matrix (amsmath)."""
+    blocks = [f"% needs amsmath\n{latex_header(document)}"]
     for entry in document["properties"]:
-        lines.extend(["", rf"\paragraph{{{latex_escape(entry['name'])}}} {latex_escape(_summary(entry))}"])
-        lines.extend(_latex_property(entry))
-    lines.extend(["", latex_escape(CAUTION)])
-    return "\n".join(lines) + "\n"
-
-
-def _head(document: Document) -> Iterator[tuple[str, str]]:
-    yield from header_lines(document)
-    yield "versions", versions_line(document["versions"])
-
-
-def _one_line(text: str) -> str:
-    return "; ".join(text.splitlines())
+        title = rf"\paragraph{{{latex_escape(entry['name'])}}} {latex_escape(_summary(entry))}"
+        blocks.append("\n".join([title, *_latex_property(entry)]))
+    return "\n\n".join([*blocks, latex_footer(document)])
 
 
 def _latex_property(entry: Property) -> Iterator[str]:

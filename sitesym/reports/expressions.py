@@ -6,6 +6,7 @@ A component of an allowed form is a mapping from independent keys to coefficient
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Mapping
 from functools import reduce
 from math import lcm
@@ -53,6 +54,8 @@ def combination(terms: Mapping[str, str], name: Namer, fraction: str = "{top}/{b
     '(c11 - c12)/2'
     >>> combination({"11": "sqrt(3)/2", "12": "1"}, text_namer("d"))
     '(sqrt(3) d11 + 2 d12)/2'
+    >>> combination({"11": "1/2 + sqrt(3)/2"}, text_namer("d"))
+    '(1/2 + sqrt(3)/2) d11'
     """
     if not terms:
         return "0"
@@ -75,12 +78,13 @@ def latex_combination(terms: Mapping[str, str], name: Namer) -> str:
     >>> latex_combination({"11": "1/2", "12": "-1/2"}, latex_namer("c"))
     '\\frac{c_{11} - c_{12}}{2}'
     """
-    text = combination(terms, name, r"\frac{{{top}}}{{{bottom}}}")
-    return text.replace("sqrt(", r"\sqrt{").replace(")", "}") if "sqrt(" in text else text
+    return re.sub(r"sqrt\((\d+)\)", r"\\sqrt{\1}", combination(terms, name, r"\frac{{{top}}}{{{bottom}}}"))
 
 
 def _split(coefficient: str) -> tuple[str, int]:
-    """Numerator as text and denominator of "a/b"; a float has the denominator 1."""
+    """Numerator as text and denominator of "a/b"; a float, or a sum in brackets, has the denominator 1."""
+    if " " in coefficient:
+        return f"({coefficient})", 1
     top, _, bottom = coefficient.partition("/")
     return top, int(bottom) if bottom else 1
 

@@ -6,8 +6,11 @@ from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
 from sitesym.reports.layout import labelled, paragraph, vector_text
-from sitesym.reports.markup import Document
+from sitesym.reports.markup import Document, latex_escape, markdown_escape
 from sitesym.reports.provenance import CAUTION, versions_line
+
+#: Shifts (angstrom) and strains below this are rounding of the file's numbers.
+_ROUNDING = 1e-9
 
 
 def header(document: Document) -> str:
@@ -20,6 +23,32 @@ def footer(document: Document) -> str:
     return "\n".join([labelled("versions", versions_line(document["versions"])), "", paragraph(CAUTION)])
 
 
+def markdown_header(document: Document) -> str:
+    """The same as a list."""
+    lines = (f"- **{label}** {markdown_escape(_one_line(text))}" for label, text in header_lines(document))
+    return "\n".join(lines)
+
+
+def markdown_footer(document: Document) -> str:
+    """Versions and caution."""
+    return f"Versions: {versions_line(document['versions'])}\n\n> {CAUTION}\n"
+
+
+def latex_header(document: Document) -> str:
+    """The same as a description list."""
+    lines = (rf"\item[{label}] {latex_escape(_one_line(text))}" for label, text in header_lines(document))
+    return "\n".join([r"\begin{description}", *lines, r"\end{description}"])
+
+
+def latex_footer(document: Document) -> str:
+    """Versions and caution."""
+    return f"Versions: {latex_escape(versions_line(document['versions']))}.\n\n{latex_escape(CAUTION)}\n"
+
+
+def _one_line(text: str) -> str:
+    return "; ".join(" ".join(line.split()) for line in text.splitlines())
+
+
 def header_lines(document: Document) -> Iterator[tuple[str, str]]:
     """(label, text) of each statement the document has; a text may have several lines."""
     group, crystal, site = document.get("group"), document.get("crystal"), document.get("site")
@@ -30,7 +59,11 @@ def header_lines(document: Document) -> Iterator[tuple[str, str]]:
     if crystal:
         yield from crystal_lines(crystal)
     if document.get("axes"):
-        yield "axes", axes_text(document["axes"], crystal)
+        yield "axes", axes_text(document["axes"], bool(crystal))
+    elif crystal:
+        yield "axes", f"file: {crystal['frame']}"
+    if crystal:
+        yield "cell", "\n".join(_rows("abc", crystal["lattice"], "angstrom, in the file's Cartesian axes"))
     for remark in document.get("remarks", ()):
         yield "remark", remark
 
@@ -54,26 +87,50 @@ def site_text(site: Mapping[str, Any]) -> str:
 
 
 def crystal_lines(crystal: Mapping[str, Any]) -> Iterator[tuple[str, str]]:
-    """Formula, space group and the tolerance both were found with."""
+    """Formula; space group detected and declared; setting; the tolerance, and what it idealised."""
     name = f"{crystal['formula']}, {crystal['atoms']} atoms"
-    yield "crystal", f"{name}, from {crystal['source']}" if crystal.get("source") else name
-    space_group = f"{crystal['space_group']} (number {crystal['space_group_number']}"
+    origin = ", ".join(text for text in (crystal["source"], crystal["part"]) if text)
+    yield "crystal", f"{name}, from {origin}" if origin else name
+    declared = crystal["declared_space_group"]
+    stated = f"the file declares {declared}" if declared else "the file declares none"
+    number, group = crystal["space_group_number"], crystal["point_group_oriented"]
+    yield "symmetry", f"{crystal['space_group']} (number {number}), point group {group}; {stated}"
+    yield "setting", _setting_text(crystal)
     yield (
-        "symmetry",
-        f"{space_group}, Hall number {crystal['hall_number']}), point group {crystal['point_group']}",
+        "tolerance",
+        f"{crystal['tolerance_angstrom']:g} angstrom; {_idealised_text(crystal['idealisation'])}",
     )
-    yield "tolerance", f"{crystal['tolerance_angstrom']:g} angstrom"
 
 
-def axes_text(axes: Mapping[str, Any], crystal: Mapping[str, Any] | None = None) -> str:
-    """Name and edition of the axes, their directions, and the cell in the file's axes."""
-    lines = [f"{axes['name']} ({axes['edition']})" if axes.get("edition") else axes["name"]]
-    rotation = axes.get("rotation_from_file")
-    if rotation is not None:
-        where = "in the file's Cartesian axes" if crystal else "in the axes of the group's symbol"
-        lines.extend(_rows("xyz", rotation, where))
-    if crystal and crystal.get("lattice"):
-        lines.extend(_rows("abc", crystal["lattice"], "angstrom, in the file's Cartesian axes"))
+def _idealised_text(change: Mapping[str, float]) -> str:
+    shift, strain = change["largest_shift_angstrom"], change["largest_strain"]
+    if max(shift, strain) < _ROUNDING:
+        return "the symmetry is exact in the file"
+    return f"made exact by moving atoms at most {shift:.1e} angstrom and straining the cell by {strain:.1e}"
+
+
+def _setting_text(crystal: Mapping[str, Any]) -> str:
+    """Hall number and symbol, and the way from the file's cell to the conventional one."""
+    hall = f"Hall number {crystal['hall_number']} ({crystal['hall_symbol']})"
+    matrix = "; ".join(
+        " ".join(f"{round(value, 6) + 0.0:g}" for value in row) for row in crystal["transformation"]
+    )
+    shift = " ".join(f"{round(value, 6) + 0.0:g}" for value in crystal["origin_shift"])
+    return f"{hall}; x_conventional = P x_file + p with P = ({matrix}), p = ({shift})"
+
+
+def _numbers(row: Sequence[float]) -> str:
+    return " ".join(f"{round(value, 6) + 0.0:g}" for value in row)
+
+
+def axes_text(axes: Mapping[str, Any], from_file: bool) -> str:
+    """Name, edition and note of the axes, and their directions in the file's (or the symbol's) axes."""
+    edition = f" ({axes['edition']})" if axes.get("edition") else ""
+    note = f": {axes['note']}" if axes.get("note") else ""
+    lines = [f"{axes['name']}{edition}{note}"]
+    if axes.get("rotation_from_file") is not None:
+        where = "in the file's Cartesian axes" if from_file else "in the lattice axes of the symbol"
+        lines.extend(_rows("xyz", axes["rotation_from_file"], where))
     return "\n".join(lines)
 
 

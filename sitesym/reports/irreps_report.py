@@ -5,7 +5,14 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
-from sitesym.reports.headings import footer, header, header_lines
+from sitesym.reports.headings import (
+    footer,
+    header,
+    latex_footer,
+    latex_header,
+    markdown_footer,
+    markdown_header,
+)
 from sitesym.reports.layout import labelled, table
 from sitesym.reports.markup import (
     Document,
@@ -15,7 +22,6 @@ from sitesym.reports.markup import (
     markdown_escape,
     markdown_table,
 )
-from sitesym.reports.provenance import CAUTION, versions_line
 
 CSV_COLUMNS = (
     "group", "irrep", "dimension", "reality", "class", "class_size", "character", "real_part",
@@ -32,7 +38,7 @@ def irreps_text(document: Document, matrices: bool = False) -> str:
         header(document),
         f"characters (columns: classes; second line: elements in the class)\n\n{drawn}",
     ]
-    blocks.extend(_notes(document))
+    blocks.append("\n".join(labelled(label, text) for label, text in _notes(document)))
     blocks.append("elements\n\n" + table(("number", "name", "class"), _element_rows(document), indent=2))
     if matrices:
         blocks.append("matrices (unitary; one for each element)")
@@ -48,26 +54,17 @@ def irreps_csv(document: Document) -> str:
 
 def irreps_markdown(document: Document) -> str:
     """The character table and the notes."""
-    lines = ["# Irreducible representations", ""]
-    for label, text in header_lines(document):
-        lines.append(f"- **{label}** {markdown_escape('; '.join(text.splitlines()))}")
-    lines.extend(["", markdown_table(*_sized_table(document)), ""])
-    lines.extend(f"{markdown_escape(note)}\n" for note in _notes(document))
-    lines.extend([f"Versions: {versions_line(document['versions'])}", "", f"> {CAUTION}"])
-    return "\n".join(lines) + "\n"
+    drawn = markdown_table(*_sized_table(document))
+    blocks = ["# Irreducible representations", markdown_header(document), drawn]
+    notes = (f"{label}: {markdown_escape(text)}" for label, text in _notes(document))
+    return "\n\n".join([*blocks, *notes, markdown_footer(document)])
 
 
 def irreps_latex(document: Document) -> str:
     """The character table as a tabular, and the notes."""
-    lines = [
-        latex_table(
-            ("", ""), [(label, "; ".join(text.splitlines())) for label, text in header_lines(document)]
-        )
-    ]
-    lines.extend(["", latex_table(*_sized_table(document)), ""])
-    lines.extend(f"{latex_escape(note)}\n" for note in _notes(document))
-    lines.append(latex_escape(CAUTION))
-    return "\n".join(lines) + "\n"
+    drawn = latex_table(*_sized_table(document))
+    notes = (f"{label}: {latex_escape(text)}" for label, text in _notes(document))
+    return "\n\n".join([latex_header(document), drawn, *notes, latex_footer(document)])
 
 
 def _table_cells(document: Document) -> tuple[list[str], list[list[str]]]:
@@ -101,18 +98,15 @@ def _csv_rows(document: Document) -> Iterator[tuple[object, ...]]:
             yield *common, entry["label"], entry["size"], exact, real, imaginary
 
 
-def _notes(document: Document) -> Iterator[str]:
+def _notes(document: Document) -> Iterator[tuple[str, str]]:
+    """(label, text) of what stands below the table."""
     pairs = document.get("joined")
     if pairs:
-        yield labelled(
-            "joined", "; ".join(f"{pair['label']} = {' + '.join(pair['members'])}" for pair in pairs)
-        )
+        yield "joined", "; ".join(f"{pair['label']} = {' + '.join(pair['members'])}" for pair in pairs)
     reduction = document.get("reduction")
     if reduction:
-        yield labelled("reduction", f"{reduction['property']} = {_sum(reduction['multiplicity'])}")
-    yield labelled(
-        "checks", "; ".join(_check_text(name, value) for name, value in document["checks"].items())
-    )
+        yield "reduction", f"{reduction['property']} = {_sum(reduction['multiplicity'])}"
+    yield "checks", "; ".join(_check_text(name, value) for name, value in document["checks"].items())
 
 
 def _sum(multiplicity: Mapping[str, int]) -> str:

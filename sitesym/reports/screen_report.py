@@ -6,9 +6,10 @@ from collections import Counter
 from collections.abc import Iterable
 from typing import Any
 
+from sitesym.reports.headings import footer, latex_footer, markdown_footer
 from sitesym.reports.layout import cell_text, labelled, paragraph, table
 from sitesym.reports.markup import Document, csv_text, latex_escape, latex_table, markdown_table
-from sitesym.reports.provenance import CAUTION, library_versions, versions_line
+from sitesym.reports.provenance import library_versions
 from sitesym.screening import COLUMNS, Row
 
 #: What a person sees of a row: head and column. Every column is in CSV and JSON.
@@ -53,12 +54,12 @@ def screen_text(document: Document) -> str:
     good = [row for row in rows if row["status"] == "ok"]
     bad = [row for row in rows if row["status"] != "ok"]
     if good:
-        blocks.append(table(_HEAD, ([row[column] for _, column in _SHOWN] for row in good), right=_RIGHT))
-        blocks.append(paragraph("Columns d, eps and c count the independent components of these tensors."))
+        blocks.append(table(_HEAD, map(_shown, good), right=_RIGHT))
+        blocks.append(paragraph("A dot is a no. Columns d, eps and c count independent components."))
     if bad:
         blocks.append("\n".join(["could not be read or settled", *map(_failure, bad)]))
     blocks.append(labelled("summary", _summary(document)))
-    blocks.append(f"{labelled('versions', versions_line(document['versions']))}\n\n{paragraph(CAUTION)}")
+    blocks.append(footer(document))
     return "\n\n".join(blocks) + "\n"
 
 
@@ -74,22 +75,21 @@ def screen_csv(document: Document) -> str:
 
 def screen_markdown(document: Document) -> str:
     """The table a person sees, failures included, and the counts."""
-    lines = ["# Screening", "", _summary(document), f"Tolerance: {_tolerance(document)}.", ""]
-    head, rows = _with_status(document)
-    lines.extend([markdown_table(head, rows), "", f"Versions: {versions_line(document['versions'])}", ""])
-    return "\n".join([*lines, f"> {CAUTION}"]) + "\n"
+    facts = f"{_summary(document)}. Tolerance: {_tolerance(document)}."
+    drawn = markdown_table(*_with_status(document))
+    return "\n\n".join(["# Screening", facts, drawn, markdown_footer(document)])
 
 
 def screen_latex(document: Document) -> str:
     """The same as a tabular."""
-    lines = [
-        latex_table(*_with_status(document)),
-        "",
-        latex_escape(_summary(document)),
-        "",
-        latex_escape(CAUTION),
-    ]
-    return "\n".join(lines) + "\n"
+    facts = latex_escape(f"{_summary(document)}. Tolerance: {_tolerance(document)}.")
+    return "\n\n".join([latex_table(*_with_status(document)), facts, latex_footer(document)])
+
+
+def _shown(row: Row) -> list[object]:
+    """The cells a person sees; a dot for no, so that the yes stands out."""
+    cells = (row[column] for _, column in _SHOWN)
+    return ["." if cell is False else cell for cell in cells]
 
 
 def _with_status(document: Document) -> tuple[tuple[str, ...], list[list[object]]]:

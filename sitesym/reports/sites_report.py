@@ -2,20 +2,19 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
-from sitesym.reports.headings import footer, header, header_lines
-from sitesym.reports.layout import cell_text, labelled, table, vector_text
-from sitesym.reports.markup import (
-    Document,
-    csv_text,
-    latex_escape,
-    latex_table,
-    markdown_escape,
-    markdown_table,
+from sitesym.reports.headings import (
+    footer,
+    header,
+    latex_footer,
+    latex_header,
+    markdown_footer,
+    markdown_header,
 )
-from sitesym.reports.provenance import CAUTION, versions_line
+from sitesym.reports.layout import TEXT_WIDTH, joined, labelled, table, vector_text
+from sitesym.reports.markup import Document, csv_text, latex_table, markdown_table
 
 #: Columns of the table of sites: head and field of the document.
 _COLUMNS = (
@@ -32,6 +31,7 @@ _COLUMNS = (
 )
 _HEAD = tuple(head for head, _ in _COLUMNS)
 _RIGHT = (2, 6)
+_AXES_HEAD = ("elements", "lattice direction", "unit vector in the file's axes (of m: its normal)")
 
 
 def sites_text(document: Document) -> str:
@@ -53,25 +53,13 @@ def sites_csv(document: Document) -> str:
 
 def sites_markdown(document: Document) -> str:
     """The table of sites under the conventions."""
-    lines = ["# Sites", ""]
-    for label, text in header_lines(document):
-        lines.append(f"- **{label}** {markdown_escape('; '.join(text.splitlines()))}")
-    lines.extend(["", markdown_table(_HEAD, _rows(document)), ""])
-    lines.extend([f"Versions: {versions_line(document['versions'])}", "", f"> {CAUTION}"])
-    return "\n".join(lines) + "\n"
+    drawn = markdown_table(_HEAD, _rows(document))
+    return "\n\n".join(["# Sites", markdown_header(document), drawn, markdown_footer(document)])
 
 
 def sites_latex(document: Document) -> str:
     """The table of sites as a tabular."""
-    heading = [(label, "; ".join(text.splitlines())) for label, text in header_lines(document)]
-    lines = [
-        latex_table(("", ""), heading),
-        "",
-        latex_table(_HEAD, _rows(document)),
-        "",
-        latex_escape(CAUTION),
-    ]
-    return "\n".join(lines) + "\n"
+    return "\n\n".join([latex_header(document), latex_table(_HEAD, _rows(document)), latex_footer(document)])
 
 
 def _rows(document: Document) -> Iterator[list[object]]:
@@ -81,18 +69,25 @@ def _rows(document: Document) -> Iterator[list[object]]:
 
 def _details(site: Mapping[str, Any]) -> str:
     title = f"{site['label']}  {site['multiplicity']}{site['wyckoff']}  {site['site_symmetry']}"
-    lines = [title, "-" * len(title), labelled("atoms", " ".join(map(str, site["atoms"])))]
-    axes = "\n".join(map(_axis_text, site["axes"]))
-    operations = "; ".join(map(_operation_text, site["operations"]))
-    lines.extend(
-        labelled(label, text) for label, text in (("axes", axes), ("operations", operations)) if text
-    )
+    position = " ".join(f"{value:.6f}" for value in site["position_conventional"])
+    lines = [
+        title,
+        "-" * len(title),
+        labelled("atoms", f"{' '.join(map(str, site['atoms']))}  (numbered from 0 in the file)"),
+        labelled("position", f"{position}  (fractional, first atom, conventional cell, idealised)"),
+    ]
+    if site["axes"]:
+        lines.append(labelled("axes", table(_AXES_HEAD, _axis_rows(site["axes"]))))
+    names = [f"{operation['name']}: {operation['xyz']}" for operation in site["operations"]]
+    lines.append(labelled("operations", joined(names, gap="   ", indent="", width=TEXT_WIDTH - 11)))
     return "\n".join(lines)
 
 
-def _axis_text(axis: Mapping[str, Any]) -> str:
-    return f"{cell_text(axis['name'])}  {vector_text(axis['direction'])}"
-
-
-def _operation_text(operation: Mapping[str, Any]) -> str:
-    return str(operation["name"])
+def _axis_rows(axes: Sequence[Mapping[str, Any]]) -> Iterator[tuple[str, str, str]]:
+    """One row a direction, with all elements about it."""
+    symbols: dict[str, list[str]] = {}
+    for axis in axes:
+        symbols.setdefault(axis["direction_lattice"], []).append(axis["name"])
+    vectors = {axis["direction_lattice"]: axis["direction_file"] for axis in axes}
+    for direction, names in symbols.items():
+        yield ", ".join(names), direction, vector_text(vectors[direction])

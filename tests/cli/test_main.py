@@ -26,7 +26,9 @@ except SystemExit as stop:
 def loaded_modules(*arguments: str) -> set[str]:
     """Top-level modules that a run of the command leaves loaded; the run must succeed."""
     script = PROBE.format(arguments=list(arguments))
-    run = subprocess.run([sys.executable, "-c", script], capture_output=True, text=True, check=True, timeout=120)
+    run = subprocess.run(
+        [sys.executable, "-c", script], capture_output=True, text=True, check=True, timeout=120
+    )
     code, *modules = run.stderr.split("|")
     assert code == "0", run.stderr
     return set(modules)

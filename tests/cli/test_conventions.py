@@ -1,0 +1,22 @@
+"""`sitesym conventions`: the page that explains every other output."""
+
+from __future__ import annotations
+
+import json
+
+from click.testing import CliRunner
+
+from sitesym.cli.main import main
+from sitesym.tensors import all_kinds
+
+
+def test_every_kind_of_tensor_is_listed_with_its_factors() -> None:
+    document = json.loads(CliRunner().invoke(main, ["conventions", "--format", "json"]).output)
+    listed = {kind["property"]: kind["factors in contracted indices"] for kind in document["kinds"]}
+    assert listed == {kind.name: kind.factor_rule for kind in all_kinds()}
+
+
+def test_the_page_names_axes_edition_order_and_labels() -> None:
+    text = " ".join(CliRunner().invoke(main, ["conventions"]).output.split())
+    statements = ("IEEE Std 176, edition 1978", "11 22 33 23 13 12", "v_new = R v_file", "R. S. Mulliken")
+    assert all(statement in text for statement in statements)
