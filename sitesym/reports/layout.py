@@ -7,7 +7,7 @@ from collections.abc import Iterable, Sequence
 from io import StringIO
 
 from rich.box import Box
-from rich.console import Console
+from rich.console import Console, JustifyMethod
 from rich.table import Table
 from rich.text import Text
 
@@ -76,7 +76,7 @@ def table(
         box=_UNDERLINED, show_header=head is not None, show_edge=False, pad_edge=False, padding=(0, 1, 0, 0)
     )
     for position in range(columns):
-        flush = "right" if right is not None and position in right else "left"
+        flush: JustifyMethod = "right" if right is not None and position in right else "left"
         drawn.add_column(Text(head[position]) if head is not None else "", justify=flush, no_wrap=True)
     for row in listed:
         drawn.add_row(*(Text(cell) for cell in row))
