@@ -45,13 +45,19 @@ class AbstractGroup:
         """Smallest e > 0 with g^e = 1 for every element."""
         return int(np.lcm.reduce(self.element_orders))
 
+    @cached_property
+    def power_table(self) -> IntArray:
+        """``power_table[k, g]`` = index of g^k for k from 0 to exponent - 1."""
+        elements = np.arange(self.order)
+        rows = [np.zeros(self.order, dtype=np.int64)]
+        for _ in range(self.exponent - 1):
+            rows.append(self.table[rows[-1], elements])
+        return np.array(rows)
+
     def powers(self, k: int) -> IntArray:
         """Index of g^k for each element g, k >= 0, shape (order,)."""
-        elements = np.arange(self.order)
-        power = np.zeros(self.order, dtype=np.int64)
-        for _ in range(k):
-            power = self.table[power, elements]
-        return power
+        row: IntArray = self.power_table[k % self.exponent]
+        return row
 
     @cached_property
     def classes(self) -> tuple[tuple[int, ...], ...]:

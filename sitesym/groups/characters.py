@@ -92,7 +92,7 @@ def _lifted(values: list[int], group: AbstractGroup, prime: int) -> tuple[RootSu
     """Exact values: the multiplicity of exp(2 pi i k / e) among the eigenvalues of g is a Fourier sum over g^l."""
     e = group.exponent
     root = primitive_root_of_unity(e, prime)
-    power_class = [[int(group.class_of[group.powers(power)[members[0]]]) for power in range(e)] for members in group.classes]
+    power_class = [group.class_of[group.power_table[:, members[0]]].tolist() for members in group.classes]
     exact = []
     for powers in power_class:
         multiplicities = [
