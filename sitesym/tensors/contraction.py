@@ -47,6 +47,12 @@ class Contraction:
         """Matrix element divided by tensor component, for each written component, shape (N,)."""
         return np.array([self._factor(tuple(row)) for row in self.multi_indices.tolist()])
 
+    @property
+    def commuting(self) -> bool:
+        """Whether all contracted indices may change places (c12 stands for c21): only sorted names are written."""
+        symmetry = self.kind.written
+        return isinstance(symmetry, Power) and symmetry.symmetric and self.kind.rank > 1
+
     @cached_property
     def keys(self) -> tuple[str, ...]:
         """Name of each written component: '14', '112', '13'."""

@@ -1,0 +1,97 @@
+"""The `allowed` document: for each property the components that a group allows, in stated axes."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+from typing import Any
+
+from sitesym.groups import PointGroup
+from sitesym.reports.markup import Document
+from sitesym.reports.provenance import CAUTION, library_versions
+from sitesym.tensors import AllowedForm, Coefficient, TensorKind, allowed_form, contraction, sense_choices
+
+SCHEMA = "sitesym.allowed/1"
+VOIGT_ORDER = "11 22 33 23 13 12"
+
+
+def allowed_document(
+    group: PointGroup,
+    kinds: Iterable[TensorKind],
+    axes: Mapping[str, Any],
+    crystal: Mapping[str, Any] | None = None,
+    site: Mapping[str, Any] | None = None,
+    remarks: Iterable[str] = (),
+) -> Document:
+    """The document `sitesym.allowed/1`.
+
+    ``group`` stands in the axes of the answer (``group.rotated(R)``); ``axes`` has name, edition, note and
+    rotation_from_file, ``crystal`` and ``site`` what the answer refers to, or None.
+    """
+    return {
+        "schema": SCHEMA,
+        "group": group_entry(group),
+        "crystal": dict(crystal) if crystal is not None else None,
+        "site": dict(site) if site is not None else None,
+        "axes": dict(axes),
+        "properties": [property_entry(kind, group) for kind in kinds],
+        "remarks": list(remarks),
+        "versions": library_versions(),
+        "caution": CAUTION,
+    }
+
+
+def group_entry(group: PointGroup) -> dict[str, Any]:
+    """What every document says of a point group."""
+    return {
+        "symbol": group.symbol,
+        "oriented": group.oriented,
+        "schoenflies": group.schoenflies,
+        "order": group.order,
+        "system": group.system,
+        "generators": [group.names[index] for index in group.generators],
+    }
+
+
+def property_entry(kind: TensorKind, group: PointGroup) -> dict[str, Any]:
+    """The allowed form of one kind, with its notation."""
+    form = allowed_form(kind, group)
+    notation = contraction(kind)
+    return {
+        "name": kind.name,
+        "symbol": kind.symbol,
+        "rank": kind.rank,
+        "index_symmetry": kind.jahn,
+        "parity": kind.parity,
+        "time_parity": "odd" if kind.time_odd else "even",
+        "unit": kind.unit,
+        "order": VOIGT_ORDER if 6 in notation.blocks else "",
+        "factor_rule": kind.factor_rule,
+        "indices": kind.indices,
+        "traceless": kind.traceless,
+        "blocks": list(notation.blocks),
+        "symmetric": notation.commuting,
+        "keys": list(notation.keys),
+        "independent_count": form.independent_count,
+        "independent": list(form.independent),
+        "components": _components(form),
+        "exact": form.exact,
+        "equivalent_axes": [
+            {"turn": choice.turn, "flips": list(choice.flips)} for choice in sense_choices(form, group)
+        ],
+    }
+
+
+def coefficient_text(coefficient: Coefficient) -> str:
+    """An exact number as it is ("1/2", "sqrt(3)/2"), a float with twelve digits.
+
+    >>> coefficient_text(1 / 3)
+    '0.333333333333'
+    """
+    return f"{coefficient:.12g}" if isinstance(coefficient, float) else str(coefficient)
+
+
+def _components(form: AllowedForm) -> dict[str, dict[str, str]]:
+    return {
+        key: {name: coefficient_text(value) for name, value in terms.items()}
+        for key, terms in form.components.items()
+    }
