@@ -33,7 +33,8 @@ _CELL_TAGS = tuple(f"_cell_{part}" for part in ("length_a", "length_b", "length_
 _COORDINATES = ("_atom_site_fract_x", "_atom_site_fract_y", "_atom_site_fract_z")
 _COLUMNS = (*_COORDINATES, "?_atom_site_label", "?_atom_site_type_symbol", "?_atom_site_occupancy")
 _ISOTOPES = {"D": "H", "T": "H"}
-_VACANCIES = ("VA", "VAC")
+# As type symbols and labels (Va1) for an empty place; VA1 may be a vanadium.
+_VACANCIES = ("Va", "Vac", "vac", "VAC")
 
 
 def read_cif(path: Path) -> tuple[Crystal, ...]:
@@ -119,7 +120,7 @@ def _listed_sites(block: gemmi.cif.Block, remarks: list[str]) -> list[ListedSite
         position = np.array([_number(row[i], f"{_COORDINATES[i]} of {_optional(row, 3)}") for i in range(3)])
         label, type_symbol = _optional(row, 3), _optional(row, 4)
         symbol = _element(type_symbol or label)
-        if symbol.upper() in _VACANCIES:
+        if symbol in _VACANCIES:
             remarks.append(f"site {label} is a vacancy and holds no atom")
             continue
         if symbol in _ISOTOPES:
@@ -178,14 +179,14 @@ def _occupancy(row: gemmi.cif.Table.Row, label: str) -> float:
 
 def _element(text: str) -> str:
     """Element of a type symbol or label: Ti4+, O2-, Ti1A, OW2. Two letters are tried before one."""
+    letters = text.rstrip("0123456789")
+    if letters in _VACANCIES:
+        return letters
     for length in (2, 1):
         symbol = text[:length].capitalize()
         known = symbol in ATOMIC_NUMBERS or symbol in _ISOTOPES
         if known and symbol.isalpha() and len(symbol) == length:
             return symbol
-    letters = "".join(character for character in text if character.isalpha())
-    if letters.upper() in _VACANCIES:
-        return letters
     raise ReadingError(
         "an atom of no known element",
         repr(text),

@@ -101,7 +101,7 @@ def _text(raw: str) -> str:
 def _choose(statements: Statements, lattice: FloatArray) -> tuple[list[gemmi.Op], str]:
     if statements.operations:
         operations = _parse_operations(statements.operations)
-        _check_against_name(operations, statements, lattice)
+        _check_against_name(operations, statements)
         return operations, "list of operations"
     if statements.hall:
         return _from_hall(statements.hall), f"Hall symbol {statements.hall}"
@@ -203,7 +203,7 @@ def _setting(settings: list[gemmi.SpaceGroup], stated: str, lattice: FloatArray)
     )
 
 
-def _check_against_name(operations: list[gemmi.Op], statements: Statements, lattice: FloatArray) -> None:
+def _check_against_name(operations: list[gemmi.Op], statements: Statements) -> None:
     """Compare the listed operations with the named space group, where one is named and known."""
     import gemmi
 
