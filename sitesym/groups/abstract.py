@@ -1,7 +1,7 @@
 """A finite group as its product table alone: inverses, classes, orders, powers, generators.
 
-No matrices here. Two sets of matrices that multiply alike share one `AbstractGroup`, so that whatever follows from
-the table (characters, classes) is computed once.
+No matrices here. Two sets of matrices that multiply alike share one `AbstractGroup`, so that whatever
+follows from the table (characters, classes) is computed once.
 """
 
 from __future__ import annotations
@@ -16,7 +16,9 @@ from sitesym.arrays import IntArray
 
 @dataclass(frozen=True, eq=False)
 class AbstractGroup:
-    """A finite group given by ``table[g, h]`` = index of the product g h (h acts first). Element 0 is the identity."""
+    """A finite group given by ``table[g, h]`` = index of the product g h (h acts first). Element 0 is the
+    identity.
+    """
 
     table: IntArray
 
@@ -79,7 +81,9 @@ class AbstractGroup:
 
     @cached_property
     def generators(self) -> tuple[int, ...]:
-        """A small generating set: the elements, of high order first, that enlarge what is generated so far."""
+        """A small generating set: the elements, of high order first, that enlarge what is generated so
+        far.
+        """
         chosen: list[int] = []
         reached = {0}
         for g in sorted(range(1, self.order), key=lambda g: (-int(self.element_orders[g]), g)):

@@ -1,10 +1,11 @@
 """Exact irreducible characters of a finite group from its classes alone (Burnside-Dixon).
 
-The class sums commute; their common eigenvectors, found modulo a prime p = 1 (mod exponent), are the characters
-modulo p, and the eigenvalue multiplicities of each element lift them to exact sums of roots of unity.
+The class sums commute; their common eigenvectors, found modulo a prime p = 1 (mod exponent), are the
+characters modulo p, and the eigenvalue multiplicities of each element lift them to exact sums of roots of
+unity.
 
-Source: W. Burnside, Theory of Groups of Finite Order, 2nd ed. (1911) chapter XV; J. D. Dixon, Numer. Math. 10 (1967)
-446.
+Source: W. Burnside, Theory of Groups of Finite Order, 2nd ed. (1911) chapter XV; J. D. Dixon, Numer. Math.
+10 (1967) 446.
 """
 
 from __future__ import annotations
@@ -32,7 +33,9 @@ def irreducible_characters(group: AbstractGroup) -> tuple[tuple[RootSum, ...], .
 
 
 def class_matrices(group: AbstractGroup) -> IntArray:
-    """Class algebra constants a[j, r, s]: number of ways to write the first element of class s as (class j)(class r)."""
+    """Class algebra constants a[j, r, s]: number of ways to write the first element of class s as (class
+    j)(class r).
+    """
     count = len(group.classes)
     constants = np.zeros((count, count, count), dtype=np.int64)
     for s, members in enumerate(group.classes):
@@ -43,7 +46,9 @@ def class_matrices(group: AbstractGroup) -> IntArray:
 
 
 def _common_eigenvectors(group: AbstractGroup, prime: int) -> list[IntArray]:
-    """One vector modulo p for each character: omega_s = |C_s| chi_s / chi_1, an eigenvector of every class matrix."""
+    """One vector modulo p for each character: omega_s = |C_s| chi_s / chi_1, an eigenvector of every class
+    matrix.
+    """
     count = len(group.classes)
     spaces = [np.eye(count, dtype=np.int64)]
     for matrix in class_matrices(group):
@@ -89,14 +94,18 @@ def _character_modulo(omega: IntArray, group: AbstractGroup, prime: int) -> list
 
 
 def _lifted(values: list[int], group: AbstractGroup, prime: int) -> tuple[RootSum, ...]:
-    """Exact values: the multiplicity of exp(2 pi i k / e) among the eigenvalues of g is a Fourier sum over g^l."""
+    """Exact values: the multiplicity of exp(2 pi i k / e) among the eigenvalues of g is a Fourier sum over
+    g^l.
+    """
     e = group.exponent
     root = primitive_root_of_unity(e, prime)
     power_class = [group.class_of[group.power_table[:, members[0]]].tolist() for members in group.classes]
     exact = []
     for powers in power_class:
         multiplicities = [
-            sum(values[c] * pow(root, -k * power, prime) for power, c in enumerate(powers)) * pow(e, -1, prime) % prime
+            sum(values[c] * pow(root, -k * power, prime) for power, c in enumerate(powers))
+            * pow(e, -1, prime)
+            % prime
             for k in range(e)
         ]
         exact.append(RootSum(tuple(multiplicities)))

@@ -1,8 +1,8 @@
 """What kind of operation an orthogonal matrix is, and its name in trade notation.
 
 Names follow the Hermann-Mauguin symbols of single elements: ``3+ [111]`` is a rotation by +120 degrees about
-[111], ``-4- [001]`` a rotoinversion, ``m [100]`` a mirror perpendicular to [100]. A prime marks time reversal.
-Directions are lattice directions where the group has a lattice basis, Cartesian ones otherwise.
+[111], ``-4- [001]`` a rotoinversion, ``m [100]`` a mirror perpendicular to [100]. A prime marks time
+reversal. Directions are lattice directions where the group has a lattice basis, Cartesian ones otherwise.
 """
 
 from __future__ import annotations
@@ -22,9 +22,9 @@ _LARGEST_INDEX = 9
 class Element:
     """One operation of a point group.
 
-    ``order`` is that of its proper part (1, 2, 3, 4, 6; a mirror has 2, the inversion 1), ``axis`` the Cartesian unit
-    vector of the axis (the normal for a mirror; None for 1 and -1), ``sense`` +1 or -1 about that axis (0 for order
-    up to 2), ``direction`` the text of the axis.
+    ``order`` is that of its proper part (1, 2, 3, 4, 6; a mirror has 2, the inversion 1), ``axis`` the
+    Cartesian unit vector of the axis (the normal for a mirror; None for 1 and -1), ``sense`` +1 or -1 about
+    that axis (0 for order up to 2), ``direction`` the text of the axis.
     """
 
     order: int
@@ -49,8 +49,12 @@ class Element:
         return f"{self.symbol}{sign}{prime} {self.direction}".strip()
 
 
-def classify(rotation_cart: FloatArray, lattice: FloatArray | None = None, time_reversal: bool = False) -> Element:
-    """The kind of one orthogonal matrix, shape (3, 3); ``lattice`` has rows a, b, c for lattice directions."""
+def classify(
+    rotation_cart: FloatArray, lattice: FloatArray | None = None, time_reversal: bool = False
+) -> Element:
+    """The kind of one orthogonal matrix, shape (3, 3); ``lattice`` has rows a, b, c for lattice
+    directions.
+    """
     improper = bool(np.linalg.det(rotation_cart) < 0)
     proper = -rotation_cart if improper else rotation_cart
     order = _rotation_order(proper)

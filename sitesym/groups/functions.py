@@ -1,4 +1,5 @@
-"""Which functions belong to which irrep: x, y, z; the rotations Rx, Ry, Rz (axial vectors); products x2, yz, ...
+"""Which functions belong to which irrep: x, y, z; the rotations Rx, Ry, Rz (axial vectors); products x2,
+yz, ...
 
 Every membership is derived: a function belongs to an irrep when the irrep's projection operator leaves it
 unchanged. The names are candidates only. Functions are written in the standard orientation of the table.
@@ -46,11 +47,15 @@ def functions_of_irreps(table: CharacterTable) -> tuple[tuple[str, ...], ...]:
 
 
 def functions_of_joined(table: CharacterTable) -> tuple[tuple[str, ...], ...]:
-    """Names of real functions that belong to each physically irreducible representation, as ``table.joined``."""
+    """Names of real functions that belong to each physically irreducible representation, as
+    ``table.joined``.
+    """
     characters = [
         np.sum([table.element_characters(k) for k in joined.members], axis=0) for joined in table.joined
     ]
-    return _functions(table, characters, [table.irreps[joined.members[0]].dimension for joined in table.joined])
+    return _functions(
+        table, characters, [table.irreps[joined.members[0]].dimension for joined in table.joined]
+    )
 
 
 def _functions(
@@ -71,7 +76,9 @@ def _functions(
 
 
 def _projector(representation: FloatArray, character: ComplexArray, dimension: int) -> ComplexArray:
-    projector: ComplexArray = dimension * np.einsum("g,gij->ij", character.conj(), representation) / len(character)
+    projector: ComplexArray = (
+        dimension * np.einsum("g,gij->ij", character.conj(), representation) / len(character)
+    )
     return projector
 
 

@@ -1,9 +1,10 @@
-"""Unitary matrices of an irrep, cut out of tensor powers of the vector representation by projection operators.
+"""Unitary matrices of an irrep, cut out of tensor powers of the vector representation by projection
+operators.
 
-Every irrep of a group of matrices is contained in some tensor power of a faithful representation (W. Burnside, Theory
-of Groups of Finite Order, 2nd ed. (1911), section 226), so a short search finds it. Where it occurs once there, the
-projector P = (d/|G|) sum_g chi(g)* D(g) gives its space; where it occurs more often, an averaged symmetric matrix
-splits the copies.
+Every irrep of a group of matrices is contained in some tensor power of a faithful representation (W.
+Burnside, Theory of Groups of Finite Order, 2nd ed. (1911), section 226), so a short search finds it. Where
+it occurs once there, the projector P = (d/|G|) sum_g chi(g)* D(g) gives its space; where it occurs more
+often, an averaged symmetric matrix splits the copies.
 """
 
 from __future__ import annotations
@@ -22,8 +23,8 @@ _HIGHEST_POWER = 4
 def irrep_matrices(group: PointGroup, character: ComplexArray) -> ComplexArray:
     """Unitary matrices D(g) with the given character (one value an element), shape (n, d, d).
 
-    Real orthogonal where the irrep is real. The basis follows the Cartesian axes of the group: an irrep that the
-    polar vector contains once is given on its x, y, z.
+    Real orthogonal where the irrep is real. The basis follows the Cartesian axes of the group: an irrep
+    that the polar vector contains once is given on its x, y, z.
     """
     dimension = round(character[0].real)
     if dimension == 1:
@@ -79,7 +80,9 @@ def _orthonormal_columns(projector: ComplexArray) -> ComplexArray:
 
 
 def _one_copy(copies: ComplexArray, dimension: int) -> ComplexArray:
-    """Columns spanning one of several equal irreps: an eigenspace of a matrix that commutes with all of them."""
+    """Columns spanning one of several equal irreps: an eigenspace of a matrix that commutes with all of
+    them.
+    """
     size = copies.shape[1]
     seed = np.random.default_rng(1).standard_normal((size, size))
     averaged = np.einsum("gai,ab,gbj->ij", copies.conj(), seed + seed.T, copies) / len(copies)

@@ -1,11 +1,12 @@
 """Mulliken labels of irreps, by rule from the characters and the orientation of the group.
 
-Letter: A or B for dimension one (even or odd under the main rotation), E for two and for a complex pair, T for three.
-Number: 1 or 2 for even or odd under a reference operation across the main axis, or the winding number of E, or the
-sign under the fourfold operation for T. Parity: g and u with an inversion, one and two primes with a mirror across
-the main axis. The members of a complex pair are 1E and 2E: 1E takes exp(+2 pi i m/n) under the positive main
-rotation. Axes are those of the standard orientation. Source: R. S. Mulliken, J. Chem. Phys. 23 (1955) 1997; the
-choices that he leaves open stand in `reference_operation`. Other books choose otherwise: read the characters too.
+Letter: A or B for dimension one (even or odd under the main rotation), E for two and for a complex pair, T
+for three. Number: 1 or 2 for even or odd under a reference operation across the main axis, or the winding
+number of E, or the sign under the fourfold operation for T. Parity: g and u with an inversion, one and two
+primes with a mirror across the main axis. The members of a complex pair are 1E and 2E: 1E takes exp(+2 pi i
+m/n) under the positive main rotation. Axes are those of the standard orientation. Source: R. S. Mulliken,
+J. Chem. Phys. 23 (1955) 1997; the choices that he leaves open stand in `reference_operation`. Other books
+choose otherwise: read the characters too.
 """
 
 from __future__ import annotations
@@ -27,7 +28,9 @@ _X, _Y, _Z = np.eye(3)
 
 @dataclass(frozen=True, eq=False)
 class LabelFrame:
-    """The operations of a group, in the standard orientation, that decide about labels (indices of elements)."""
+    """The operations of a group, in the standard orientation, that decide about labels (indices of
+    elements).
+    """
 
     group: PointGroup
     cubic: bool
@@ -58,9 +61,9 @@ def label_frame(group: PointGroup) -> LabelFrame:
 def reference_operation(group: PointGroup) -> int | None:
     """The element whose sign gives the number 1 or 2 of A and B.
 
-    Cubic: the fourfold operation along z. mm2: the mirror perpendicular to y. With twofold axes across the main
-    axis: the one along x (in -6m2, where they lie along y, any: they are one class). Else the mirror perpendicular
-    to x.
+    Cubic: the fourfold operation along z. mm2: the mirror perpendicular to y. With twofold axes across the
+    main axis: the one along x (in -6m2, where they lie along y, any: they are one class). Else the mirror
+    perpendicular to x.
     """
     if group.system == "cubic":
         return _first_found(_find(group, 4, False, _Z), _find(group, 4, True, _Z))
@@ -68,9 +71,7 @@ def reference_operation(group: PointGroup) -> int | None:
         return None
     if group.symbol == "mm2":
         return _find(group, 2, True, _Y)
-    return _first_found(
-        _find(group, 2, False, _X), _find(group, 2, False, _Y), _find(group, 2, True, _X)
-    )
+    return _first_found(_find(group, 2, False, _X), _find(group, 2, False, _Y), _find(group, 2, True, _X))
 
 
 def letter_and_number(frame: LabelFrame, character: ElementCharacter, is_complex: bool) -> tuple[str, int]:
@@ -101,8 +102,12 @@ def parity_mark(frame: LabelFrame, character: ElementCharacter) -> str:
 
 
 def pair_member(frame: LabelFrame, character: ElementCharacter) -> str:
-    """'1' for the member of a complex pair with exp(+2 pi i m/n) under the main rotation, '2' for the other."""
-    main = character[frame.main] if frame.main is not None else next(c for c in character if abs(c.imag) > 1e-9)
+    """'1' for the member of a complex pair with exp(+2 pi i m/n) under the main rotation, '2' for the
+    other.
+    """
+    main = (
+        character[frame.main] if frame.main is not None else next(c for c in character if abs(c.imag) > 1e-9)
+    )
     if abs(main.imag) < 1e-9:
         main = next(c for c in character if abs(c.imag) > 1e-9)
     return "1" if main.imag > 0 else "2"
@@ -145,7 +150,9 @@ def _main_rotation(group: PointGroup) -> int | None:
 
 
 def _mirror_across(group: PointGroup) -> int | None:
-    """The mirror perpendicular to the main axis, in the groups where it gives one and two primes: m, -6, -6m2."""
+    """The mirror perpendicular to the main axis, in the groups where it gives one and two primes: m, -6,
+    -6m2.
+    """
     axis = _Y if group.system == "monoclinic" else _Z
     return _find(group, 2, True, axis) if group.symbol in ("m", "-6", "-6m2") else None
 
@@ -155,7 +162,12 @@ def _find(group: PointGroup, order: int, improper: bool, axis: FloatArray) -> in
 
 
 def _is(element: Element, order: int, improper: bool, axis: FloatArray) -> bool:
-    if element.axis is None or element.order != order or element.improper != improper or element.time_reversal:
+    if (
+        element.axis is None
+        or element.order != order
+        or element.improper != improper
+        or element.time_reversal
+    ):
         return False
     overlap = float(element.axis @ axis)
     return abs(abs(overlap) - 1.0) < 1e-6 and element.sense * overlap >= 0

@@ -1,7 +1,8 @@
 """Other choices of axes that leave the operations of a group looking the same.
 
-A rotation N with N G N^-1 = G turns the axes into others that no operation tells apart from the first: symmetry
-cannot say which of them a set of measured signs refers to. Such rotations form the normaliser of the group.
+A rotation N with N G N^-1 = G turns the axes into others that no operation tells apart from the first:
+symmetry cannot say which of them a set of measured signs refers to. Such rotations form the normaliser of
+the group.
 """
 
 from __future__ import annotations
@@ -18,19 +19,19 @@ from sitesym.tolerances import SAME_MATRIX
 
 @lru_cache(maxsize=1024)
 def equivalent_turns(group: PointGroup) -> tuple[FloatArray, ...]:
-    """Proper rotations (3, 3), in the group's own axes, that map the group onto itself and act as none of its elements.
+    """Proper rotations (3, 3), in the group's own axes, that map the group onto itself and are none of its
+    elements.
 
-    One for each coset of the group (with the inversion added) in the normaliser, searched among the rotations of a
-    cube and of a hexagonal prism in the standard orientation. Where the normaliser is continuous (any turn about the
-    main axis of 1, 2, m, 3, 4, 6 and the like) the list holds only its members among those.
+    One for each coset of the group in its normaliser, searched among the rotations of a
+    cube and of a hexagonal prism in the standard orientation. Where the normaliser is continuous (any turn
+    about the main axis of 1, 2, m, 3, 4, 6 and the like) the list holds only its members among those.
     """
     to_standard = standard_rotation(group)
-    proper_parts = group.rotations_cart * group.determinants[:, None, None]
     found: list[FloatArray] = []
     for candidate in _candidates():
         turn = to_standard.T @ candidate @ to_standard
         if _maps_onto_itself(group, turn) and not any(
-            _contains(known @ proper_parts, turn) for known in [np.eye(3), *found]
+            _contains(known @ group.rotations_cart, turn) for known in [np.eye(3), *found]
         ):
             found.append(frozen(turn))
     return tuple(found)

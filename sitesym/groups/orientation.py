@@ -1,10 +1,10 @@
 """The standard orientation of a point group: which symmetry direction lies along x, y, z.
 
-Rules of IEEE Std 176-1978 as far as the operations decide them: unique axis along y in 2, m, 2/m; twofold axis or
-mirror normals along x, y, z in the orthorhombic classes with the twofold axis of mm2 along z; the main axis along z;
-then a twofold axis along x (422, 32, 622, -42m, -3m, 4/mmm, 6/mmm) or a mirror perpendicular to x (4mm, 3m, 6mm,
--6m2); cubic axes along x, y, z. What symmetry leaves open follows the preferred directions of the caller, usually
-those of the conventional cell.
+Rules of IEEE Std 176-1978 as far as the operations decide them: unique axis along y in 2, m, 2/m; twofold
+axis or mirror normals along x, y, z in the orthorhombic classes with the twofold axis of mm2 along z; the
+main axis along z; then a twofold axis along x (422, 32, 622, -42m, -3m, 4/mmm, 6/mmm) or a mirror
+perpendicular to x (4mm, 3m, 6mm, -6m2); cubic axes along x, y, z. What symmetry leaves open follows the
+preferred directions of the caller, usually those of the conventional cell.
 """
 
 from __future__ import annotations
@@ -18,10 +18,11 @@ from sitesym.groups.pointgroup import PointGroup
 
 
 def standard_rotation(group: PointGroup, preferred: FloatArray | None = None) -> FloatArray:
-    """Rows X, Y, Z of the standard orientation in the axes of ``group.rotations_cart``, shape (3, 3), right-handed.
+    """Rows X, Y, Z of the standard orientation in the axes of ``group.rotations_cart``, shape (3, 3),
+    right-handed.
 
-    ``preferred`` has as rows the directions wished for X, Y, Z (default: the present axes); it decides what symmetry
-    leaves open, including the senses. Returns R with v_standard = R v.
+    ``preferred`` has as rows the directions wished for X, Y, Z (default: the present axes); it decides what
+    symmetry leaves open, including the senses. Returns R with v_standard = R v.
     """
     wishes = np.eye(3) if preferred is None else np.asarray(preferred, dtype=np.float64)
     wishes = wishes / np.linalg.norm(wishes, axis=1)[:, None]
@@ -40,7 +41,9 @@ def standard_rotation(group: PointGroup, preferred: FloatArray | None = None) ->
 
 
 def _monoclinic(group: PointGroup, wishes: FloatArray) -> FloatArray:
-    """Unique axis along y; z as wished, or along the wished x where the unique axis lies along the wished z."""
+    """Unique axis along y; z as wished, or along the wished x where the unique axis lies along the wished
+    z.
+    """
     unique = _nearest(_axes(group, 2), wishes[1])
     towards_z = wishes[2] if abs(wishes[2] @ unique) < 0.9 else wishes[0]
     z = towards_z - unique * (towards_z @ unique)
@@ -56,7 +59,9 @@ def _main_axes(group: PointGroup) -> FloatArray:
 
 
 def _x_direction(group: PointGroup, main: FloatArray, wishes: FloatArray) -> FloatArray:
-    """A direction for x: along a twofold axis across the main one, else along a mirror normal, else as wished."""
+    """A direction for x: along a twofold axis across the main one, else along a mirror normal, else as
+    wished.
+    """
     across = [e for e in group.elements if e.axis is not None and e.order == 2 and abs(e.axis @ main) < 0.1]
     twofold = np.array([e.axis for e in across if not e.improper])
     normals = np.array([e.axis for e in across if e.improper])
@@ -69,7 +74,11 @@ def _axes(group: PointGroup, order: int) -> FloatArray:
     distinct: list[FloatArray] = []
     for element in group.elements:
         axis = element.axis
-        if axis is not None and element.order == order and not any(abs(axis @ known) > 0.999 for known in distinct):
+        if (
+            axis is not None
+            and element.order == order
+            and not any(abs(axis @ known) > 0.999 for known in distinct)
+        ):
             distinct.append(axis)
     return np.array(distinct)
 

@@ -26,11 +26,12 @@ class PointGroup:
     """A finite group of orthogonal matrices, element 0 the identity.
 
     rotations_cart: (n, 3, 3) orthogonal, columns are images of the Cartesian axes; active, r' = R r.
-    rotations_frac: (n, 3, 3) integers acting on columns of fractional coordinates, or None without a lattice basis.
-    lattice: (3, 3) rows a, b, c of that basis in the same Cartesian axes, or None.
+    rotations_frac: (n, 3, 3) integers acting on columns of fractional coordinates, or None without a
+    lattice basis. lattice: (3, 3) rows a, b, c of that basis in the same Cartesian axes, or None.
     time_reversal: (n,) flags, all false in an ordinary point group.
 
-    Build one with `from_symbol`, `from_fractional` or `from_cartesian`; these check that the matrices are a group.
+    Build one with `from_symbol`, `from_fractional` or `from_cartesian`; these check that the matrices are a
+    group.
     """
 
     rotations_cart: FloatArray
@@ -41,10 +42,11 @@ class PointGroup:
 
     @classmethod
     def from_symbol(cls, symbol: str) -> PointGroup:
-        """The group a Hermann-Mauguin or Schoenflies symbol names, in its conventional lattice axes (a || x, c || z).
+        """The group a Hermann-Mauguin or Schoenflies symbol names, in its conventional lattice axes (a ||
+        x, c || z).
 
-        Oriented spellings differ (31m is not 3m1); a bare monoclinic symbol has the unique axis along b. Raises
-        UsageError for an unknown symbol.
+        Oriented spellings differ (31m is not 3m1); a bare monoclinic symbol has the unique axis along b.
+        Raises UsageError for an unknown symbol.
         """
         spelling = read_symbol(symbol)
         return cls.from_fractional(_generated(spelling), spelling.lattice)
@@ -76,17 +78,23 @@ class PointGroup:
         flags = _flags(time_reversal, len(cart))
         sequence = _identity_first(cart, flags)
         cart, flags = cart[sequence], flags[sequence]
-        return cls(frozen(cart), None, None, frozen(flags), AbstractGroup(frozen(_product_table(cart, flags))))
+        return cls(
+            frozen(cart), None, None, frozen(flags), AbstractGroup(frozen(_product_table(cart, flags)))
+        )
 
     def rotated(self, rotation: FloatArray) -> PointGroup:
-        """The same group in other Cartesian axes: v_new = R v_old, so C becomes R C R^T and lattice rows turn too."""
+        """The same group in other Cartesian axes: v_new = R v_old, so C becomes R C R^T and lattice rows
+        turn too.
+        """
         matrix = np.asarray(rotation, dtype=np.float64)
         cart = matrix @ self.rotations_cart @ matrix.T
         lattice = None if self.lattice is None else frozen(self.lattice @ matrix.T)
         return PointGroup(frozen(cart), self.rotations_frac, lattice, self.time_reversal, self.abstract)
 
     def subgroup(self, indices: list[int]) -> PointGroup:
-        """The subgroup made of the given elements, in the same axes. Raises NotAGroupError if they are none."""
+        """The subgroup made of the given elements, in the same axes. Raises NotAGroupError if they are
+        none.
+        """
         chosen = sorted(set(indices))
         flags = self.time_reversal[chosen]
         if self.rotations_frac is not None and self.lattice is not None:
@@ -131,7 +139,9 @@ class PointGroup:
 
     @cached_property
     def symbol(self) -> str:
-        """Short Hermann-Mauguin symbol of the class of the rotation parts (3m for 31m); 'order n' if not one of the 32."""
+        """Short Hermann-Mauguin symbol of the class of the rotation parts (3m for 31m); 'order n' if not
+        one of the 32.
+        """
         return _class_symbols().get(_signature(self.rotations_cart), f"order {self.order}")
 
     @cached_property
@@ -146,7 +156,9 @@ class PointGroup:
 
     @cached_property
     def oriented(self) -> str:
-        """Hermann-Mauguin symbol that tells the orientation in the lattice basis (31m, 112/m); else `symbol`."""
+        """Hermann-Mauguin symbol that tells the orientation in the lattice basis (31m, 112/m); else
+        `symbol`.
+        """
         if self.rotations_frac is None:
             return self.symbol
         return _oriented_symbols().get(_matrix_set(self.rotations_frac), self.symbol)
@@ -188,12 +200,18 @@ class PointGroup:
 
 
 def _flags(time_reversal: BoolArray | None, count: int) -> BoolArray:
-    return np.zeros(count, dtype=np.bool_) if time_reversal is None else np.asarray(time_reversal, dtype=np.bool_)
+    return (
+        np.zeros(count, dtype=np.bool_)
+        if time_reversal is None
+        else np.asarray(time_reversal, dtype=np.bool_)
+    )
 
 
 def _identity_first(matrices: FloatArray, flags: BoolArray) -> list[int]:
     if matrices.ndim != 3 or matrices.shape[1:] != (3, 3) or len(matrices) == 0:
-        raise NotAGroupError("a point group needs matrices of shape (n, 3, 3)", value=f"shape {matrices.shape}")
+        raise NotAGroupError(
+            "a point group needs matrices of shape (n, 3, 3)", value=f"shape {matrices.shape}"
+        )
     distance = np.abs(matrices - np.eye(3)).max(axis=(1, 2)) + flags
     first = int(np.argmin(distance))
     if distance[first] > SAME_MATRIX:
@@ -213,18 +231,22 @@ def _check_orthogonal(cart: FloatArray) -> None:
             "an operation is not orthogonal in the given axes",
             value=f"largest entry of R R^T - 1: {worst:.2e}",
             rule=f"at most {ORTHOGONAL:.0e}",
-            next_step="idealise the cell to the symmetry first, or give the lattice in which the matrices are written",
+            next_step="idealise the cell to the symmetry first, or give the lattice of the matrices",
         )
 
 
 @lru_cache(maxsize=4096)
 def _abstract_of_integers(matrices: bytes, flags: bytes) -> AbstractGroup:
     array = np.frombuffer(matrices, dtype=np.int64).reshape(-1, 3, 3)
-    return AbstractGroup(frozen(_product_table(array.astype(np.float64), np.frombuffer(flags, dtype=np.bool_))))
+    return AbstractGroup(
+        frozen(_product_table(array.astype(np.float64), np.frombuffer(flags, dtype=np.bool_)))
+    )
 
 
 def _product_table(matrices: FloatArray, flags: BoolArray) -> IntArray:
-    """Indices of all products; raises NotAGroupError for a product that is missing or an element that is doubled."""
+    """Indices of all products; raises NotAGroupError for a product that is missing or an element that is
+    doubled.
+    """
     n = len(matrices)
     flat = np.concatenate([matrices.reshape(n, 9), flags[:, None].astype(np.float64)], axis=1)
     if len(np.unique(np.rint(flat / SAME_MATRIX), axis=0)) < n:
@@ -237,12 +259,13 @@ def _product_table(matrices: FloatArray, flags: BoolArray) -> IntArray:
     missing = np.flatnonzero(distance[np.arange(n * n), nearest] > SAME_MATRIX)
     if len(missing):
         g, h = divmod(int(missing[0]), n)
+        rows = "; ".join(
+            " ".join(f"{v:.4g}" for v in row) for row in products[missing[0]].reshape(3, 3) + 0.0
+        )
         raise NotAGroupError(
             "the matrices are not a group",
-            value=f"{len(missing)} of {n * n} products are missing, the first is element {g} times element {h} = "
-            f"{np.array2string(wanted[missing[0], :9].reshape(3, 3) + 0.0, precision=4, separator=', ')}".replace(
-                "\n", ""
-            ),
+            value=f"{len(missing)} of {n * n} products are missing, the first is element {g} times element {h}"
+            f" = ({rows})",
             rule="a group contains the product of any two of its elements",
             next_step="add the missing operations, or remove those that do not belong",
         )
@@ -250,7 +273,7 @@ def _product_table(matrices: FloatArray, flags: BoolArray) -> IntArray:
 
 
 def _generated(spelling: Spelling) -> IntArray:
-    """All products of the generators, integer matrices (n, 3, 3): proper ones first, then by order of rotation."""
+    """All products of the generators, integers (n, 3, 3): proper ones first, then by order of rotation."""
     found = {np.eye(3, dtype=np.int64).tobytes(): np.eye(3, dtype=np.int64)}
     frontier = list(found.values())
     while frontier:

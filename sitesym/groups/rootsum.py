@@ -15,7 +15,9 @@ import numpy as np
 
 @dataclass(frozen=True)
 class RootSum:
-    """An algebraic integer of a cyclotomic field; ``coefficients`` has one integer for each n-th root of unity."""
+    """An algebraic integer of a cyclotomic field; ``coefficients`` has one integer for each n-th root of
+    unity.
+    """
 
     coefficients: tuple[int, ...]
 
@@ -44,7 +46,9 @@ class RootSum:
         return RootSum((self.coefficients[0], *reversed(self.coefficients[1:])))
 
     def reduced(self) -> tuple[int, ...]:
-        """Coefficients in the basis 1, z, z^2, ... of the cyclotomic field: equal values have equal reductions."""
+        """Coefficients in the basis 1, z, z^2, ... of the cyclotomic field: equal values have equal
+        reductions.
+        """
         remainder = list(self.coefficients)
         divisor = cyclotomic_polynomial(self.n)
         degree = len(divisor) - 1

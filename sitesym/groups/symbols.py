@@ -1,8 +1,8 @@
 """Point-group symbols: from a spelling to generators in the conventional lattice basis.
 
-A Hermann-Mauguin symbol is a list of elements along the symmetry directions of its crystal system (International
-Tables for Crystallography A, table on lattice symmetry directions); the reading here is that rule, not a table of
-groups. Schoenflies symbols are names only and are translated to Hermann-Mauguin first.
+A Hermann-Mauguin symbol is a list of elements along the symmetry directions of its crystal system
+(International Tables for Crystallography A, table on lattice symmetry directions); the reading here is that
+rule, not a table of groups. Schoenflies symbols are names only and are translated to Hermann-Mauguin first.
 """
 
 from __future__ import annotations
@@ -22,8 +22,8 @@ SCHOENFLIES: Final = {
     "1": "C1", "-1": "Ci", "2": "C2", "m": "Cs", "2/m": "C2h", "222": "D2", "mm2": "C2v", "mmm": "D2h",
     "4": "C4", "-4": "S4", "4/m": "C4h", "422": "D4", "4mm": "C4v", "-42m": "D2d", "4/mmm": "D4h",
     "3": "C3", "-3": "C3i", "32": "D3", "3m": "C3v", "-3m": "D3d", "6": "C6", "-6": "C3h", "6/m": "C6h",
-    "622": "D6", "6mm": "C6v", "-6m2": "D3h", "6/mmm": "D6h", "23": "T", "m-3": "Th", "432": "O", "-43m": "Td",
-    "m-3m": "Oh",
+    "622": "D6", "6mm": "C6v", "-6m2": "D3h", "6/mmm": "D6h", "23": "T", "m-3": "Th", "432": "O", "-43m":
+    "Td", "m-3m": "Oh",
 }  # fmt: skip
 
 #: Every oriented spelling of each class, the one in the standard orientation first.
@@ -60,7 +60,9 @@ _DIRECTIONS: Final = {
 
 @dataclass(frozen=True, eq=False)
 class Spelling:
-    """A symbol that was understood: class, oriented symbol, lattice rows (3, 3), integer generators (k, 3, 3)."""
+    """A symbol that was understood: class, oriented symbol, lattice rows (3, 3), integer generators (k, 3,
+    3).
+    """
 
     symbol: str
     oriented: str
@@ -69,9 +71,11 @@ class Spelling:
 
 
 def read_symbol(text: str) -> Spelling:
-    """Generators of the point group a symbol names, in the conventional lattice basis (hexagonal axes for 3 and 6).
+    """Generators of the point group a symbol names, in the conventional lattice basis (hexagonal axes for 3
+    and 6).
 
-    A bare monoclinic symbol has its unique axis along b. Raises UsageError for anything that is no point group.
+    A bare monoclinic symbol has its unique axis along b. Raises UsageError for anything that is no point
+    group.
     """
     oriented = _oriented_spelling(text)
     symbol = class_of_spelling(oriented)
@@ -116,8 +120,8 @@ def _oriented_spelling(text: str) -> str:
         raise UsageError(
             "no crystallographic point group has this symbol",
             value=repr(text),
-            rule="a Hermann-Mauguin or Schoenflies symbol of one of the 32 classes, oriented spellings included",
-            next_step=hint + "examples: -43m, 31m, -4m2, 2/m, 112/m, D3h; a space group is given as a file",
+            rule="a Hermann-Mauguin or Schoenflies symbol of one of the 32 classes, oriented spellings too",
+            next_step=hint + "examples: -43m, 31m, -4m2, 112/m, D3h; a space group is given as a file",
         )
     return ORIENTED.get(symbol, (symbol,))[0]
 

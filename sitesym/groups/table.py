@@ -22,8 +22,9 @@ from sitesym.groups.verify import Checks, verified
 class Irrep:
     """One irreducible representation over the complex numbers.
 
-    ``characters`` holds one exact value a class, ``matrices`` one unitary (d, d) matrix an element, ``reality`` is
-    'real', 'complex' (its conjugate is another irrep) or 'quaternionic' (Frobenius and Schur 1906).
+    ``characters`` holds one exact value a class, ``matrices`` one unitary (d, d) matrix an element,
+    ``reality`` is 'real', 'complex' (its conjugate is another irrep) or 'quaternionic' (Frobenius and Schur
+    1906).
     """
 
     label: str
@@ -65,8 +66,8 @@ class CharacterTable:
 def character_table(group: PointGroup, rotation: FloatArray | None = None) -> CharacterTable:
     """Character table of a point group, its irreps labelled in the standard orientation.
 
-    ``rotation`` (3, 3) leads to the standard orientation; where it is not given, `standard_rotation` finds one. The
-    matrices are written in that orientation. Raises SymmetryError if any check of the table fails.
+    ``rotation`` (3, 3) leads to the standard orientation; where it is not given, `standard_rotation` finds
+    one. The matrices are written in that orientation. Raises SymmetryError if any check of the table fails.
     """
     matrix = standard_rotation(group) if rotation is None else np.asarray(rotation, dtype=np.float64)
     oriented = group.rotated(matrix)
@@ -101,7 +102,9 @@ def _reality(row: tuple[RootSum, ...], group: AbstractGroup) -> str:
     for c in squares:
         total = total + row[int(c)]
     indicator = total.as_integer()
-    return {group.order: "real", 0: "complex", -group.order: "quaternionic"}[indicator if indicator is not None else 0]
+    return {group.order: "real", 0: "complex", -group.order: "quaternionic"}[
+        indicator if indicator is not None else 0
+    ]
 
 
 def _labels(oriented: PointGroup, characters: tuple[tuple[RootSum, ...], ...]) -> list[str]:
@@ -136,7 +139,8 @@ def _joined(irreps: list[Irrep]) -> tuple[JoinedIrrep, ...]:
     joined: list[JoinedIrrep] = []
     for index, irrep in enumerate(irreps):
         partner = next(
-            k for k, other in enumerate(irreps)
+            k
+            for k, other in enumerate(irreps)
             if all(a.equals(b.conjugate()) for a, b in zip(other.characters, irrep.characters, strict=True))
         )
         if partner == index:

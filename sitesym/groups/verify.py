@@ -15,7 +15,9 @@ from sitesym.tolerances import REPRESENTATION
 
 @dataclass(frozen=True)
 class Checks:
-    """What was verified. Exact statements are booleans (true, or no table is made), others the largest deviation."""
+    """What was verified. Exact statements are booleans (true, or no table is made), others the largest
+    deviation.
+    """
 
     irreps_equal_classes: bool
     sum_of_squared_dimensions: int
@@ -94,9 +96,7 @@ def _homomorphism_deviation(group: AbstractGroup, array: ComplexArray) -> float:
 
 def _great_orthogonality_deviation(matrices: list[ComplexArray]) -> float:
     """Rows sqrt(d/|G|) D_ij(g) of all irreps together must be orthonormal."""
-    rows = [
-        np.sqrt(array.shape[1] / len(array)) * array.reshape(len(array), -1).T for array in matrices
-    ]
+    rows = [np.sqrt(array.shape[1] / len(array)) * array.reshape(len(array), -1).T for array in matrices]
     stacked = np.concatenate(rows)
     return float(np.abs(stacked @ stacked.conj().T - np.eye(len(stacked))).max())
 

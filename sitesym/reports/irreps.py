@@ -1,4 +1,6 @@
-"""The `irreps` document: classes, exact characters, matrices and functions of every irrep of a point group."""
+"""The `irreps` document: classes, exact characters, matrices and functions of every irrep of a point
+group.
+"""
 
 from __future__ import annotations
 
@@ -24,8 +26,8 @@ def irreps_document(
 ) -> Document:
     """The document `sitesym.irreps/1`.
 
-    Cartesian matrices, functions and irrep matrices are written in the axes of the labels (the standard orientation),
-    which ``axes`` describes; directions in names are lattice directions.
+    Cartesian matrices, functions and irrep matrices are written in the axes of the labels (the standard
+    orientation), which ``axes`` describes; directions in names are lattice directions.
     """
     group = table.group.rotated(table.rotation)
     document: Document = {

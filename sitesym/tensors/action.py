@@ -1,8 +1,9 @@
 """How a group acts on tensors of one parity: proper matrices and signs, nothing that acts trivially.
 
-An improper matrix -P acts on a tensor of rank r as (-1)^r P; an axial tensor adds a sign for improper elements, a
-time-odd one for time reversal. So an element acts through its proper part P and one sign, and groups that differ only
-by operations without effect (4mm, 422, 4/mmm on a stiffness) share one action, and with it their forms.
+An improper matrix -P acts on a tensor of rank r as (-1)^r P; an axial tensor adds a sign for improper
+elements, a time-odd one for time reversal. So an element acts through its proper part P and one sign, and
+groups that differ only by operations without effect (4mm, 422, 4/mmm on a stiffness) share one action, and
+with it their forms.
 """
 
 from __future__ import annotations
@@ -20,8 +21,8 @@ from sitesym.groups import PointGroup
 class Action:
     """Bytes of float64 arrays, so that equal actions are equal keys.
 
-    ``generator_matrices`` (k, 3, 3) and ``generator_signs`` (k,) generate it; ``angles`` and ``signs`` have one
-    rotation angle (radians) and one sign for each distinct pair (P, sign).
+    ``generator_matrices`` (k, 3, 3) and ``generator_signs`` (k,) generate it; ``angles`` and ``signs`` have
+    one rotation angle (radians) and one sign for each distinct pair (P, sign).
     """
 
     generator_matrices: bytes
@@ -60,7 +61,10 @@ def action_of(group: PointGroup, improper_sign: bool, time_odd: bool) -> Action:
     angles = np.round(np.arccos(np.clip((traces - 1.0) / 2.0, -1.0, 1.0)), 12)
     order = np.lexsort((angles, signs[distinct]))
     return Action(
-        matrices[chosen].tobytes(), signs[chosen].tobytes(), angles[order].tobytes(), signs[distinct][order].tobytes()
+        matrices[chosen].tobytes(),
+        signs[chosen].tobytes(),
+        angles[order].tobytes(),
+        signs[distinct][order].tobytes(),
     )
 
 
@@ -76,5 +80,7 @@ def _generators(group: PointGroup, candidates: list[int], kernel: list[int]) -> 
 
 
 def _place(matrix: FloatArray, sign: float) -> tuple[float, float, list[float]]:
-    """Order of choice that depends on the operation alone: threefold and fourfold rotations before twofold ones."""
+    """Order of choice that depends on the operation alone: threefold and fourfold rotations before twofold
+    ones.
+    """
     return abs(float(np.trace(matrix)) - 0.5), -float(sign), (-matrix).ravel().tolist()

@@ -1,7 +1,7 @@
 """Contracted (Voigt) notation: names of components, factors, and the exact way between array and matrix.
 
-A symmetric pair of indices becomes one index 1..6 in the order 11 22 33 23 13 12, except in a plain second-rank tensor,
-which keeps its two digits. Every other index keeps its digit 1..3.
+A symmetric pair of indices becomes one index 1..6 in the order 11 22 33 23 13 12, except in a plain
+second-rank tensor, which keeps its two digits. Every other index keeps its digit 1..3.
 """
 
 from __future__ import annotations
@@ -49,7 +49,9 @@ class Contraction:
 
     @property
     def commuting(self) -> bool:
-        """Whether all contracted indices may change places (c12 stands for c21): only sorted names are written."""
+        """Whether all contracted indices may change places (c12 stands for c21): only sorted names are
+        written.
+        """
         symmetry = self.kind.written
         return isinstance(symmetry, Power) and symmetry.symmetric and self.kind.rank > 1
 
@@ -62,8 +64,8 @@ class Contraction:
     def preference(self) -> tuple[int, ...]:
         """Written components in the order in which they are chosen as independent ones.
 
-        Longitudinal components (all full indices equal) first, those with several shear pairs last, then by single
-        indices, then by pairs: the choice of the published tables.
+        Longitudinal components (all full indices equal) first, those with several shear pairs last, then by
+        single indices, then by pairs: the choice of the published tables.
         """
         return tuple(sorted(range(len(self.keys)), key=self._rank_of_choice))
 
@@ -101,7 +103,8 @@ def contraction(kind: TensorKind) -> Contraction:
 
 
 def to_matrix(kind: TensorKind, full: FloatArray) -> FloatArray:
-    """Contracted array of a full tensor, shape (3,)*rank to ``contraction(kind).shape``, with the kind's factors.
+    """Contracted array of a full tensor, shape (3,)*rank to ``contraction(kind).shape``, with the kind's
+    factors.
 
     Takes the canonical component of each pair: check the index symmetry of measured data first.
     """

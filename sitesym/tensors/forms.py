@@ -1,9 +1,9 @@
 """Allowed forms: which components of a tensor are independent in a group and how the others follow from them.
 
-Neumann's principle: a property tensor is unchanged by every operation of the crystal's point group, so it lies in
-the invariant part of its tensor space. The invariant part is found from the generators alone; its dimension must
-equal the mean of the character, which is computed separately. Source: F. E. Neumann, Vorlesungen ueber die Theorie
-der Elastizitaet (1885); J. F. Nye, Physical Properties of Crystals (1957).
+Neumann's principle: a property tensor is unchanged by every operation of the crystal's point group, so it
+lies in the invariant part of its tensor space. The invariant part is found from the generators alone; its
+dimension must equal the mean of the character, which is computed separately. Source: F. E. Neumann,
+Vorlesungen ueber die Theorie der Elastizitaet (1885); J. F. Nye, Physical Properties of Crystals (1957).
 """
 
 from __future__ import annotations
@@ -41,10 +41,11 @@ _SMALLEST_EIGENVALUE = 1e-6
 class AllowedForm:
     """The allowed form of one kind in one group, in the Cartesian axes of that group's matrices.
 
-    ``components[key][independent]`` is the coefficient with which an independent component enters a component; keys
-    are contracted indices; components that must vanish are absent. ``coefficients`` holds the same numbers as
-    floats, one row a written component (order of ``contraction(kind).keys``), one column an independent component.
-    ``exact``: every coefficient is an exact number and satisfies every generator exactly.
+    ``components[key][independent]`` is the coefficient with which an independent component enters a
+    component; keys are contracted indices; components that must vanish are absent. ``coefficients`` holds
+    the same numbers as floats, one row a written component (order of ``contraction(kind).keys``), one
+    column an independent component. ``exact``: every coefficient is an exact number and satisfies every
+    generator exactly.
     """
 
     kind: TensorKind
@@ -73,8 +74,8 @@ class AllowedForm:
 def allowed_form(kind: TensorKind, group: PointGroup) -> AllowedForm:
     """The allowed form of a kind in a group, in the axes of ``group.rotations_cart``.
 
-    Use ``group.rotated(R)`` for other axes. Raises SymmetryError if the two routes to the number of independent
-    components disagree (matrices that are not quite a group).
+    Use ``group.rotated(R)`` for other axes. Raises SymmetryError if the two routes to the number of
+    independent components disagree (matrices that are not quite a group).
     """
     space = TensorSpace.of(kind)
     expected = space.invariant_count(group)
@@ -91,7 +92,9 @@ def allowed_form(kind: TensorKind, group: PointGroup) -> AllowedForm:
 
 def _nothing(kind: TensorKind) -> AllowedForm:
     """The form of a tensor that must vanish."""
-    return AllowedForm(kind, (), MappingProxyType({}), frozen(np.zeros((len(contraction(kind).keys), 0))), exact=True)
+    return AllowedForm(
+        kind, (), MappingProxyType({}), frozen(np.zeros((len(contraction(kind).keys), 0))), exact=True
+    )
 
 
 @lru_cache(maxsize=8192)
@@ -105,12 +108,18 @@ def _form(notation: TensorKind, action: Action) -> AllowedForm:
     numbers: Sequence[Coefficient] = values.tolist() if exact is None else exact
     clean = np.array([float(number) for number in numbers])[inverse]
     return AllowedForm(
-        notation, independent, _components(names, independent, numbers, inverse), frozen(clean), exact is not None
+        notation,
+        independent,
+        _components(names, independent, numbers, inverse),
+        frozen(clean),
+        exact is not None,
     )
 
 
 def _chosen(names: Contraction, written: FloatArray) -> tuple[tuple[str, ...], FloatArray]:
-    """Independent components in the preferred choice, and every written component as a combination of them."""
+    """Independent components in the preferred choice, and every written component as a combination of
+    them.
+    """
     preference = np.array(names.preference)
     present = preference[np.abs(written[preference]).max(axis=1) > PIVOT]
     if len(present) == written.shape[1]:
@@ -157,8 +166,8 @@ def _places_of_written(notation: TensorKind) -> tuple[IntArray, IntArray]:
 def _invariants(space: TensorSpace, action: Action) -> FloatArray:
     """Columns spanning the components that every generator leaves unchanged, shape (N, count).
 
-    In orthonormal components each generator is an orthogonal matrix D, and sum (1 - D)^T (1 - D) vanishes exactly on
-    the invariant tensors; its other eigenvalues are of order one.
+    In orthonormal components each generator is an orthogonal matrix D, and sum (1 - D)^T (1 - D) vanishes
+    exactly on the invariant tensors; its other eigenvalues are of order one.
     """
     scale = np.sqrt(space.symmetry.multiplicities)
     size = len(scale)
@@ -230,7 +239,9 @@ def _blocks_that_mix(linked: BoolArray) -> list[IntArray]:
 def _exact_values(
     notation: TensorKind, values: FloatArray, inverse: IntArray, action: Action
 ) -> list[Surd] | None:
-    """The exact number behind each distinct coefficient, or None unless all satisfy every generator exactly."""
+    """The exact number behind each distinct coefficient, or None unless all satisfy every generator
+    exactly.
+    """
     images = _images(notation.symmetry, action)
     numbers = recognise(values) if all(_is_exact(image) for image in images) else None
     if numbers is None:
@@ -247,7 +258,9 @@ def _integer_vectors(notation: TensorKind, numbers: list[Surd], inverse: IntArra
     Integers a, b of a + b sqrt(3), shape (2, N, k); ``inverse`` says which number stands at each coefficient.
     """
     factors = contraction(notation).factors
-    denominator = lcm(*(n.rational.denominator * n.root.denominator for n in numbers)) * lcm(*set(factors.tolist()))
+    denominator = lcm(*(n.rational.denominator * n.root.denominator for n in numbers)) * lcm(
+        *set(factors.tolist())
+    )
     table = np.array([[float(part * denominator) for part in (n.rational, n.root)] for n in numbers])
     component, sign = _places_of_written(notation)
     vectors = np.zeros((2, notation.symmetry.dimension, inverse.shape[1]))
@@ -256,7 +269,9 @@ def _integer_vectors(notation: TensorKind, numbers: list[Surd], inverse: IntArra
 
 
 def _satisfies(image: Numbers, scale: float, vectors: FloatArray) -> bool:
-    """Whether D(g) v = scale v for all columns, in integer arithmetic (integers below 2^50 held in doubles)."""
+    """Whether D(g) v = scale v for all columns, in integer arithmetic (integers below 2^50 held in
+    doubles).
+    """
     action = image.astype(np.float64)
     whole, root = action[0] @ vectors[0], action[0] @ vectors[1]
     if len(action) == 2:
@@ -267,4 +282,6 @@ def _satisfies(image: Numbers, scale: float, vectors: FloatArray) -> bool:
 
 
 def _trace_vanishes(notation: TensorKind, vectors: FloatArray) -> bool:
-    return not notation.traceless or not np.any(np.einsum("n,snk->sk", TensorSpace.of(notation).trace_vector, vectors))
+    return not notation.traceless or not np.any(
+        np.einsum("n,snk->sk", TensorSpace.of(notation).trace_vector, vectors)
+    )

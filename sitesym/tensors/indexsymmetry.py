@@ -1,7 +1,8 @@
 """Index symmetry of a tensor as a tree: vectors, products, symmetric and antisymmetric powers.
 
-A node knows which components are independent of each other by index symmetry alone, where each full index goes, how
-a matrix acts on those components, and the character of that action. It knows no group: a 3x3 matrix comes in.
+A node knows which components are independent of each other by index symmetry alone, where each full index
+goes, how a matrix acts on those components, and the character of that action. It knows no group: a 3x3
+matrix comes in.
 
 Source of the notation: H. A. Jahn, Acta Cryst. 2 (1949) 30.
 """
@@ -37,15 +38,21 @@ class IndexSymmetry(ABC):
 
     @abstractmethod
     def located(self) -> tuple[IntArray, IntArray]:
-        """For every full index, in C order: its component and its sign (0 where antisymmetry makes it vanish)."""
+        """For every full index, in C order: its component and its sign (0 where antisymmetry makes it
+        vanish).
+        """
 
     @abstractmethod
     def represent(self, matrix: Numbers) -> Numbers:
-        """Action on the components of a matrix (1 or 2, 3, 3): T'_c = sum_k D_ck T_k, shape (1 or 2, N, N)."""
+        """Action on the components of a matrix (1 or 2, 3, 3): T'_c = sum_k D_ck T_k, shape (1 or 2, N,
+        N).
+        """
 
     @abstractmethod
     def character(self, traces: FloatArray, power: int = 1) -> FloatArray:
-        """Trace of the action of g^power, from ``traces[k]`` = traces of the 3x3 matrices g^k (k, elements)."""
+        """Trace of the action of g^power, from ``traces[k]`` = traces of the 3x3 matrices g^k (k,
+        elements).
+        """
 
     @property
     def dimension(self) -> int:
@@ -140,7 +147,9 @@ class Power(IndexSymmetry):
 
     @cached_property
     def choices(self) -> tuple[tuple[int, ...], ...]:
-        """Which components of the factors make up each component; a symmetric pair of vectors in Voigt order."""
+        """Which components of the factors make up each component; a symmetric pair of vectors in Voigt
+        order.
+        """
         if self.symmetric and self.base == Vector() and self.count == 2:
             return VOIGT_PAIRS
         choose = combinations_with_replacement if self.symmetric else combinations
@@ -191,7 +200,9 @@ class Power(IndexSymmetry):
         return summed
 
     def character(self, traces: FloatArray, power: int = 1) -> FloatArray:
-        """Newton's identities: n h_n = sum_i (+-1)^(i-1) p_i h_(n-i), with p_i the trace of the i-th power."""
+        """Newton's identities: n h_n = sum_i (+-1)^(i-1) p_i h_(n-i), with p_i the trace of the i-th
+        power.
+        """
         sign = 1.0 if self.symmetric else -1.0
         sums = [self.base.character(traces, power * i) for i in range(1, self.count + 1)]
         complete = [np.ones_like(traces[power])]

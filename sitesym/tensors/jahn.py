@@ -19,7 +19,9 @@ _SUPERSCRIPTS = str.maketrans("⁰¹²³⁴⁵⁶⁷⁸⁹", "0123456789")
 
 @dataclass(frozen=True)
 class Jahn:
-    """A symbol that was understood: its text, axial or not, odd under time reversal or not, and its index symmetry."""
+    """A symbol that was understood: its text, axial or not, odd under time reversal or not, and its index
+    symmetry.
+    """
 
     text: str
     axial: bool
@@ -29,7 +31,9 @@ class Jahn:
 
 @lru_cache(maxsize=256)
 def read_jahn(text: str) -> Jahn:
-    """The index symmetry a Jahn symbol states. Raises TensorInputError for a symbol that is not understood."""
+    """The index symmetry a Jahn symbol states. Raises TensorInputError for a symbol that is not
+    understood.
+    """
     plain = text.translate(_SUPERSCRIPTS).replace("^", "").replace(" ", "").replace("ε", "e")
     marks = re.match(r"[ae]*", plain)
     prefix = marks.group() if marks else ""

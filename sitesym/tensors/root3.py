@@ -1,7 +1,8 @@
-"""Exact numbers a + b sqrt(3) with rational a, b: what the matrices of point groups in standard axes are made of.
+"""Exact numbers a + b sqrt(3) with rational a, b: what the matrices of point groups in standard axes are
+made of.
 
-Arrays of such numbers carry a leading axis of length two (a, then b); plain floats carry a leading axis of length
-one. `multiply` works for both, so that one code builds exact and float representations.
+Arrays of such numbers carry a leading axis of length two (a, then b); plain floats carry a leading axis of
+length one. `multiply` works for both, so that one code builds exact and float representations.
 """
 
 from __future__ import annotations
@@ -81,7 +82,12 @@ def recognise(values: FloatArray) -> list[Surd] | None:
             here = (denominators == 0) & (np.abs(scaled - nearest) < RECOGNISED)
             numerators[here], denominators[here], rooted[here] = nearest[here], denominator, unit != 1.0
             if denominators.all():
-                return [_surd(*number) for number in zip(numerators.tolist(), denominators.tolist(), rooted.tolist(), strict=True)]
+                return [
+                    _surd(*number)
+                    for number in zip(
+                        numerators.tolist(), denominators.tolist(), rooted.tolist(), strict=True
+                    )
+                ]
     return None
 
 

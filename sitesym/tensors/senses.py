@@ -1,8 +1,8 @@
 """Which independent components change sign in an equivalent choice of axes.
 
-Symmetry fixes directions of axes but not always their senses: quartz turned by 180 degrees about its threefold axis
-obeys the same form with the sign of d11 reversed. Without data the sense is open, and these are the components that
-it decides about.
+Symmetry fixes directions of axes but not always their senses: quartz turned by 180 degrees about its
+threefold axis obeys the same form with the sign of d11 reversed. Without data the sense is open, and these
+are the components that it decides about.
 """
 
 from __future__ import annotations
@@ -23,7 +23,9 @@ _SAME = 1e-6
 
 @dataclass(frozen=True)
 class SenseChoice:
-    """An equivalent choice of axes: the turn in words (Cartesian direction) and the components that change sign."""
+    """An equivalent choice of axes: the turn in words (Cartesian direction) and the components that change
+    sign.
+    """
 
     turn: str
     flips: tuple[str, ...]

@@ -1,7 +1,8 @@
 """Tensor spaces: where index symmetry meets a group.
 
-A `TensorSpace` is what index symmetry, parity and time parity leave of a tensor. A group acts on it; its reduction is
-counted with characters and spanned with projection operators, for every irrep and not only the invariant one.
+A `TensorSpace` is what index symmetry, parity and time parity leave of a tensor. A group acts on it; its
+reduction is counted with characters and spanned with projection operators, for every irrep and not only the
+invariant one.
 """
 
 from __future__ import annotations
