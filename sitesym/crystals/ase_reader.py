@@ -7,6 +7,7 @@ import struct
 import warnings
 import zlib
 from pathlib import Path
+from typing import Any
 
 from sitesym.crystals.crystal import Crystal, Source
 from sitesym.errors import EmptyStructureError, ReadingError, UnknownFormatError
@@ -33,7 +34,7 @@ _CONTENT_ERRORS = (
 
 
 # Without this ASE looks for a CASTEP program and runs it to learn its keywords.
-_OPTIONS: dict[str, dict[str, object]] = {"castep-cell": {"calculator_args": {"keyword_tolerance": 3}}}
+_OPTIONS: dict[str, dict[str, Any]] = {"castep-cell": {"calculator_args": {"keyword_tolerance": 3}}}
 
 
 def read_with_ase(path: Path, ase_format: str) -> tuple[Crystal, ...]:
@@ -67,7 +68,9 @@ def read_with_ase(path: Path, ase_format: str) -> tuple[Crystal, ...]:
             "look for the missing structure",
         )
     # What ASE plans for its own interface says nothing about the file.
-    warned = (entry for entry in caught if not issubclass(entry.category, (FutureWarning, DeprecationWarning)))
+    warned = (
+        entry for entry in caught if not issubclass(entry.category, (FutureWarning, DeprecationWarning))
+    )
     remarks = tuple(dict.fromkeys(f"ASE warns: {entry.message}" for entry in warned))
     parts = (
         [""]

@@ -7,6 +7,7 @@ angle tolerance stays at the library's -1, so that one length decides.
 from __future__ import annotations
 
 from functools import lru_cache
+from types import ModuleType
 
 import numpy as np
 
@@ -20,12 +21,8 @@ _ANGLE_TOLERANCE = -1.0
 
 def find_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmetry:
     """Space group and orbits of a crystal. Raises SymmetryNotFoundError when the library gives no answer."""
-    import spglib
-    import spglib.error
-
-    # Without this the library returns None and keeps the reason in a global.
-    spglib.error.OLD_ERROR_HANDLING = False
-    cell = (crystal.lattice.tolist(), crystal.positions_frac.tolist(), crystal.species_indices.tolist())
+    spglib = _spglib()
+    cell = (crystal.lattice, crystal.positions_frac, crystal.species_indices)
     try:
         dataset = spglib.get_symmetry_dataset(
             cell, symprec=tolerance_angstrom, angle_tolerance=_ANGLE_TOLERANCE
@@ -61,10 +58,12 @@ def find_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmet
 @lru_cache(maxsize=530)
 def setting(hall_number: int) -> SpaceGroupSetting:
     """The operations and symbols of one of the 530 settings, numbered as in spglib's database."""
-    import spglib
-
-    operations = spglib.get_symmetry_from_database(hall_number)
-    kind = spglib.get_spacegroup_type(hall_number)
+    spglib = _spglib()
+    try:
+        operations = spglib.get_symmetry_from_database(hall_number)
+        kind = spglib.get_spacegroup_type(hall_number)
+    except spglib.SpglibError:
+        operations = kind = None
     if operations is None or kind is None:
         raise SymmetryNotFoundError(
             "there is no such space-group setting",
@@ -90,10 +89,7 @@ def setting(hall_number: int) -> SpaceGroupSetting:
 
 def niggli_lattice(lattice: FloatArray) -> FloatArray:
     """Niggli-reduced cell vectors (rows) of the same lattice. Raises SymmetryNotFoundError when it fails."""
-    import spglib
-    import spglib.error
-
-    spglib.error.OLD_ERROR_HANDLING = False
+    spglib = _spglib()
     try:
         reduced = spglib.niggli_reduce(lattice)
     except spglib.SpglibError as error:
@@ -101,6 +97,15 @@ def niggli_lattice(lattice: FloatArray) -> FloatArray:
     if reduced is None:
         raise SymmetryNotFoundError("the cell cannot be reduced", "no answer of spglib")
     return np.asarray(reduced, dtype=np.float64)
+
+
+def _spglib() -> ModuleType:
+    """The library, set to raise its errors: by default it returns None and keeps the reason in a global."""
+    import spglib
+    import spglib.error
+
+    spglib.error.OLD_ERROR_HANDLING = False
+    return spglib
 
 
 def _conventional_positions(
