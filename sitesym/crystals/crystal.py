@@ -160,8 +160,15 @@ def _fractional(lattice: FloatArray, positions_cart: FloatArray) -> FloatArray:
 
 def _ase_species(atoms: Atoms) -> tuple[Species, ...]:
     occupancies = atoms.info.get("occupancy")
-    kinds = atoms.arrays.get("spacegroup_kinds")
-    if occupancies is None or kinds is None:
+    if occupancies is None:
         return tuple(Species.pure(_symbol(number)) for number in atoms.numbers)
+    kinds = [str(kind) for kind in atoms.arrays.get("spacegroup_kinds", ())]
     table = {str(kind): Species.mixed(parts) for kind, parts in occupancies.items()}
-    return tuple(table[str(kind)] for kind in kinds)
+    if len(kinds) != len(atoms) or not set(kinds) <= set(table):
+        raise CountMismatchError(
+            "occupancies and atoms do not belong together",
+            f"occupancies of kinds {', '.join(table)}; kinds of atoms: {', '.join(kinds) or 'none'}",
+            "atoms.arrays['spacegroup_kinds'] names for each atom an entry of atoms.info['occupancy']",
+            "complete both, or remove the occupancies",
+        )
+    return tuple(table[kind] for kind in kinds)

@@ -9,7 +9,7 @@ from ase.spacegroup import crystal as ase_crystal
 
 from sitesym.crystals import Crystal, Species
 from sitesym.crystals.species import SYMBOLS, reduced_formula
-from sitesym.errors import NotPeriodicError
+from sitesym.errors import CountMismatchError, NotPeriodicError
 
 
 def test_text_of_a_species_is_its_content():
@@ -68,6 +68,12 @@ def test_ase_atoms_keep_cell_positions_and_partial_occupancies():
     assert crystal.formula == "Ba0.6Sr0.4TiO3"
     assert not crystal.is_ordered
     assert np.allclose(crystal.positions_frac @ crystal.lattice, atoms.positions)
+
+
+def test_occupancies_that_no_atom_can_be_given_are_not_dropped():
+    atoms = Atoms("Po", cell=[3.3] * 3, pbc=True, info={"occupancy": {"0": {"Po": 0.5}}})
+    with pytest.raises(CountMismatchError):
+        Crystal.from_ase(atoms)
 
 
 def test_a_molecule_is_refused():

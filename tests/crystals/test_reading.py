@@ -147,7 +147,8 @@ def test_missing_files_folders_and_unknown_formats_are_reading_errors(tmp_path):
 
 def test_only_structure_files_have_a_named_format():
     assert named_format("some/where/Quartz.CIF") == "cif"
-    assert named_format("README.md") is None
+    assert named_format("POSCAR") == named_format("relaxed-POSCAR") == "vasp"
+    assert named_format("README.md") is named_format("poscar.md") is None
     assert named_format("data.csv") is None
 
 
