@@ -1,7 +1,7 @@
 """Site symmetries of twenty structure types.
 
-Expected: International Tables for Crystallography A, oriented symbols and multiplicities, from memory. Letters
-depend on the choice of origin (letters that a shift of origin exchanges are listed together), symbols do not.
+Expected: International Tables for Crystallography A, oriented symbols and multiplicities, from memory.
+Letters depend on the choice of origin (those that a shift of origin exchanges are listed together).
 """
 
 from pathlib import Path
