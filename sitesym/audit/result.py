@@ -1,0 +1,189 @@
+"""What an audit answers: frozen results, no computing."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final, Literal, TypeAlias
+
+from sitesym.arrays import FloatArray
+from sitesym.audit.measurement import Layout, Measurement
+from sitesym.audit.orders import Order
+from sitesym.groups import PointGroup
+
+Verdict: TypeAlias = Literal["consistent", "consistent-otherwise", "violates", "cannot-tell", "no-constraint"]
+VERDICTS: Final = ("consistent", "consistent-otherwise", "violates", "cannot-tell", "no-constraint")
+
+
+@dataclass(frozen=True)
+class Residual:
+    """How far a tensor is from the allowed form, in the orthonormal metric of the full tensor.
+
+    ``absolute``: norm of the forbidden part, in the unit of the tensor. ``relative``: divided by the norm of
+    the tensor. ``tolerance``: what noise and rounding allow, in the unit of the tensor. ``chi2``, ``dof``,
+    ``p_value``: of the best allowed tensor, where standard uncertainties are known, else None.
+    ``within``: whether the tensor counts as obeying.
+    """
+
+    absolute: float
+    relative: float
+    tolerance: float
+    within: bool
+    chi2: float | None = None
+    dof: int | None = None
+    p_value: float | None = None
+
+
+@dataclass(frozen=True)
+class EntryPair:
+    """Two entries that index symmetry makes equal (or opposite): names, values, tolerance of the difference."""
+
+    first: str
+    second: str
+    first_value: float
+    second_value: float
+    tolerance: float
+
+
+@dataclass(frozen=True)
+class IndexFinding:
+    """Index symmetry of the array as given: C_IJ against C_JI, eps_ij against eps_ji.
+
+    ``applies``: whether the layout leaves anything to compare. ``largest``: largest difference of two entries,
+    in the unit of the tensor. ``relative``: norm of the part that breaks it divided by the norm of the array.
+    ``broken``: the pairs beyond their tolerance.
+    """
+
+    applies: bool
+    holds: bool
+    largest: float
+    relative: float
+    broken: tuple[EntryPair, ...] = ()
+
+
+@dataclass(frozen=True)
+class Deviation:
+    """A component that is not what symmetry says, in the stated axes.
+
+    ``component``: contracted name, such as 14. ``expected``: zero for a forbidden one, else what ``relation``
+    (such as ``26 = -2*11``) gives from the other entries. All in the unit and with the factors of the kind.
+    """
+
+    component: str
+    value: float
+    expected: float
+    tolerance: float
+    relation: str = ""
+
+
+@dataclass(frozen=True)
+class Slip:
+    """A mistake in single entries that would explain a violation.
+
+    ``sort``: sign, swap, power-of-ten or entry. ``entries``: names of the entries concerned. ``exponent``: of
+    the power of ten by which the entry is too large. ``expected``: the value each entry should have.
+    """
+
+    sort: Literal["sign", "swap", "power-of-ten", "entry"]
+    entries: tuple[str, ...]
+    expected: tuple[float, ...]
+    exponent: int = 0
+
+
+@dataclass(frozen=True, eq=False)
+class Turn:
+    """A rotation in words: angle in degrees, unit axis in the file's axes (3,), nearest crystal directions.
+
+    ``nearest``: for each of the tensor's x, y, z: lattice direction and angle to it in degrees.
+    """
+
+    angle_degrees: float
+    axis: FloatArray
+    nearest: tuple[tuple[str, float], ...]
+
+
+@dataclass(frozen=True, eq=False)
+class Reading:
+    """One way to read the array, and how well the tensor then obeys.
+
+    ``axes``: name of the axes with the turn that was applied to them. ``rotation``: (3, 3), the axes of the
+    tensor as rows in the file's axes. ``factor``: what the entries were divided by, in words ('' for the
+    kind's own factors). ``choices``: how many hypotheses of this richness were tried. ``score``: natural
+    logarithm of the number of them expected to fit so well by chance; low is good. ``joined``: other
+    readings that give the same tensor up to an equivalent choice of axes. ``slip``: the mistake that has to
+    be put right besides.
+    """
+
+    axes: str
+    rotation: FloatArray
+    order: Order
+    layout: Layout
+    factor: str
+    residual: Residual
+    choices: int
+    score: float
+    joined: tuple[str, ...] = ()
+    slip: Slip | None = None
+    turn: Turn | None = None
+
+    @property
+    def words(self) -> str:
+        """The reading in one phrase."""
+        parts = [f"axes {self.axes}", f"order {' '.join(self.order)}", f"layout {self.layout}"]
+        return ", ".join(parts + ([self.factor] if self.factor else []))
+
+
+@dataclass(frozen=True)
+class EquivalentAxes:
+    """A turn of the axes that symmetry cannot detect, in the axes of the reading.
+
+    ``turn``: in words. ``flips``: independent components that change sign. ``mixes``: whether it does more to
+    the components than change signs.
+    """
+
+    turn: str
+    flips: tuple[str, ...]
+    mixes: bool
+
+
+@dataclass(frozen=True)
+class TensorSymmetry:
+    """The largest point group that leaves the tensor unchanged within noise, in the axes of the crystal.
+
+    ``symbol``, ``system``, ``elements`` (names): of that group. ``crystal_symbol``: the group that a tensor of this
+    kind shows in this crystal. ``relation``: of the first to the second: same, higher (more than the crystal
+    asks for), lower (a subgroup), other.
+    """
+
+    symbol: str
+    system: str
+    elements: tuple[str, ...]
+    crystal_symbol: str
+    relation: Literal["same", "higher", "lower", "other"]
+
+
+@dataclass(frozen=True, eq=False)
+class AuditResult:
+    """The answer for one measurement.
+
+    ``stated``: the reading as stated (None where order or axes are unknown). ``best``: the reading that
+    explains the tensor, or the slip; None when nothing does. ``rivals``: others that do about as well.
+    ``undetected``: changes of axes, order, layout or factor that leave the tensor as obedient as it is:
+    symmetry cannot exclude them. ``message``: two lines, the verdict and what to do.
+    """
+
+    measurement: Measurement
+    group: PointGroup
+    noise: float
+    verdict: Verdict
+    message: str
+    index_symmetry: IndexFinding
+    stated: Reading | None = None
+    best: Reading | None = None
+    rivals: tuple[Reading, ...] = ()
+    forbidden: tuple[Deviation, ...] = ()
+    relations: tuple[Deviation, ...] = ()
+    equivalent_axes: tuple[EquivalentAxes, ...] = ()
+    undetected: tuple[str, ...] = ()
+    tensor_symmetry: TensorSymmetry | None = None
+    constraints: int = 0
+    independent: int = 0
