@@ -30,7 +30,8 @@ class AbstractGroup:
     @cached_property
     def inverses(self) -> IntArray:
         """Index of the inverse of each element, shape (order,)."""
-        return np.argmin(self.table, axis=1)
+        inverses: IntArray = np.argmin(self.table, axis=1)
+        return inverses
 
     @cached_property
     def element_orders(self) -> IntArray:

@@ -13,9 +13,13 @@ from math import gcd
 import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.errors import SymmetryError
 from sitesym.tolerances import SAME_MATRIX
 
 _LARGEST_INDEX = 9
+_HIGHEST_ORDER = 120
+#: Largest difference between a direction, its longest component scaled to an index, and integers.
+_SAME_DIRECTION = 1e-4
 
 
 @dataclass(frozen=True, eq=False)
@@ -53,7 +57,7 @@ def classify(
     rotation_cart: FloatArray, lattice: FloatArray | None = None, time_reversal: bool = False
 ) -> Element:
     """The kind of one orthogonal matrix, shape (3, 3); ``lattice`` has rows a, b, c for lattice
-    directions.
+    directions. Raises SymmetryError for a rotation by no rational part of a turn.
     """
     improper = bool(np.linalg.det(rotation_cart) < 0)
     proper = -rotation_cart if improper else rotation_cart
@@ -67,11 +71,16 @@ def classify(
 
 def _rotation_order(proper: FloatArray) -> int:
     power = np.eye(3)
-    for order in range(1, 121):
+    for order in range(1, _HIGHEST_ORDER + 1):
         power = power @ proper
         if np.abs(power - np.eye(3)).max() < SAME_MATRIX:
             return order
-    return 0
+    raise SymmetryError(
+        "an operation has no finite order",
+        value=f"rotation part with trace {float(np.trace(proper)):.6g}",
+        rule=f"some power up to {_HIGHEST_ORDER} of a rotation in a finite group is the identity",
+        next_step="give the operations to more digits",
+    )
 
 
 def _axis(proper: FloatArray, order: int, lattice: FloatArray | None) -> tuple[FloatArray, str]:
@@ -83,7 +92,7 @@ def _axis(proper: FloatArray, order: int, lattice: FloatArray | None) -> tuple[F
         total += power
     column = total[:, int(np.argmax(np.linalg.norm(total, axis=0)))]
     axis = column / np.linalg.norm(column)
-    components = axis if lattice is None else np.linalg.solve(lattice.T, axis)
+    components: FloatArray = axis if lattice is None else np.asarray(np.linalg.solve(lattice.T, axis))
     indices = small_integers(components)
     if indices is None:
         axis = axis * _leading_sign(axis)
@@ -97,9 +106,9 @@ def small_integers(vector: FloatArray) -> IntArray | None:
     scale = np.abs(vector).max()
     for largest in range(1, _LARGEST_INDEX + 1):
         candidate = vector / scale * largest
-        rounded = np.rint(candidate).astype(np.int64)
-        if np.abs(candidate - rounded).max() < 1e-4:
-            return rounded // gcd(*(int(abs(v)) for v in rounded))
+        rounded: IntArray = np.rint(candidate).astype(np.int64)
+        if np.abs(candidate - rounded).max() < _SAME_DIRECTION:
+            return rounded // np.int64(gcd(*(int(abs(v)) for v in rounded)))
     return None
 
 

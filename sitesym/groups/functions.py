@@ -7,17 +7,27 @@ unchanged. The names are candidates only. Functions are written in the standard 
 
 from __future__ import annotations
 
-from typing import Final
+from collections.abc import Mapping
+from typing import Final, TypeAlias
 
 import numpy as np
 
 from sitesym.arrays import ComplexArray, FloatArray
 from sitesym.groups.table import CharacterTable
 
-_VECTOR: Final = {"x": (1, 0, 0), "y": (0, 1, 0), "z": (0, 0, 1), "x+iy": (1, 1j, 0), "x-iy": (1, -1j, 0)}
+#: Coefficients of named functions.
+Candidates: TypeAlias = Mapping[str, tuple[complex, ...]]
+
+_VECTOR: Final[Candidates] = {
+    "x": (1, 0, 0),
+    "y": (0, 1, 0),
+    "z": (0, 0, 1),
+    "x+iy": (1, 1j, 0),
+    "x-iy": (1, -1j, 0),
+}
 
 # Coefficients of xx, yy, zz, yz, xz, xy.
-_PRODUCTS: Final = {
+_PRODUCTS: Final[Candidates] = {
     "x2": (1, 0, 0, 0, 0, 0),
     "y2": (0, 1, 0, 0, 0, 0),
     "z2": (0, 0, 1, 0, 0, 0),
@@ -82,7 +92,7 @@ def _projector(representation: FloatArray, character: ComplexArray, dimension: i
     return projector
 
 
-def _members(prefix: str, candidates: dict[str, tuple[complex, ...]], projector: ComplexArray) -> list[str]:
+def _members(prefix: str, candidates: Candidates, projector: ComplexArray) -> list[str]:
     """Candidates in the range of the projector that are not combinations of those already listed."""
     names: list[str] = []
     chosen = np.zeros((projector.shape[0], 0), dtype=np.complex128)

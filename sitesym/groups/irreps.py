@@ -16,6 +16,7 @@ import numpy as np
 from sitesym.arrays import ComplexArray, FloatArray
 from sitesym.errors import SymmetryError
 from sitesym.groups.pointgroup import PointGroup
+from sitesym.tolerances import REPRESENTATION
 
 _HIGHEST_POWER = 4
 
@@ -23,8 +24,9 @@ _HIGHEST_POWER = 4
 def irrep_matrices(group: PointGroup, character: ComplexArray) -> ComplexArray:
     """Unitary matrices D(g) with the given character (one value an element), shape (n, d, d).
 
-    Real orthogonal where the irrep is real. The basis follows the Cartesian axes of the group: an irrep
-    that the polar vector contains once is given on its x, y, z.
+    Real orthogonal where the irrep is real and d > 1. The basis follows the Cartesian axes of the group: an
+    irrep that the polar vector contains once is given on its x, y, z. Raises SymmetryError if the search
+    finds the irrep in no tensor power.
     """
     dimension = round(character[0].real)
     if dimension == 1:
@@ -34,7 +36,8 @@ def irrep_matrices(group: PointGroup, character: ComplexArray) -> ComplexArray:
     space = _orthonormal_columns(projector)
     if multiplicity > 1:
         space = space @ _one_copy(np.einsum("ai,gab,bj->gij", space.conj(), representation, space), dimension)
-    return np.einsum("ai,gab,bj->gij", space.conj(), representation, space).astype(np.complex128)
+    matrices: ComplexArray = np.einsum("ai,gab,bj->gij", space.conj(), representation, space)
+    return matrices
 
 
 def _containing(group: PointGroup, character: ComplexArray) -> tuple[FloatArray, int]:
@@ -53,30 +56,29 @@ def _containing(group: PointGroup, character: ComplexArray) -> tuple[FloatArray,
 
 
 def _tensor_powers(group: PointGroup) -> Iterator[FloatArray]:
-    """Polar and axial, time-even and time-odd tensor powers of the vector representation, lowest first."""
-    determinants = group.determinants.astype(np.float64)
-    reversal = np.where(group.time_reversal, -1.0, 1.0)
-    signs = [np.ones(group.order), determinants]
-    if group.time_reversal.any():
-        signs += [reversal, reversal * determinants]
+    """Polar and axial tensor powers of the vector representation, shape (n, 3^k, 3^k), lowest first."""
     power = group.rotations_cart
     for _ in range(_HIGHEST_POWER):
-        for sign in signs:
-            yield power * sign[:, None, None]
+        yield power
+        yield power * group.determinants[:, None, None]
         size = power.shape[1] * 3
         power = np.einsum("gij,gkl->gikjl", power, group.rotations_cart).reshape(-1, size, size)
 
 
 def _orthonormal_columns(projector: ComplexArray) -> ComplexArray:
-    """Orthonormal basis of the range of a Hermitian projector, by Gram-Schmidt on its columns in order."""
+    """Orthonormal basis of the range of a Hermitian projector, by Gram-Schmidt on its columns in order.
+
+    The squared residues of all n columns sum to the rank that is still missing, so that one residue is at
+    least 1/sqrt(n): taking only such columns is enough, and keeps the basis accurate however the axes lie.
+    """
+    smallest = 0.99 / np.sqrt(len(projector))
     basis: list[ComplexArray] = []
     for column in projector.T:
         residue = column - sum((vector * (vector.conj() @ column) for vector in basis), np.zeros_like(column))
         norm = float(np.linalg.norm(residue))
-        if norm > 1e-6:
+        if norm > smallest:
             basis.append(residue / norm)
-    columns = np.array(basis).T
-    return columns.real if np.abs(columns.imag).max() < 1e-12 else columns
+    return np.array(basis, dtype=np.complex128).T
 
 
 def _one_copy(copies: ComplexArray, dimension: int) -> ComplexArray:
@@ -86,5 +88,6 @@ def _one_copy(copies: ComplexArray, dimension: int) -> ComplexArray:
     size = copies.shape[1]
     seed = np.random.default_rng(1).standard_normal((size, size))
     averaged = np.einsum("gai,ab,gbj->ij", copies.conj(), seed + seed.T, copies) / len(copies)
-    _, vectors = np.linalg.eigh(averaged)
-    return vectors[:, :dimension]
+    real = np.abs(averaged.imag).max() < REPRESENTATION  # then the eigenvectors shall be real too
+    _, vectors = np.linalg.eigh(averaged.real if real else averaged)
+    return vectors[:, :dimension].astype(np.complex128)

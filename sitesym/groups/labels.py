@@ -6,7 +6,8 @@ number of E, or the sign under the fourfold operation for T. Parity: g and u wit
 primes with a mirror across the main axis. The members of a complex pair are 1E and 2E: 1E takes exp(+2 pi i
 m/n) under the positive main rotation. Axes are those of the standard orientation. Source: R. S. Mulliken,
 J. Chem. Phys. 23 (1955) 1997; the choices that he leaves open stand in `reference_operation`. Other books
-choose otherwise: read the characters too.
+choose otherwise: read the characters too. The rules cover the 32 crystallographic classes; irreps of other
+groups are numbered after H. A. Bethe, Ann. Phys. 395 (1929) 133.
 """
 
 from __future__ import annotations
@@ -19,6 +20,7 @@ import numpy as np
 from sitesym.arrays import ComplexArray, FloatArray
 from sitesym.groups.elements import Element
 from sitesym.groups.pointgroup import PointGroup
+from sitesym.tolerances import SAME_MATRIX
 
 #: Characters of one irrep, one value for each element.
 ElementCharacter: TypeAlias = ComplexArray
@@ -33,9 +35,8 @@ class LabelFrame:
     """
 
     group: PointGroup
-    cubic: bool
-    dihedral_two: tuple[int, int, int] | None
-    main: int | None
+    dihedral_two: tuple[int, ...]
+    main: int
     reference: int | None
     inversion: int | None
     mirror_across: int | None
@@ -43,19 +44,21 @@ class LabelFrame:
 
 def label_frame(group: PointGroup) -> LabelFrame:
     """Pick the deciding operations of a group that is already in the standard orientation."""
-    twofold = [_find(group, 2, False, axis) for axis in (_Z, _Y, _X)]
-    complete = twofold[0] is not None and twofold[1] is not None and twofold[2] is not None
-    orthorhombic = group.symbol in ("222", "mmm") and complete
     inversion = next((i for i, e in enumerate(group.elements) if e.improper and e.order == 1), None)
     return LabelFrame(
         group=group,
-        cubic=group.system == "cubic",
-        dihedral_two=(twofold[0], twofold[1], twofold[2]) if orthorhombic else None,  # type: ignore[arg-type]
+        dihedral_two=_twofold_along_zyx(group) if group.symbol in ("222", "mmm") else (),
         main=_main_rotation(group),
         reference=reference_operation(group),
         inversion=inversion,
         mirror_across=None if inversion is not None else _mirror_across(group),
     )
+
+
+def _twofold_along_zyx(group: PointGroup) -> tuple[int, ...]:
+    """The twofold rotations of 222 and mmm, in the order in which they number B1, B2, B3."""
+    found = (_find(group, 2, False, axis) for axis in (_Z, _Y, _X))
+    return tuple(index for index in found if index is not None)
 
 
 def reference_operation(group: PointGroup) -> int | None:
@@ -79,17 +82,13 @@ def letter_and_number(frame: LabelFrame, character: ElementCharacter, is_complex
     dimension = round(character[0].real)
     if is_complex and dimension == 1:
         return "E", _winding(frame, character)
-    match dimension:
-        case 1:
-            return _one_dimensional(frame, character)
-        case 2:
-            return "E", _winding(frame, character)
-        case 3 if frame.reference is not None:
-            return "T", 1 if character[frame.reference].real > 0 else 2
-        case 3:
-            return "T", 0
-        case _:
-            return f"D{dimension}", 0
+    if dimension == 1:
+        return _one_dimensional(frame, character)
+    if dimension == 2:
+        return "E", _winding(frame, character)
+    if frame.reference is None:
+        return "T", 0
+    return "T", 1 if character[frame.reference].real > 0 else 2
 
 
 def parity_mark(frame: LabelFrame, character: ElementCharacter) -> str:
@@ -105,40 +104,32 @@ def pair_member(frame: LabelFrame, character: ElementCharacter) -> str:
     """'1' for the member of a complex pair with exp(+2 pi i m/n) under the main rotation, '2' for the
     other.
     """
-    main = (
-        character[frame.main] if frame.main is not None else next(c for c in character if abs(c.imag) > 1e-9)
-    )
-    if abs(main.imag) < 1e-9:
-        main = next(c for c in character if abs(c.imag) > 1e-9)
-    return "1" if main.imag > 0 else "2"
+    return "1" if character[frame.main].imag > 0 else "2"
 
 
 def _one_dimensional(frame: LabelFrame, character: ElementCharacter) -> tuple[str, int]:
-    if frame.dihedral_two is not None:
+    if frame.dihedral_two:
         even = [character[i].real > 0 for i in frame.dihedral_two]
         return ("A", 0) if all(even) else ("B", 1 + even.index(True))
-    odd = frame.main is not None and not frame.cubic and character[frame.main].real < 0
     number = 0 if frame.reference is None else 1 if character[frame.reference].real > 0 else 2
-    return ("B" if odd else "A"), number
+    return ("B" if character[frame.main].real < 0 else "A"), number
 
 
 def _winding(frame: LabelFrame, character: ElementCharacter) -> int:
     """m of the eigenvalues exp(+-2 pi i m/n) of the main rotation of order n."""
-    if frame.main is None or frame.cubic:
-        return 0
     order = frame.group.elements[frame.main].order
     dimension = round(character[0].real)
     angle = float(np.arccos(np.clip(character[frame.main].real / dimension, -1.0, 1.0)))
     return round(angle * order / (2.0 * np.pi))
 
 
-def _main_rotation(group: PointGroup) -> int | None:
-    """The positive rotation of highest order along z ([111] in cubic groups without a fourfold axis).
+def _main_rotation(group: PointGroup) -> int:
+    """The positive rotation of highest order along z; y in monoclinic, [111] in cubic groups.
 
-    The fourfold rotoinversion where there is no fourfold rotation; y in monoclinic groups.
+    The fourfold rotoinversion where there is no fourfold rotation, the identity where there is no axis.
     """
     if group.system == "cubic":
-        return _find(group, 3, False, np.ones(3) / np.sqrt(3.0))
+        return _find(group, 3, False, np.ones(3) / np.sqrt(3.0)) or 0
     axis = _Y if group.system == "monoclinic" else _Z
     orders = sorted({e.order for e in group.elements if e.order > 1}, reverse=True)
     proper = [_find(group, order, False, axis) for order in orders]
@@ -146,7 +137,7 @@ def _main_rotation(group: PointGroup) -> int | None:
     fourfold_improper = _find(group, 4, True, axis)
     if fourfold_improper is not None and (highest is None or group.elements[highest].order < 4):
         return fourfold_improper
-    return highest
+    return highest or 0
 
 
 def _mirror_across(group: PointGroup) -> int | None:
@@ -162,15 +153,10 @@ def _find(group: PointGroup, order: int, improper: bool, axis: FloatArray) -> in
 
 
 def _is(element: Element, order: int, improper: bool, axis: FloatArray) -> bool:
-    if (
-        element.axis is None
-        or element.order != order
-        or element.improper != improper
-        or element.time_reversal
-    ):
+    if element.axis is None or element.order != order or element.improper != improper:
         return False
     overlap = float(element.axis @ axis)
-    return abs(abs(overlap) - 1.0) < 1e-6 and element.sense * overlap >= 0
+    return abs(abs(overlap) - 1.0) < SAME_MATRIX and element.sense * overlap >= 0
 
 
 def _first_found(*indices: int | None) -> int | None:

@@ -17,14 +17,15 @@ from sitesym.groups.pointgroup import PointGroup
 from sitesym.tolerances import SAME_MATRIX
 
 
-@lru_cache(maxsize=1024)
+@lru_cache(maxsize=256)
 def equivalent_turns(group: PointGroup) -> tuple[FloatArray, ...]:
     """Proper rotations (3, 3), in the group's own axes, that map the group onto itself and are none of its
     elements.
 
-    One for each coset of the group in its normaliser, searched among the rotations of a
-    cube and of a hexagonal prism in the standard orientation. Where the normaliser is continuous (any turn
-    about the main axis of 1, 2, m, 3, 4, 6 and the like) the list holds only its members among those.
+    One for each coset of the group in its normaliser, searched among the rotations of a cube and of a
+    hexagonal prism in the standard orientation. Where the normaliser is larger (any turn about the main
+    axis of 1, 2, m, 3, 4, 6 and the like, turns by 45 degrees in 422, 4mm and 4/mmm) the list holds only
+    its members among those. Time reversal is not looked at.
     """
     to_standard = standard_rotation(group)
     found: list[FloatArray] = []
@@ -45,8 +46,7 @@ def _candidates() -> list[FloatArray]:
         for matrix in PointGroup.from_symbol(symbol).rotations_cart
         if np.trace(matrix) < 3.0 - SAME_MATRIX
     ]
-    diagonal_first = sorted(rotations, key=lambda m: (np.count_nonzero(np.abs(m) > SAME_MATRIX), -m[2, 2]))
-    return diagonal_first
+    return sorted(rotations, key=lambda m: (np.count_nonzero(np.abs(m) > SAME_MATRIX), -m[2, 2]))
 
 
 def _maps_onto_itself(group: PointGroup, turn: FloatArray) -> bool:

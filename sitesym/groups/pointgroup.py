@@ -8,17 +8,23 @@ from functools import cached_property, lru_cache
 import numpy as np
 
 from sitesym.arrays import BoolArray, FloatArray, IntArray, frozen
-from sitesym.errors import NotAGroupError, SymmetryError
 from sitesym.groups.abstract import AbstractGroup
+from sitesym.groups.closure import abstract_group, identity_first
 from sitesym.groups.elements import Element, classify
+from sitesym.groups.inputs import (
+    integer_matrices,
+    lattice_rows,
+    proper_rotation,
+    require_orthogonal,
+    time_reversal_flags,
+)
 from sitesym.groups.symbols import (
     ORIENTED,
     SCHOENFLIES,
-    Spelling,
     crystal_system,
+    generated,
     read_symbol,
 )
-from sitesym.tolerances import ORTHOGONAL, SAME_MATRIX
 
 
 @dataclass(frozen=True, eq=False)
@@ -49,7 +55,7 @@ class PointGroup:
         Raises UsageError for an unknown symbol.
         """
         spelling = read_symbol(symbol)
-        return cls.from_fractional(_generated(spelling), spelling.lattice)
+        return cls.from_fractional(generated(spelling.generators), spelling.lattice)
 
     @classmethod
     def from_fractional(
@@ -57,37 +63,36 @@ class PointGroup:
     ) -> PointGroup:
         """A group of integer matrices (n, 3, 3) in the basis with rows ``lattice`` (any length unit).
 
-        Raises NotAGroupError naming a missing product, and SymmetryError when the lattice does not have the
-        symmetry (the Cartesian matrices are not orthogonal to 1e-8; idealise the cell first).
+        Raises NotAGroupError naming a missing product, and SymmetryError for matrices that are not integer
+        or a lattice that does not have the symmetry (the Cartesian matrices are not orthogonal to 1e-8;
+        idealise the cell first).
         """
-        matrices = np.asarray(rotations, dtype=np.int64)
-        flags = _flags(time_reversal, len(matrices))
-        sequence = _identity_first(matrices.astype(np.float64), flags)
-        matrices, flags = matrices[sequence], flags[sequence]
-        abstract = _abstract_of_integers(matrices.tobytes(), flags.tobytes())
-        to_cart = np.asarray(lattice, dtype=np.float64).T
-        cart = to_cart @ matrices @ np.linalg.inv(to_cart)
-        _check_orthogonal(cart)
-        return cls(frozen(cart), frozen(matrices), frozen(to_cart.T), frozen(flags), abstract)
+        given = integer_matrices(rotations)
+        flags = time_reversal_flags(time_reversal, len(given))
+        sequence = identity_first(given.astype(np.float64), flags)
+        matrices, flags = given[sequence], flags[sequence]
+        abstract = abstract_group(matrices.astype(np.float64), flags)
+        rows = lattice_rows(lattice)
+        cart: FloatArray = rows.T @ matrices @ np.linalg.inv(rows.T)
+        require_orthogonal(cart)
+        return cls(frozen(cart), frozen(matrices), frozen(rows), frozen(flags), abstract)
 
     @classmethod
     def from_cartesian(cls, rotations: FloatArray, time_reversal: BoolArray | None = None) -> PointGroup:
         """A group of orthogonal matrices (n, 3, 3). Raises NotAGroupError or SymmetryError."""
-        cart = np.asarray(rotations, dtype=np.float64)
-        _check_orthogonal(cart)
-        flags = _flags(time_reversal, len(cart))
-        sequence = _identity_first(cart, flags)
-        cart, flags = cart[sequence], flags[sequence]
-        return cls(
-            frozen(cart), None, None, frozen(flags), AbstractGroup(frozen(_product_table(cart, flags)))
-        )
+        given: FloatArray = np.asarray(rotations, dtype=np.float64)
+        flags = time_reversal_flags(time_reversal, len(given))
+        sequence = identity_first(given, flags)
+        cart, flags = given[sequence], flags[sequence]
+        require_orthogonal(cart)
+        return cls(frozen(cart), None, None, frozen(flags), abstract_group(cart, flags))
 
     def rotated(self, rotation: FloatArray) -> PointGroup:
         """The same group in other Cartesian axes: v_new = R v_old, so C becomes R C R^T and lattice rows
-        turn too.
+        turn too. Raises AxesError if R is not a proper rotation.
         """
-        matrix = np.asarray(rotation, dtype=np.float64)
-        cart = matrix @ self.rotations_cart @ matrix.T
+        matrix = proper_rotation(rotation)
+        cart: FloatArray = matrix @ self.rotations_cart @ matrix.T
         lattice = None if self.lattice is None else frozen(self.lattice @ matrix.T)
         return PointGroup(frozen(cart), self.rotations_frac, lattice, self.time_reversal, self.abstract)
 
@@ -141,8 +146,11 @@ class PointGroup:
     def symbol(self) -> str:
         """Short Hermann-Mauguin symbol of the class of the rotation parts (3m for 31m); 'order n' if not
         one of the 32.
+
+        Time reversal is left out of it: 4'/m', 4/m' and the grey 4/m1' all have the symbol 4/m.
         """
-        return _class_symbols().get(_signature(self.rotations_cart), f"order {self.order}")
+        parts = self.rotations_cart[~self.time_reversal] if self._is_grey else self.rotations_cart
+        return _class_symbols().get(_signature(parts), f"order {self.order}")
 
     @cached_property
     def schoenflies(self) -> str:
@@ -166,16 +174,22 @@ class PointGroup:
     @cached_property
     def determinants(self) -> IntArray:
         """+1 for proper, -1 for improper elements, shape (n,)."""
-        return np.rint(np.linalg.det(self.rotations_cart)).astype(np.int64)
+        signs: IntArray = np.rint(np.linalg.det(self.rotations_cart)).astype(np.int64)
+        return signs
+
+    @property
+    def _is_grey(self) -> bool:
+        """Whether time reversal by itself is an element, so that every rotation part occurs twice."""
+        return any(not e.improper and e.order == 1 and e.time_reversal for e in self.elements)
 
     @property
     def has_inversion(self) -> bool:
-        """Whether the inversion is an element."""
-        return any(e.improper and e.order == 1 and not e.time_reversal for e in self.elements)
+        """Whether the inversion is an element, with or without time reversal."""
+        return any(e.improper and e.order == 1 for e in self.elements)
 
     @property
     def has_mirror(self) -> bool:
-        """Whether a mirror is an element."""
+        """Whether a mirror is an element, with or without time reversal."""
         return any(e.improper and e.order == 2 for e in self.elements)
 
     @property
@@ -199,98 +213,6 @@ class PointGroup:
         return f"PointGroup({self.oriented!r}, order={self.order})"
 
 
-def _flags(time_reversal: BoolArray | None, count: int) -> BoolArray:
-    return (
-        np.zeros(count, dtype=np.bool_)
-        if time_reversal is None
-        else np.asarray(time_reversal, dtype=np.bool_)
-    )
-
-
-def _identity_first(matrices: FloatArray, flags: BoolArray) -> list[int]:
-    if matrices.ndim != 3 or matrices.shape[1:] != (3, 3) or len(matrices) == 0:
-        raise NotAGroupError(
-            "a point group needs matrices of shape (n, 3, 3)", value=f"shape {matrices.shape}"
-        )
-    distance = np.abs(matrices - np.eye(3)).max(axis=(1, 2)) + flags
-    first = int(np.argmin(distance))
-    if distance[first] > SAME_MATRIX:
-        raise NotAGroupError(
-            "the matrices do not contain the identity",
-            value=f"{len(matrices)} matrices",
-            rule="a group contains the product of any two of its elements, so also 1",
-            next_step="add the missing operations",
-        )
-    return [first, *(i for i in range(len(matrices)) if i != first)]
-
-
-def _check_orthogonal(cart: FloatArray) -> None:
-    worst = float(np.abs(cart @ np.swapaxes(cart, -1, -2) - np.eye(3)).max())
-    if not worst <= ORTHOGONAL:
-        raise SymmetryError(
-            "an operation is not orthogonal in the given axes",
-            value=f"largest entry of R R^T - 1: {worst:.2e}",
-            rule=f"at most {ORTHOGONAL:.0e}",
-            next_step="idealise the cell to the symmetry first, or give the lattice of the matrices",
-        )
-
-
-@lru_cache(maxsize=4096)
-def _abstract_of_integers(matrices: bytes, flags: bytes) -> AbstractGroup:
-    array = np.frombuffer(matrices, dtype=np.int64).reshape(-1, 3, 3)
-    return AbstractGroup(
-        frozen(_product_table(array.astype(np.float64), np.frombuffer(flags, dtype=np.bool_)))
-    )
-
-
-def _product_table(matrices: FloatArray, flags: BoolArray) -> IntArray:
-    """Indices of all products; raises NotAGroupError for a product that is missing or an element that is
-    doubled.
-    """
-    n = len(matrices)
-    flat = np.concatenate([matrices.reshape(n, 9), flags[:, None].astype(np.float64)], axis=1)
-    if len(np.unique(np.rint(flat / SAME_MATRIX), axis=0)) < n:
-        raise NotAGroupError("an element is given twice", rule="each element of a group is listed once")
-    products = np.einsum("gij,hjk->ghik", matrices, matrices).reshape(n * n, 9)
-    product_flags = (flags[:, None] ^ flags[None, :]).reshape(n * n, 1).astype(np.float64)
-    wanted = np.concatenate([products, product_flags], axis=1)
-    distance = np.abs(wanted[:, None, :] - flat[None, :, :]).max(axis=2)
-    nearest = np.argmin(distance, axis=1)
-    missing = np.flatnonzero(distance[np.arange(n * n), nearest] > SAME_MATRIX)
-    if len(missing):
-        g, h = divmod(int(missing[0]), n)
-        rows = "; ".join(
-            " ".join(f"{v:.4g}" for v in row) for row in products[missing[0]].reshape(3, 3) + 0.0
-        )
-        raise NotAGroupError(
-            "the matrices are not a group",
-            value=f"{len(missing)} of {n * n} products are missing, the first is element {g} times element {h}"
-            f" = ({rows})",
-            rule="a group contains the product of any two of its elements",
-            next_step="add the missing operations, or remove those that do not belong",
-        )
-    return nearest.reshape(n, n)
-
-
-def _generated(spelling: Spelling) -> IntArray:
-    """All products of the generators, integers (n, 3, 3): proper ones first, then by order of rotation."""
-    found = {np.eye(3, dtype=np.int64).tobytes(): np.eye(3, dtype=np.int64)}
-    frontier = list(found.values())
-    while frontier:
-        products = [generator @ element for element in frontier for generator in spelling.generators]
-        frontier = []
-        for product in products:
-            if product.tobytes() not in found:
-                found[product.tobytes()] = product
-                frontier.append(product)
-    return np.array(sorted(found.values(), key=_place))
-
-
-def _place(matrix: IntArray) -> tuple[int, int, list[int]]:
-    determinant = round(float(np.linalg.det(matrix)))
-    return -determinant, -determinant * int(np.trace(matrix)), (-matrix).ravel().tolist()
-
-
 def _signature(rotations_cart: FloatArray) -> tuple[tuple[int, int], ...]:
     """Trace and determinant of every element, sorted: it tells the 32 classes apart."""
     traces = np.rint(np.trace(rotations_cart, axis1=1, axis2=2) * 1e4).astype(int)
@@ -310,4 +232,4 @@ def _class_symbols() -> dict[tuple[tuple[int, int], ...], str]:
 @lru_cache(maxsize=1)
 def _oriented_symbols() -> dict[frozenset[bytes], str]:
     spellings = [s for symbol in SCHOENFLIES for s in ORIENTED.get(symbol, (symbol,))]
-    return {_matrix_set(_generated(read_symbol(s))): s for s in spellings}
+    return {_matrix_set(generated(read_symbol(s).generators)): s for s in spellings}

@@ -89,6 +89,25 @@ def read_symbol(text: str) -> Spelling:
     return Spelling(symbol, oriented, lattice, np.array(generators, dtype=np.int64))
 
 
+def generated(generators: IntArray) -> IntArray:
+    """All products of integer matrices (k, 3, 3), shape (n, 3, 3): proper ones first, then by trace."""
+    found = {np.eye(3, dtype=np.int64).tobytes(): np.eye(3, dtype=np.int64)}
+    frontier = list(found.values())
+    while frontier:
+        products = [generator @ element for element in frontier for generator in generators]
+        frontier = []
+        for product in products:
+            if product.tobytes() not in found:
+                found[product.tobytes()] = product
+                frontier.append(product)
+    return np.array(sorted(found.values(), key=_place))
+
+
+def _place(matrix: IntArray) -> tuple[int, int, list[int]]:
+    determinant = round(float(np.linalg.det(matrix)))
+    return -determinant, -determinant * int(np.trace(matrix)), (-matrix).ravel().tolist()
+
+
 def class_of_spelling(oriented: str) -> str:
     """The short symbol of the class of an oriented spelling: 31m -> 3m."""
     return next((symbol for symbol, spellings in ORIENTED.items() if oriented in spellings), oriented)
@@ -109,7 +128,11 @@ def crystal_system(symbol: str) -> str:
 
 def _oriented_spelling(text: str) -> str:
     plain = re.sub(r"([1-6])[\u0304\u0305]", r"-\1", text)  # overlined digits
-    plain = re.sub(r"[\s_]", "", plain).replace("\u2212", "-")
+    plain = re.sub(r"\s", "", plain).replace("\u2212", "-")
+    if not plain.startswith(("-", "m")) and plain[:1].isalpha():
+        plain = re.sub(
+            r"[_{}]", "", plain
+        )  # D_{3h}; in a Hermann-Mauguin symbol an underscore is a screw axis
     by_schoenflies = {name.lower(): symbol for symbol, name in SCHOENFLIES.items()}
     others = {name.lower(): symbol for name, symbol in _OTHER_SPELLINGS.items()}
     symbol = others.get(plain.lower()) or by_schoenflies.get(plain.lower()) or plain
@@ -142,11 +165,13 @@ def _integer_matrix(part: str, direction: IntArray, lattice: FloatArray) -> IntA
     sign = -1.0 if part == "m" or part.startswith("-") else 1.0
     to_cart = lattice.T
     rotation = sign * rotation_about(to_cart @ direction, 2.0 * np.pi / order)
-    return np.rint(np.linalg.solve(to_cart, rotation @ to_cart)).astype(np.int64)
+    matrix: IntArray = np.rint(np.linalg.solve(to_cart, rotation @ to_cart)).astype(np.int64)
+    return matrix
 
 
 def rotation_about(axis: FloatArray, angle: float) -> FloatArray:
     """Proper rotation by ``angle`` (radians) about ``axis``, shape (3, 3) (Rodrigues' formula)."""
     x, y, z = axis / np.linalg.norm(axis)
     cross = np.array([[0.0, -z, y], [z, 0.0, -x], [-y, x, 0.0]])
-    return np.eye(3) + np.sin(angle) * cross + (1.0 - np.cos(angle)) * cross @ cross
+    rotation: FloatArray = np.eye(3) + np.sin(angle) * cross + (1.0 - np.cos(angle)) * cross @ cross
+    return rotation

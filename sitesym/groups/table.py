@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 from functools import lru_cache
 
 import numpy as np
 
 from sitesym.arrays import ComplexArray, FloatArray, IntArray, frozen
+from sitesym.errors import SymmetryError
 from sitesym.groups.abstract import AbstractGroup
 from sitesym.groups.characters import irreducible_characters
 from sitesym.groups.irreps import irrep_matrices
@@ -16,6 +18,7 @@ from sitesym.groups.orientation import standard_rotation
 from sitesym.groups.pointgroup import PointGroup
 from sitesym.groups.rootsum import RootSum, integer
 from sitesym.groups.verify import Checks, verified
+from sitesym.tolerances import REPRESENTATION
 
 
 @dataclass(frozen=True, eq=False)
@@ -67,8 +70,10 @@ def character_table(group: PointGroup, rotation: FloatArray | None = None) -> Ch
     """Character table of a point group, its irreps labelled in the standard orientation.
 
     ``rotation`` (3, 3) leads to the standard orientation; where it is not given, `standard_rotation` finds
-    one. The matrices are written in that orientation. Raises SymmetryError if any check of the table fails.
+    one. The matrices are written in that orientation. Raises SymmetryError if any check of the table fails,
+    and for a group with time reversal, AxesError if ``rotation`` is none.
     """
+    _require_unitary(group)
     matrix = standard_rotation(group) if rotation is None else np.asarray(rotation, dtype=np.float64)
     oriented = group.rotated(matrix)
     characters = _exact_characters(group.abstract)
@@ -85,6 +90,16 @@ def character_table(group: PointGroup, rotation: FloatArray | None = None) -> Ch
 @lru_cache(maxsize=512)
 def _exact_characters(group: AbstractGroup) -> tuple[tuple[RootSum, ...], ...]:
     return irreducible_characters(group)
+
+
+def _require_unitary(group: PointGroup) -> None:
+    if group.time_reversal.any():
+        raise SymmetryError(
+            "a group with time reversal has no table of ordinary irreps",
+            value=f"{int(group.time_reversal.sum())} of {group.order} operations reverse time",
+            rule="time reversal is antiunitary: such a group has corepresentations (E. P. Wigner 1959)",
+            next_step="take the subgroup of the operations that do not reverse time",
+        )
 
 
 def _on_elements(row: tuple[RootSum, ...], class_of: IntArray) -> ComplexArray:
@@ -109,6 +124,8 @@ def _reality(row: tuple[RootSum, ...], group: AbstractGroup) -> str:
 
 def _labels(oriented: PointGroup, characters: tuple[tuple[RootSum, ...], ...]) -> list[str]:
     """One label an irrep; numbers that tell nothing apart (a single E of its parity) are left out."""
+    if oriented.system == "non-crystallographic":
+        return _numbered(characters)
     frame = label_frame(oriented)
     on_elements = [_on_elements(row, oriented.abstract.class_of) for row in characters]
     parts = [_parts(frame, character) for character in on_elements]
@@ -116,22 +133,45 @@ def _labels(oriented: PointGroup, characters: tuple[tuple[RootSum, ...], ...]) -
     for letter, number, mark, _ in parts:
         if letter == "E":
             numbers_of_e.setdefault(mark, set()).add(number)
-    return [
+    labels = [
         f"{pair}{letter}{'' if letter == 'E' and len(numbers_of_e[mark]) == 1 else number or ''}{mark}"
         for letter, number, mark, pair in parts
     ]
+    if len(set(labels)) < len(labels):
+        raise SymmetryError(
+            f"labels do not tell the irreps of {oriented.symbol} apart",
+            value=" ".join(labels),
+            rule="labels refer to the standard orientation",
+            next_step="give the rotation that leads there, or none",
+        )
+    return labels
+
+
+def _numbered(characters: tuple[tuple[RootSum, ...], ...]) -> list[str]:
+    """Γ1, Γ2, ... by dimension; the trivial one, whose characters are the largest, is the first."""
+    values = [[complex(value) for value in row] for row in characters]
+    order = sorted(
+        range(len(values)), key=lambda k: (values[k][0].real, [(-v.real, -v.imag) for v in values[k]])
+    )
+    return [f"Γ{order.index(k) + 1}" for k in range(len(values))]
 
 
 def _parts(frame: LabelFrame, character: ComplexArray) -> tuple[str, int, str, str]:
-    is_complex = bool(np.abs(character.imag).max() > 1e-9)
+    is_complex = bool(np.abs(character.imag).max() > REPRESENTATION)
     letter, number = letter_and_number(frame, character, is_complex)
     return letter, number, parity_mark(frame, character), pair_member(frame, character) if is_complex else ""
 
 
-def _place(irrep: Irrep) -> tuple[bool, int, str]:
-    """Order in the table: g and one prime before u and two primes, then by dimension, then by label."""
+def _place(irrep: Irrep) -> tuple[bool, int, int, str]:
+    """Order in the table: g and one prime before u and two primes, then A, B, E, T, then by number."""
     plain = irrep.label.lstrip("12")
-    return irrep.label.endswith(("u", "''")), "ABET".find(plain[0]), plain + irrep.label
+    number = re.search(r"\d+", plain)
+    return (
+        irrep.label.endswith(("u", "''")),
+        "ABET".find(plain[0]),
+        int(number.group()) if number else 0,
+        irrep.label,
+    )
 
 
 def _joined(irreps: list[Irrep]) -> tuple[JoinedIrrep, ...]:
@@ -146,5 +186,14 @@ def _joined(irreps: list[Irrep]) -> tuple[JoinedIrrep, ...]:
         if partner == index:
             joined.append(JoinedIrrep(irrep.label, irrep.dimension, (index,)))
         elif partner > index:
-            joined.append(JoinedIrrep(irrep.label[1:], 2 * irrep.dimension, (index, partner)))
+            joined.append(
+                JoinedIrrep(_joined_label(irrep, irreps[partner]), 2 * irrep.dimension, (index, partner))
+            )
     return tuple(joined)
+
+
+def _joined_label(irrep: Irrep, partner: Irrep) -> str:
+    """1E and 2E together are E; numbered irreps stay a sum."""
+    if irrep.label[1:] == partner.label[1:]:
+        return irrep.label[1:]
+    return f"{irrep.label}+{partner.label}"
