@@ -42,14 +42,12 @@ tolerance_option = click.option(
 
 
 def emit(document: Document, format_name: str, output: str | None) -> None:
-    """Write the document to standard output or to a file.
+    """Write the document in a format to standard output or to a file. Raises UsageError as `write` does."""
+    write(render(document, format_name), output)
 
-    Raises
-    ------
-    UsageError
-        The file cannot be written.
-    """
-    text = render(document, format_name)
+
+def write(text: str, output: str | None) -> None:
+    """Write a text to standard output or to a file. Raises UsageError when the file cannot be written."""
     if output is None:
         click.echo(text, nl=False)
         return

@@ -73,7 +73,7 @@ def axes_for(symmetry: CrystalSymmetry, name: str, given: ArrayLike | None = Non
             wishes, note = _lattice_wishes(symmetry)
             rotation, edition = standard_rotation(symmetry.point_group, wishes), IEEE_EDITION
         case "given" if given is not None:
-            rotation, note = _given_frame(given)
+            rotation, note = given_frame(given)
         case _:
             raise UsageError("unknown axes", name, f"one of {', '.join(AXES_NAMES)}", "name one of these")
     lattice = symmetry.conventional_lattice @ rotation.T
@@ -87,7 +87,11 @@ def _lattice_frame(lattice: FloatArray) -> FloatArray:
     return np.array([x, np.cross(z, x), z])
 
 
-def _given_frame(given: ArrayLike) -> tuple[FloatArray, str]:
+def given_frame(given: ArrayLike) -> tuple[FloatArray, str]:
+    """The rotation (3, 3) made of a user's rows x, y, z, and the note on what was done to them.
+
+    Raises AxesError for anything that is no right-handed orthogonal frame; lengths are free.
+    """
     try:
         matrix = np.asarray(given, dtype=np.float64)
     except (TypeError, ValueError) as error:

@@ -9,6 +9,7 @@ from sitesym.reports.component_matrix import (
     Property,
     component_matrix,
     kind_text,
+    open_signs,
     relations,
 )
 from sitesym.reports.expressions import (
@@ -87,6 +88,7 @@ def _summary(entry: Property) -> str:
     ]
     labels = (("Indices", "indices"), ("Order", "order"), ("Factors", "factor_rule"))
     facts.extend(f"{label}: {entry[field]}." for label, field in labels if entry[field])
+    facts.extend(f"Signs: {sentence}." for sentence in open_signs(entry, name))
     return " ".join(facts)
 
 

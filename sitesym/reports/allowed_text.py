@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import textwrap
+
 from sitesym.reports.component_matrix import (
     ComponentMatrix,
     Property,
     component_matrix,
     kind_text,
+    open_signs,
     relations,
     zero_count,
 )
@@ -41,7 +44,7 @@ def property_text(entry: Property) -> str:
     equations = relations(entry, name)
     if equations:
         blocks.append(joined(equations))
-    blocks.append(_conventions(entry))
+    blocks.append(_conventions(entry, name))
     return "\n\n".join(blocks)
 
 
@@ -60,7 +63,7 @@ def _matrix_text(entry: Property, matrix: ComponentMatrix, name: Namer) -> str:
     if matrix.columns:
         rows.insert(0, ["", "", *(digit for digit, _ in matrix.columns)])
         rows.insert(0, ["", "", *(axes for _, axes in matrix.columns)])
-    drawn = table(None, rows, right=range(2, len(rows[0])), indent=2)
+    drawn = table(None, rows, right=range(2, len(rows[0])), indent=2, gap=3)
     if any(cell.endswith("*") for row in cells for cell in row):
         drawn += "\n\n  * not independent: see the equation below"
     return drawn
@@ -76,11 +79,12 @@ def _cell(entry: Property, key: str, name: Namer) -> str:
 
 def _list_text(entry: Property) -> str:
     """What is said instead of a matrix of more than two indices."""
-    zero = zero_count(entry)
-    alone = f"  {zero} of {len(entry['keys'])} components are zero by symmetry"
-    return f"{alone}; those below and the independent ones above are not"
+    zero, independent = zero_count(entry), entry["independent_count"]
+    dependent = len(entry["keys"]) - zero - independent
+    return f"  {independent} independent, {dependent} that follow from them, {zero} zero by symmetry"
 
 
-def _conventions(entry: Property) -> str:
-    lines = (("indices", entry["indices"]), ("order", entry["order"]), ("factors", entry["factor_rule"]))
-    return "\n".join(f"  {labelled(label, text)}" for label, text in lines if text)
+def _conventions(entry: Property, name: Namer) -> str:
+    lines = [("indices", entry["indices"]), ("order", entry["order"]), ("factors", entry["factor_rule"])]
+    lines.append(("signs", "\n".join(open_signs(entry, name))))
+    return textwrap.indent("\n".join(labelled(label, text) for label, text in lines if text), "  ")

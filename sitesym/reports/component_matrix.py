@@ -74,10 +74,19 @@ def relations(entry: Property, name: Namer, combine: Combine = combination) -> l
     return [" = ".join(chain) for chain in chains.values() if len(chain) > 1] + single
 
 
+def open_signs(entry: Property, name: Namer) -> list[str]:
+    """The signs that symmetry leaves open: equally valid axes, and the components they reverse."""
+    return [
+        f"axes turned {choice['turn']} are equally valid and reverse {', '.join(map(name, choice['flips']))}"
+        for choice in entry["equivalent_axes"]
+    ]
+
+
 def kind_text(entry: Property) -> str:
     """Index symmetry, parity, rank and unit in a line."""
     unit = entry["unit"] or "unknown"
-    return f"{entry['index_symmetry']}, {entry['parity']}, rank {entry['rank']}, unit {unit}"
+    traceless = ", traceless" if entry["traceless"] else ""
+    return f"{entry['index_symmetry']}{traceless}, {entry['parity']}, rank {entry['rank']}, unit {unit}"
 
 
 def zero_count(entry: Property) -> int:

@@ -29,6 +29,19 @@ CSV_COLUMNS = (
 )  # fmt: skip
 
 
+#: The checks of a character table in words.
+_CHECKS = {
+    "irreps_equal_classes": "as many irreps as classes",
+    "sum_of_squared_dimensions": "squared dimensions add up to the order of the group:",
+    "characters_have_length_order": "squared length of each character is the order (exact)",
+    "characters_orthogonal": "different irreps have orthogonal characters (exact)",
+    "unitary_deviation": "matrices are unitary",
+    "homomorphism_deviation": "D(g) D(h) = D(gh) for all pairs",
+    "great_orthogonality_deviation": "great orthogonality theorem over all matrix elements",
+    "trace_deviation": "traces are the characters, constant on classes",
+}
+
+
 def irreps_text(document: Document, matrices: bool = False) -> str:
     """Character table, what transforms as which irrep, the checks made; matrices on request."""
     head, rows = _table_cells(document)
@@ -56,14 +69,14 @@ def irreps_markdown(document: Document) -> str:
     """The character table and the notes."""
     drawn = markdown_table(*_sized_table(document))
     blocks = ["# Irreducible representations", markdown_header(document), drawn]
-    notes = (f"{label}: {markdown_escape(text)}" for label, text in _notes(document))
+    notes = (f"{label}: {markdown_escape('; '.join(text.splitlines()))}" for label, text in _notes(document))
     return "\n\n".join([*blocks, *notes, markdown_footer(document)])
 
 
 def irreps_latex(document: Document) -> str:
     """The character table as a tabular, and the notes."""
     drawn = latex_table(*_sized_table(document))
-    notes = (f"{label}: {latex_escape(text)}" for label, text in _notes(document))
+    notes = (f"{label}: {latex_escape('; '.join(text.splitlines()))}" for label, text in _notes(document))
     return "\n\n".join([latex_header(document), drawn, *notes, latex_footer(document)])
 
 
@@ -106,7 +119,7 @@ def _notes(document: Document) -> Iterator[tuple[str, str]]:
     reduction = document.get("reduction")
     if reduction:
         yield "reduction", f"{reduction['property']} = {_sum(reduction['multiplicity'])}"
-    yield "checks", "; ".join(_check_text(name, value) for name, value in document["checks"].items())
+    yield "checks", "\n".join(_checks(document["checks"]))
 
 
 def _sum(multiplicity: Mapping[str, int]) -> str:
@@ -115,11 +128,18 @@ def _sum(multiplicity: Mapping[str, int]) -> str:
     return " + ".join(terms) or "0"
 
 
-def _check_text(name: str, value: object) -> str:
-    words = name.replace("_", " ")
-    if isinstance(value, bool):
-        return f"{words}: {'holds' if value else 'FAILS'}"
-    return f"{words}: {value:.1e}" if isinstance(value, float) else f"{words}: {value}"
+def _checks(checks: Mapping[str, Any]) -> Iterator[str]:
+    """Each check as a statement, with the largest deviation where it is numerical."""
+    for name, value in checks.items():
+        if name == "group_order":
+            continue  # stands in the statement on the sum of squared dimensions
+        statement = _CHECKS.get(name, name.replace("_", " "))
+        if isinstance(value, bool):
+            yield statement if value else f"FAILS: {statement}"
+        elif isinstance(value, float):
+            yield f"{statement} (to {value:.0e})"
+        else:
+            yield f"{statement} {value}"
 
 
 def _element_rows(document: Document) -> Iterator[tuple[object, ...]]:

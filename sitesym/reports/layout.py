@@ -65,15 +65,17 @@ def table(
     *,
     right: Sequence[int] | None = None,
     indent: int = 0,
+    gap: int = 2,
 ) -> str:
     """Columns aligned under an underlined head, or bare text cells without a head.
 
-    ``right`` lists the columns set flush right, ``indent`` is the width of the left margin.
+    ``right`` lists the columns set flush right; ``indent`` is the left margin, ``gap`` that between columns.
     """
     listed = [[str(cell) if head is None else cell_text(cell) for cell in row] for row in rows]
     columns = len(head) if head is not None else max((len(row) for row in listed), default=0)
+    headed = head is not None
     drawn = Table(
-        box=_UNDERLINED, show_header=head is not None, show_edge=False, pad_edge=False, padding=(0, 1, 0, 0)
+        box=_UNDERLINED, show_header=headed, show_edge=False, pad_edge=False, padding=(0, gap - 1, 0, 0)
     )
     for position in range(columns):
         flush: JustifyMethod = "right" if right is not None and position in right else "left"

@@ -23,7 +23,7 @@ def sites_document(symmetry: CrystalSymmetry) -> Document:
     return {
         "schema": SCHEMA,
         "crystal": crystal_entry(symmetry),
-        "sites": [_site_entry(site) for site in symmetry.sites],
+        "sites": [site_entry(site) for site in symmetry.sites],
         "remarks": crystal_remarks(symmetry),
         "versions": library_versions(),
         "caution": CAUTION,
@@ -72,7 +72,8 @@ def crystal_remarks(symmetry: CrystalSymmetry) -> list[str]:
     return remarks
 
 
-def _site_entry(site: Site) -> dict[str, Any]:
+def site_entry(site: Site) -> dict[str, Any]:
+    """What a document says of one site."""
     return {
         "label": site.label,
         "species": site.species,

@@ -95,7 +95,7 @@ def test_a_property_of_three_indices_is_listed(allowed: Document) -> None:
     }
     text = render(allowed, "text")
     assert "C111 = C222" in text
-    assert "1 of 3 components are zero by symmetry" in text
+    assert "1 independent, 1 that follow from them, 1 zero by symmetry" in text
 
 
 def test_csv_has_one_row_a_component_and_keeps_zero_ones(allowed: Document) -> None:

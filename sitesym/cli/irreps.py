@@ -1,0 +1,38 @@
+"""`sitesym irreps`: irreducible representations of a point group, and the reduction of a tensor."""
+
+from __future__ import annotations
+
+import click
+import numpy as np
+
+from sitesym.cli.options import output_options, tolerance_option, write
+from sitesym.cli.subject import subject_arguments, subject_of
+from sitesym.groups import character_table
+from sitesym.reports.irreps import irreps_document
+from sitesym.reports.irreps_report import irreps_text
+from sitesym.reports.render import render
+from sitesym.tensors import kind
+
+
+@click.command("irreps")
+@subject_arguments
+@click.option("--matrices", is_flag=True, help="Print the matrices in text too; JSON always has them.")
+@click.option("--reduce", "name", metavar="NAME", help="How often each irrep occurs in this tensor.")
+@tolerance_option
+@output_options
+def command(
+    file: str | None,
+    symbol: str | None,
+    matrices: bool,
+    name: str | None,
+    tolerance_angstrom: float,
+    format_name: str,
+    output: str | None,
+) -> None:
+    """Classes, exact characters, labels and functions of the point group of FILE, or SYMBOL, in ieee axes."""
+    subject = subject_of(file, symbol, tolerance_angstrom)
+    axes = subject.axes("ieee")
+    table = character_table(subject.group, np.array(axes["rotation_from_file"]))
+    document = irreps_document(table, axes, subject.crystal, None if name is None else kind(name))
+    in_full = matrices and format_name == "text"
+    write(irreps_text(document, matrices=True) if in_full else render(document, format_name), output)
