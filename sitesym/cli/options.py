@@ -56,7 +56,7 @@ def write(text: str, output: str | None) -> None:
     except OSError as error:
         reason = error.strerror or str(error)
         raise UsageError(
-            "The output cannot be written.", reason, "", "Give --output a path that can be written.", output
+            "the output cannot be written", reason, "a path that can be written", "correct --output", output
         ) from error
 
 

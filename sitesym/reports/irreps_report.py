@@ -52,7 +52,7 @@ def irreps_text(document: Document, matrices: bool = False) -> str:
         f"characters (columns: classes; second line: elements in the class)\n\n{drawn}",
     ]
     blocks.append("\n".join(labelled(label, text) for label, text in _notes(document)))
-    blocks.append("elements\n\n" + table(("number", "name", "class"), _element_rows(document), indent=2))
+    blocks.append("classes\n\n" + table(("class", "elements"), _class_rows(document), indent=2))
     if matrices:
         blocks.append("matrices (unitary; one for each element)")
         blocks.extend(_matrix_blocks(document))
@@ -142,10 +142,9 @@ def _checks(checks: Mapping[str, Any]) -> Iterator[str]:
             yield f"{statement} {value}"
 
 
-def _element_rows(document: Document) -> Iterator[tuple[object, ...]]:
-    class_of = {index: entry["label"] for entry in document["classes"] for index in entry["elements"]}
-    for number, element in enumerate(document["elements"]):
-        yield number, element["name"], class_of[number]
+def _class_rows(document: Document) -> Iterator[tuple[str, str]]:
+    for entry in document["classes"]:
+        yield entry["label"], ", ".join(document["elements"][index]["name"] for index in entry["elements"])
 
 
 def _matrix_blocks(document: Document) -> Iterator[str]:

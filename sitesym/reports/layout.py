@@ -73,10 +73,8 @@ def table(
     """
     listed = [[str(cell) if head is None else cell_text(cell) for cell in row] for row in rows]
     columns = len(head) if head is not None else max((len(row) for row in listed), default=0)
-    headed = head is not None
-    drawn = Table(
-        box=_UNDERLINED, show_header=headed, show_edge=False, pad_edge=False, padding=(0, gap - 1, 0, 0)
-    )
+    drawn = Table(box=_UNDERLINED, show_header=head is not None, padding=(0, gap - 1, 0, 0))
+    drawn.show_edge = drawn.pad_edge = False
     for position in range(columns):
         flush: JustifyMethod = "right" if right is not None and position in right else "left"
         drawn.add_column(Text(head[position]) if head is not None else "", justify=flush, no_wrap=True)

@@ -65,9 +65,9 @@ def render(document: Document, format_name: str) -> str:
     renderers = _RENDERERS.get(document["schema"])
     if renderers is None or format_name not in renderers:
         raise UsageError(
-            "This document cannot be written in this format.",
+            "this document cannot be written in this format",
             f"{document['schema']} as {format_name}",
             f"formats are {', '.join(FORMATS)}; schemas are {', '.join(_RENDERERS)}",
-            "Choose one of these formats.",
+            "choose one of these formats",
         )
     return renderers[format_name](document)
