@@ -21,6 +21,8 @@ GIVEN_SIGMAS = "every component weighted by its stated standard deviation"
 FROM_SIGMAS = "from the stated standard deviations"
 FROM_SCATTER = "from the scatter about the fit"
 
+_SMALLEST_SIGMA = 1e-6
+
 
 @dataclass(frozen=True)
 class FittedValue:
@@ -58,11 +60,11 @@ def nearest_allowed(
 ) -> Projection:
     """Least-squares fit of the allowed form to a contracted array in the axes of the group.
 
-    ``matrix`` and ``sigma`` (one standard deviation an entry, all positive) have the shape
-    ``contraction(kind).shape``; entries that index symmetry makes equal (c12, c21) count once, with their
-    mean. Raises TensorInputError for other shapes or standard deviations that are not positive.
+    ``matrix`` and ``sigma`` (one standard deviation an entry) have the shape ``contraction(kind).shape``;
+    entries that index symmetry makes equal (c12, c21) count once, with their mean. Raises TensorInputError
+    for another shape.
     """
-    values, errors = _observed(kind, matrix), _observed_errors(kind, sigma)
+    values, errors = _observed(kind, matrix), _observed_errors(kind, matrix, sigma)
     form = allowed_form(kind, group)
     lengths = _lengths(kind)
     scale = lengths if errors is None else 1.0 / errors
@@ -119,24 +121,20 @@ def _observed(kind: TensorKind, matrix: FloatArray) -> FloatArray:
     return means
 
 
-def _observed_errors(kind: TensorKind, sigma: FloatArray | None) -> FloatArray | None:
-    """One standard deviation for each written component: equal entries are one measurement, not two."""
+def _observed_errors(kind: TensorKind, matrix: FloatArray, sigma: FloatArray | None) -> FloatArray | None:
+    """One standard deviation for each written component: equal entries are one measurement, not two.
+
+    One that is stated as zero counts as a millionth of the largest entry: no weight can be infinite.
+    """
     if sigma is None:
         return None
+    smallest = _SMALLEST_SIGMA * float(np.abs(matrix).max(initial=0.0)) or 1.0
     places, signs = _places(kind, sigma)
-    used = np.asarray(sigma).ravel()[signs != 0.0]
-    if not (used > 0.0).all():
-        raise TensorInputError(
-            "a standard deviation is not positive",
-            f"smallest {used.min():g}",
-            "one positive standard deviation for each entry",
-            "give the accuracy also of entries that were found to be zero",
-        )
     squares = np.bincount(
         places, np.asarray(sigma).ravel() ** 2 * np.abs(signs), minlength=len(contraction(kind).keys)
     )
-    errors: FloatArray = np.sqrt(squares / np.bincount(places, np.abs(signs), minlength=len(squares)))
-    return errors
+    errors = np.sqrt(squares / np.bincount(places, np.abs(signs), minlength=len(squares)))
+    return np.maximum(errors, smallest)
 
 
 def _places(kind: TensorKind, array: FloatArray) -> tuple[IntArray, FloatArray]:
