@@ -2,13 +2,17 @@
 
 from sitesym.crystals.axes import AXES_NAMES, Axes, axes_for
 from sitesym.crystals.crystal import Crystal, Source
+from sitesym.crystals.finders import DEFAULT_FINDER, FINDERS
+from sitesym.crystals.idealisation import Idealisation
 from sitesym.crystals.reading import FORMATS, named_format, read_crystal, read_crystals
 from sitesym.crystals.sites import Site, SiteAxis
 from sitesym.crystals.species import Species
-from sitesym.crystals.symmetry import CrystalSymmetry, Idealisation, find_symmetry
+from sitesym.crystals.symmetry import CrystalSymmetry, find_symmetry
 
 __all__ = [
     "AXES_NAMES",
+    "DEFAULT_FINDER",
+    "FINDERS",
     "FORMATS",
     "Axes",
     "Crystal",

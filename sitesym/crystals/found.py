@@ -3,8 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
+from itertools import combinations
 
-from sitesym.arrays import FloatArray, IntArray
+import numpy as np
+
+from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.crystals.crystal import Crystal
 
 
 @dataclass(frozen=True, eq=False)
@@ -25,6 +30,22 @@ class SpaceGroupSetting:
     translations: FloatArray
     point_rotations: IntArray
 
+    @cached_property
+    def point_indices(self) -> IntArray:
+        """(n,): which of ``point_rotations`` each operation has."""
+        place = {rotation.tobytes(): index for index, rotation in enumerate(self.point_rotations)}
+        return frozen(np.array([place[rotation.tobytes()] for rotation in self.rotations], dtype=np.int64))
+
+    @cached_property
+    def primitive_basis(self) -> FloatArray:
+        """(3, 3) rows: vectors of a primitive cell in the basis of the conventional cell, right-handed."""
+        centring = self.translations[self.point_indices == 0]
+        shortest = [*centring[centring.any(axis=1)], *np.eye(3)]
+        bases = (np.array(rows) for rows in combinations(shortest, 3))
+        volume = 1.0 / len(centring)
+        basis = next(rows for rows in bases if abs(abs(np.linalg.det(rows)) - volume) < volume / 2)
+        return frozen(basis if np.linalg.det(basis) > 0 else basis[[1, 0, 2]])
+
 
 @dataclass(frozen=True, eq=False)
 class FoundSymmetry:
@@ -33,8 +54,10 @@ class FoundSymmetry:
     ``transformation`` P (3, 3) and ``origin_shift`` p (3,): x_conventional = P x_file + p (modulo 1).
     ``conventional_positions`` (n, 3): idealised position of each file atom in the conventional cell.
     ``orbits`` (n,): equal for atoms related by the space group, translations of a supercell included.
+    ``primitive_atoms`` (n,): equal for atoms related by a lattice translation, numbered from 0.
     ``multiplicities`` (n,): atoms of the orbit in the conventional cell. ``wyckoffs`` and ``site_symbols``:
-    one for each atom. ``finder``: name and version of the library.
+    one for each atom. ``finder``: name and version of the library. ``tolerance_used_angstrom``: what the
+    finder says it ended with; some lower the tolerance by themselves. ``messages``: what it had to say.
     """
 
     setting: SpaceGroupSetting
@@ -42,7 +65,38 @@ class FoundSymmetry:
     origin_shift: FloatArray
     conventional_positions: FloatArray
     orbits: IntArray
+    primitive_atoms: IntArray
     multiplicities: IntArray
     wyckoffs: tuple[str, ...]
     site_symbols: tuple[str, ...]
     finder: str
+    tolerance_used_angstrom: float
+    messages: tuple[str, ...] = ()
+
+
+def nearest_copies(
+    crystal: Crystal,
+    setting: SpaceGroupSetting,
+    transformation: FloatArray,
+    origin_shift: FloatArray,
+    ideal: FloatArray,
+) -> FloatArray:
+    """(n, 3): of the copies of each idealised position under lattice translations, the one at the atom.
+
+    ``ideal`` (n, 3): an idealised position of each file atom in the conventional cell, modulo any translation
+    of the lattice, centring included.
+    """
+    measured = crystal.positions_frac @ transformation.T + origin_shift
+    basis = setting.primitive_basis
+    steps = (ideal - measured) @ np.linalg.inv(basis)
+    steps -= np.rint(steps)
+    return frozen(measured + steps @ basis)
+
+
+def orbit_multiplicities(orbits: IntArray, primitive_atoms: IntArray, setting: SpaceGroupSetting) -> IntArray:
+    """(n,): atoms of each file atom's orbit in the conventional cell: those of a primitive cell, times its
+    centring."""
+    orbit_of = np.zeros(int(primitive_atoms.max()) + 1, dtype=np.int64)
+    orbit_of[primitive_atoms] = orbits
+    centring = len(setting.rotations) // len(setting.point_rotations)
+    return frozen(np.asarray(np.bincount(orbit_of)[orbits] * centring, dtype=np.int64))

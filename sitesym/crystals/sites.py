@@ -7,10 +7,11 @@ it is. Wyckoff letter and oriented symbol come from the finder; letters depend o
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
-from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.arrays import BoolArray, FloatArray, IntArray, frozen
 from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.found import FoundSymmetry, SpaceGroupSetting
 from sitesym.errors import SymmetryError
@@ -42,9 +43,9 @@ class Site:
 
     ``atoms``: indices in the file, from 0. ``multiplicity``: atoms in the conventional cell. ``symbol``:
     oriented site-symmetry symbol of International Tables A, such as 4/mm.m. ``position_frac``: idealised
-    position of the first atom in the conventional cell. ``point_group``: the site group, in the basis and
-    axes of the crystal's. ``rotations``, ``translations``: its operations in the conventional cell, in the
-    order of the group's elements, each leaving the position where it is.
+    position of the first atom in the conventional cell. ``rotations``, ``translations``: the operations of
+    the site in the conventional cell, each leaving the position where it is, in the order of its
+    ``elements``, which are indices into ``crystal_group``.
     """
 
     label: str
@@ -54,14 +55,20 @@ class Site:
     wyckoff: str
     symbol: str
     position_frac: FloatArray
-    point_group: PointGroup
+    crystal_group: PointGroup
+    elements: tuple[int, ...]
     rotations: IntArray
     translations: FloatArray
+
+    @cached_property
+    def point_group(self) -> PointGroup:
+        """The site group, in the basis and axes of the crystal's."""
+        return self.crystal_group.subgroup(list(self.elements))
 
     @property
     def order(self) -> int:
         """Number of operations of the site."""
-        return self.point_group.order
+        return len(self.elements)
 
     @property
     def has_inversion(self) -> bool:
@@ -92,49 +99,52 @@ def build_sites(
     Raises SymmetryError when the order of a site group times the multiplicity is not the order of the space
     group in the conventional cell: the finder's answer is then not consistent.
     """
-    members: dict[int, list[int]] = {}
-    for atom, orbit in enumerate(found.orbits.tolist()):
-        members.setdefault(orbit, []).append(atom)
-    element_of = {rotation.tobytes(): index for index, rotation in enumerate(_contiguous(point_group))}
+    if not np.array_equal(_integer_rotations(point_group), found.setting.point_rotations):
+        raise SymmetryError("the point group is not that of the space group found")
+    _, first, orbit_of = np.unique(found.orbits, return_index=True, return_inverse=True)
+    members = [np.flatnonzero(orbit_of == orbit).tolist() for orbit in np.argsort(first)]
+    leading = [atoms[0] for atoms in members]
+    positions = found.conventional_positions[leading]
+    steps, fixing = _stabilisers(found.setting, positions, lattice)
     sites = []
-    for atoms in members.values():
-        first = atoms[0]
-        position = found.conventional_positions[first]
-        rotations, translations = _stabiliser(found.setting, position, lattice)
-        _check_orbit(crystal.labels[first], len(rotations), int(found.multiplicities[first]), found.setting)
-        elements = np.array([element_of[rotation.tobytes()] for rotation in rotations])
-        sequence = np.argsort(elements)
+    for orbit, (atom, atoms) in enumerate(zip(leading, members, strict=True)):
+        operations = np.flatnonzero(fixing[:, orbit])
+        operations = operations[np.argsort(found.setting.point_indices[operations])]
+        multiplicity = int(found.multiplicities[atom])
+        _check_orbit(crystal.labels[atom], len(operations), multiplicity, found.setting)
         sites.append(
             Site(
-                crystal.labels[first],
-                str(crystal.species[first]),
+                crystal.labels[atom],
+                str(crystal.species[atom]),
                 tuple(atoms),
-                int(found.multiplicities[first]),
-                found.wyckoffs[first],
-                found.site_symbols[first],
-                frozen(position),
-                point_group.subgroup(elements[sequence].tolist()),
-                frozen(rotations[sequence]),
-                frozen(translations[sequence]),
+                multiplicity,
+                found.wyckoffs[atom],
+                found.site_symbols[atom],
+                frozen(positions[orbit]),
+                point_group,
+                tuple(found.setting.point_indices[operations].tolist()),
+                frozen(found.setting.rotations[operations]),
+                frozen(found.setting.translations[operations] - steps[operations, orbit]),
             )
         )
     return tuple(sites)
 
 
-def _contiguous(point_group: PointGroup) -> IntArray:
+def _integer_rotations(point_group: PointGroup) -> IntArray:
     if point_group.rotations_frac is None:
         raise SymmetryError("the crystal's point group has no lattice basis")
-    return np.ascontiguousarray(point_group.rotations_frac)
+    return point_group.rotations_frac
 
 
-def _stabiliser(
-    setting: SpaceGroupSetting, position: FloatArray, lattice: FloatArray
-) -> tuple[IntArray, FloatArray]:
-    """Operations that leave a position in place, translations adjusted by lattice vectors so that they do."""
-    difference = setting.rotations @ position + setting.translations - position
+def _stabilisers(
+    setting: SpaceGroupSetting, positions: FloatArray, lattice: FloatArray
+) -> tuple[FloatArray, BoolArray]:
+    """For n operations and m positions: the lattice vectors (n, m, 3) by which each image comes nearest its
+    position, and whether it then falls on it (n, m)."""
+    difference = positions @ np.swapaxes(setting.rotations, 1, 2) + setting.translations[:, None] - positions
     steps = np.rint(difference)
-    fixing = np.linalg.norm((difference - steps) @ lattice, axis=1) < _SAME_POSITION_ANGSTROM
-    return setting.rotations[fixing], setting.translations[fixing] - steps[fixing]
+    distances = np.linalg.norm((difference - steps) @ lattice, axis=2)
+    return steps, distances < _SAME_POSITION_ANGSTROM
 
 
 def _check_orbit(label: str, order: int, multiplicity: int, setting: SpaceGroupSetting) -> None:

@@ -8,12 +8,18 @@ from __future__ import annotations
 
 from functools import lru_cache
 from types import ModuleType
+from typing import Any
 
 import numpy as np
 
-from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.arrays import FloatArray, frozen
 from sitesym.crystals.crystal import Crystal
-from sitesym.crystals.found import FoundSymmetry, SpaceGroupSetting
+from sitesym.crystals.found import (
+    FoundSymmetry,
+    SpaceGroupSetting,
+    nearest_copies,
+    orbit_multiplicities,
+)
 from sitesym.errors import SymmetryNotFoundError
 
 _ANGLE_TOLERANCE = -1.0
@@ -21,38 +27,33 @@ _ANGLE_TOLERANCE = -1.0
 
 def find_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmetry:
     """Space group and orbits of a crystal. Raises SymmetryNotFoundError when the library gives no answer."""
-    spglib = _spglib()
-    cell = (crystal.lattice, crystal.positions_frac, crystal.species_indices)
-    try:
-        dataset = spglib.get_symmetry_dataset(
-            cell, symprec=tolerance_angstrom, angle_tolerance=_ANGLE_TOLERANCE
-        )
-    except spglib.SpglibError as error:
-        raise _not_found(str(error), tolerance_angstrom) from error
-    if dataset is None:
-        raise _not_found("no dataset", tolerance_angstrom)
+    dataset = _dataset(crystal, tolerance_angstrom)
+    found = setting(int(dataset.hall_number))
     transformation = np.asarray(dataset.transformation_matrix, dtype=np.float64)
     origin_shift = np.asarray(dataset.origin_shift, dtype=np.float64)
-    primitive = np.asarray(dataset.mapping_to_primitive, dtype=np.int64)
-    std_primitive = np.asarray(dataset.std_mapping_to_primitive, dtype=np.int64)
-    positions = _conventional_positions(
-        crystal.positions_frac @ transformation.T + origin_shift,
-        dataset.std_positions,
-        primitive,
-        std_primitive,
-    )
+    primitive_atoms = np.asarray(dataset.mapping_to_primitive, dtype=np.int64)
+    # Of each atom of the primitive cell one standardised position; the others are copies of it.
+    ideal = np.zeros((int(primitive_atoms.max()) + 1, 3))
+    ideal[dataset.std_mapping_to_primitive] = dataset.std_positions
     orbits = np.asarray(dataset.crystallographic_orbits, dtype=np.int64)
     return FoundSymmetry(
-        setting(int(dataset.hall_number)),
+        found,
         frozen(transformation),
         frozen(origin_shift),
-        frozen(positions),
+        nearest_copies(crystal, found, transformation, origin_shift, ideal[primitive_atoms]),
         frozen(orbits),
-        frozen(_multiplicities(orbits, primitive, std_primitive)),
+        frozen(primitive_atoms),
+        orbit_multiplicities(orbits, primitive_atoms, found),
         tuple(dataset.wyckoffs),
         tuple(dataset.site_symmetry_symbols),
-        f"spglib {spglib.__version__}",
+        f"spglib {_spglib().__version__}",
+        tolerance_angstrom,
     )
+
+
+def hall_number_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> int:
+    """Only the setting. Raises SymmetryNotFoundError when the library gives no answer."""
+    return int(_dataset(crystal, tolerance_angstrom).hall_number)
 
 
 @lru_cache(maxsize=530)
@@ -108,25 +109,18 @@ def _spglib() -> ModuleType:
     return spglib
 
 
-def _conventional_positions(
-    transformed: FloatArray, std_positions: FloatArray, primitive: IntArray, std_primitive: IntArray
-) -> FloatArray:
-    """Idealised position of each file atom: the nearest of its copies under the centring translations."""
-    copies = np.argsort(std_primitive, kind="stable").reshape(len(np.unique(std_primitive)), -1)
-    candidates = np.asarray(std_positions, dtype=np.float64)[copies[primitive]]
-    difference = candidates - transformed[:, None, :]
-    difference -= np.rint(difference)
-    nearest = np.argmin(np.linalg.norm(difference, axis=2), axis=1)
-    chosen: FloatArray = transformed + difference[np.arange(len(transformed)), nearest]
-    return chosen
-
-
-def _multiplicities(orbits: IntArray, primitive: IntArray, std_primitive: IntArray) -> IntArray:
-    """Atoms of each file atom's orbit in the conventional cell, counted in that cell."""
-    orbit_of_primitive = np.zeros(int(primitive.max()) + 1, dtype=np.int64)
-    orbit_of_primitive[primitive] = orbits
-    counts: IntArray = (orbit_of_primitive[std_primitive][None, :] == orbits[:, None]).sum(axis=1)
-    return counts
+def _dataset(crystal: Crystal, tolerance_angstrom: float) -> Any:
+    spglib = _spglib()
+    cell = (crystal.lattice, crystal.positions_frac, crystal.species_indices)
+    try:
+        dataset = spglib.get_symmetry_dataset(
+            cell, symprec=tolerance_angstrom, angle_tolerance=_ANGLE_TOLERANCE
+        )
+    except spglib.SpglibError as error:
+        raise _not_found(str(error), tolerance_angstrom) from error
+    if dataset is None:
+        raise _not_found("no dataset", tolerance_angstrom)
+    return dataset
 
 
 def _not_found(reason: str, tolerance_angstrom: float) -> SymmetryNotFoundError:

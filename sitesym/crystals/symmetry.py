@@ -12,44 +12,45 @@ from functools import cached_property
 
 import numpy as np
 
-from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.arrays import FloatArray, frozen
 from sitesym.crystals.crystal import Crystal
+from sitesym.crystals.finders import DEFAULT_FINDER, find_with
 from sitesym.crystals.found import FoundSymmetry, SpaceGroupSetting
+from sitesym.crystals.idealisation import Idealisation, idealisation_of, nearest_symmetric_lattice
 from sitesym.crystals.sites import Site, build_sites
-from sitesym.crystals.spglib_finder import find_with_spglib
 from sitesym.errors import UsageError
 from sitesym.groups import PointGroup
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
 
-@dataclass(frozen=True)
-class Idealisation:
-    """What was changed to make the symmetry exact.
-
-    ``largest_strain``: of the cell, no unit. ``orthogonality_error``: largest entry of R R^T - 1 over the
-    operations before the cell was idealised. ``largest_shift_angstrom``: of an atom.
-    """
-
-    largest_strain: float
-    orthogonality_error: float
-    largest_shift_angstrom: float
-
-
 @dataclass(frozen=True, eq=False)
 class CrystalSymmetry:
-    """A crystal with its symmetry at one tolerance.
-
-    ``conventional_lattice``: (3, 3) rows of the idealised conventional cell, angstrom, in the file's
-    Cartesian axes. ``point_group``: of the crystal, in the basis of that cell and the file's Cartesian
-    axes.
-    """
+    """A crystal with its symmetry at one tolerance, as one finder sees it."""
 
     crystal: Crystal
     tolerance_angstrom: float
     found: FoundSymmetry
-    conventional_lattice: FloatArray
-    point_group: PointGroup
-    idealisation: Idealisation
+
+    @cached_property
+    def measured_lattice(self) -> FloatArray:
+        """(3, 3) rows of the conventional cell as measured, angstrom, in the file's Cartesian axes."""
+        rows = np.linalg.solve(self.found.transformation.T, self.crystal.lattice)
+        return frozen(np.asarray(rows, dtype=np.float64))
+
+    @cached_property
+    def conventional_lattice(self) -> FloatArray:
+        """(3, 3) rows of the idealised conventional cell, angstrom, in the file's Cartesian axes."""
+        return frozen(nearest_symmetric_lattice(self.measured_lattice, self.setting.point_rotations))
+
+    @cached_property
+    def point_group(self) -> PointGroup:
+        """Of the crystal, in the basis of the conventional cell and the file's Cartesian axes."""
+        return PointGroup.from_fractional(self.setting.point_rotations, self.conventional_lattice)
+
+    @cached_property
+    def idealisation(self) -> Idealisation:
+        """What was changed to make the symmetry exact."""
+        return idealisation_of(self.crystal, self.found, self.measured_lattice, self.conventional_lattice)
 
     @property
     def setting(self) -> SpaceGroupSetting:
@@ -104,11 +105,14 @@ class CrystalSymmetry:
 
 
 def find_symmetry(
-    crystal: Crystal, tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM
+    crystal: Crystal,
+    tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM,
+    finder: str = DEFAULT_FINDER,
 ) -> CrystalSymmetry:
     """The symmetry of a crystal; atoms within the tolerance of each other's images count as related.
 
-    Raises UsageError for a tolerance that is none, SymmetryNotFoundError when the finder gives no answer.
+    ``finder`` is one of `FINDERS`. Raises UsageError for a tolerance that is none or an unknown finder,
+    SymmetryNotFoundError when the finder gives no answer.
     """
     if not (np.isfinite(tolerance_angstrom) and tolerance_angstrom > 0.0):
         raise UsageError(
@@ -117,42 +121,4 @@ def find_symmetry(
             "a number above zero, in angstrom",
             "correct it",
         )
-    found = find_with_spglib(crystal, tolerance_angstrom)
-    measured = np.asarray(np.linalg.solve(found.transformation.T, crystal.lattice), dtype=np.float64)
-    rotations = found.setting.point_rotations
-    lattice = _idealised(measured, rotations)
-    return CrystalSymmetry(
-        crystal,
-        tolerance_angstrom,
-        found,
-        frozen(lattice),
-        PointGroup.from_fractional(rotations, lattice),
-        Idealisation(
-            float(np.abs(np.linalg.svd(np.linalg.solve(measured, lattice), compute_uv=False) - 1.0).max()),
-            _orthogonality_error(measured, rotations),
-            _largest_shift(crystal, found, lattice),
-        ),
-    )
-
-
-def _idealised(lattice: FloatArray, rotations: IntArray) -> FloatArray:
-    """The nearest cell (rows) that the rotations leave unchanged: mean metric, turned as little as
-    possible."""
-    metric = np.mean(np.swapaxes(rotations, 1, 2) @ (lattice @ lattice.T) @ rotations, axis=0)
-    upper = np.linalg.cholesky(metric).T
-    # lattice.T = turn @ upper up to the strain; the orthogonal factor of the polar decomposition is the turn.
-    left, _, right = np.linalg.svd(lattice.T @ np.linalg.inv(upper))
-    ideal: FloatArray = (left @ right @ upper).T
-    return ideal
-
-
-def _orthogonality_error(lattice: FloatArray, rotations: IntArray) -> float:
-    columns = lattice.T
-    cart = columns @ rotations @ np.linalg.inv(columns)
-    return float(np.abs(cart @ np.swapaxes(cart, 1, 2) - np.eye(3)).max())
-
-
-def _largest_shift(crystal: Crystal, found: FoundSymmetry, lattice: FloatArray) -> float:
-    measured = crystal.positions_frac @ found.transformation.T + found.origin_shift
-    shift = (found.conventional_positions - measured) @ lattice
-    return float(np.linalg.norm(shift, axis=1).max())
+    return CrystalSymmetry(crystal, tolerance_angstrom, find_with(finder, crystal, tolerance_angstrom))
