@@ -65,10 +65,14 @@ class Screener:
         ``name`` is the ``id``; where a file holds several structures, ``#`` and the part follow.
         """
         try:
-            crystals = read_crystals(path)
+            yield from self._rows_of(path, name)
         except SitesymError as error:
             yield self._failed(name, str(path), error)
-            return
+        except Exception as error:  # noqa: BLE001  the worker boundary: one file must not end a run
+            yield self._failed(name, str(path), _unexpected(error))
+
+    def _rows_of(self, path: str | os.PathLike[str], name: str) -> Iterator[Row]:
+        crystals = read_crystals(path)
         for crystal in crystals:
             identity = f"{name}#{crystal.source.part}" if len(crystals) > 1 else name
             yield self.row(crystal, identity, str(path))
@@ -121,3 +125,13 @@ class Screener:
         message = "; ".join([error.what, *(f"{label}: {text}" for label, text in labelled if text)])
         failure: Row = {"status": "error", "error_code": error.code, "error_message": message}
         return self._blank(identity, source) | failure
+
+
+def _unexpected(error: Exception) -> SitesymError:
+    """An error nobody foresaw, as a row can hold it."""
+    return SitesymError(
+        "unexpected failure of the program",
+        f"{type(error).__name__}: {error}",
+        "errors of a file are foreseen",
+        "report it with the file",
+    )

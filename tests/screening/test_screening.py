@@ -9,10 +9,11 @@ import pytest
 from ase.build import bulk
 from ase.io import write
 
+from sitesym.crystals import Crystal, read_crystals
 from sitesym.errors import ReadingError
 from sitesym.groups import PointGroup
 from sitesym.groups.symbols import SCHOENFLIES
-from sitesym.screening import COLUMNS, Row, Screener, screen_folder, structure_files
+from sitesym.screening import COLUMNS, Row, Screener, rows, screen_folder, structure_files
 from sitesym.tensors import independent_count, kind
 
 
@@ -27,9 +28,9 @@ def test_files_come_sorted_by_path_and_hidden_or_unnamed_ones_are_left_alone(fol
 
 
 def test_every_file_is_one_row_with_every_column(folder: Path) -> None:
-    rows = list(screen_folder(folder))
-    assert Counter(row["status"] for row in rows) == {"ok": 3, "error": 2}
-    assert all(tuple(row) == COLUMNS for row in rows)
+    found = list(screen_folder(folder))
+    assert Counter(row["status"] for row in found) == {"ok": 3, "error": 2}
+    assert all(tuple(row) == COLUMNS for row in found)
 
 
 def test_a_bad_file_is_a_row_that_names_its_error(folder: Path) -> None:
@@ -48,10 +49,10 @@ def test_a_supercell_keeps_the_point_group_of_its_crystal(folder: Path) -> None:
 
 def test_verdicts_of_three_structure_types(folder: Path) -> None:
     """Zinc blende piezoelectric, wurtzite polar too, rock salt neither: common practice, no source."""
-    rows = by_id(folder)
+    found = by_id(folder)
     columns = ("centrosymmetric", "chiral", "polar", "piezoelectric", "pyroelectric", "second_harmonic")
     verdicts = {
-        name: tuple(row[column] for column in columns) for name, row in rows.items() if row["status"] == "ok"
+        name: tuple(row[column] for column in columns) for name, row in found.items() if row["status"] == "ok"
     }
     assert verdicts == {
         "deep/POSCAR_GaAs_112": (False, False, False, True, False, True),
@@ -62,14 +63,28 @@ def test_verdicts_of_three_structure_types(folder: Path) -> None:
 
 def test_a_file_of_several_structures_gives_a_row_each(tmp_path: Path) -> None:
     write(tmp_path / "two.extxyz", [bulk("NaCl", "rocksalt", a=5.64), bulk("GaAs", "zincblende", a=5.65)])
-    rows = list(screen_folder(tmp_path))
-    assert [row["point_group"] for row in rows] == ["m-3m", "-43m"]
-    assert len({row["id"] for row in rows}) == 2
+    found = list(screen_folder(tmp_path))
+    assert [row["point_group"] for row in found] == ["m-3m", "-43m"]
+    assert len({row["id"] for row in found}) == 2
 
 
 def test_a_missing_folder_is_an_error(tmp_path: Path) -> None:
     with pytest.raises(ReadingError, match="no such folder"):
         list(screen_folder(tmp_path / "nowhere"))
+
+
+def test_a_failure_nobody_foresaw_is_a_row_too(folder: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    def fail_on_salt(path: Path) -> tuple[Crystal, ...]:
+        if path.name == "salt.cif":
+            raise ZeroDivisionError("nobody thought of this")
+        return read_crystals(path)
+
+    monkeypatch.setattr(rows, "read_crystals", fail_on_salt)
+    found = by_id(folder)
+    assert len(found) == 5
+    assert found["salt.cif"]["status"] == "error"
+    assert "ZeroDivisionError: nobody thought of this" in str(found["salt.cif"]["error_message"])
+    assert found["deep/AlN.extxyz"]["status"] == "ok"
 
 
 def test_counts_kept_for_a_group_are_those_of_that_group() -> None:
