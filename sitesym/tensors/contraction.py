@@ -6,6 +6,7 @@ second-rank tensor, which keeps its two digits. Every other index keeps its digi
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property, lru_cache
 
@@ -45,7 +46,7 @@ class Contraction:
     @cached_property
     def factors(self) -> IntArray:
         """Matrix element divided by tensor component, for each written component, shape (N,)."""
-        return np.array([self._factor(tuple(row)) for row in self.multi_indices.tolist()])
+        return np.array([self.factor(tuple(row)) for row in self.multi_indices.tolist()])
 
     @property
     def commuting(self) -> bool:
@@ -83,7 +84,8 @@ class Contraction:
                 position += 1
         return tuple(contracted)
 
-    def _factor(self, contracted: tuple[int, ...]) -> int:
+    def factor(self, contracted: tuple[int, ...]) -> int:
+        """Matrix element divided by tensor component at one contracted index (from 0)."""
         pairs = [index for index, block in zip(contracted, self.blocks, strict=True) if block == 6]
         return int(np.prod([f for index, f in zip(pairs, self.kind.pair_factors, strict=False) if index > 2]))
 
@@ -106,29 +108,33 @@ def to_matrix(kind: TensorKind, full: FloatArray) -> FloatArray:
     """Contracted array of a full tensor, shape (3,)*rank to ``contraction(kind).shape``, with the kind's
     factors.
 
-    Takes the canonical component of each pair: check the index symmetry of measured data first.
+    Takes the canonical component of each pair: check the index symmetry of measured data first. Raises
+    TensorInputError for another shape.
     """
-    notation = contraction(kind)
     positions, factors = _all_positions(kind)
     _expect_shape(full, (3,) * kind.rank, kind)
-    values = np.asarray(full).reshape(-1)[positions]
-    return (values * factors).reshape(notation.shape)
+    components: FloatArray = np.asarray(full, dtype=np.float64).reshape(-1)[positions]
+    return (components * factors).reshape(contraction(kind).shape)
 
 
 def to_full(kind: TensorKind, matrix: FloatArray) -> FloatArray:
-    """Full tensor, shape (3,)*rank, of a contracted array: the exact inverse of `to_matrix`."""
-    notation = contraction(kind)
-    _expect_shape(matrix, notation.shape, kind)
+    """Full tensor, shape (3,)*rank, of a contracted array: the exact inverse of `to_matrix`.
+
+    Raises TensorInputError for another shape than ``contraction(kind).shape``.
+    """
+    _expect_shape(matrix, contraction(kind).shape, kind)
     _, factors = _all_positions(kind)
-    tensor_values = np.asarray(matrix, dtype=np.float64).reshape(-1) / factors
-    strides = np.ravel_multi_index(_contracted_of_every_index(kind).T, notation.shape)
-    return tensor_values[strides].reshape((3,) * kind.rank)
+    components: FloatArray = np.asarray(matrix, dtype=np.float64).reshape(-1) / factors
+    return components[_places_in_matrix(kind)].reshape((3,) * kind.rank)
 
 
 @lru_cache(maxsize=128)
-def _contracted_of_every_index(kind: TensorKind) -> IntArray:
+def _places_in_matrix(kind: TensorKind) -> IntArray:
+    """For every full index, in C order: the flat place of its component in the contracted array."""
     notation = contraction(kind)
-    return np.array([notation.contracted(full) for full in np.ndindex(*(3,) * kind.rank)])
+    strides = [int(np.prod(notation.shape[axis + 1 :])) for axis in range(len(notation.shape))]
+    rows = [notation.contracted(full) for full in np.ndindex(*(3,) * kind.rank)]
+    return np.array([sum(i * stride for i, stride in zip(row, strides, strict=True)) for row in rows])
 
 
 @lru_cache(maxsize=128)
@@ -137,11 +143,21 @@ def _all_positions(kind: TensorKind) -> tuple[IntArray, IntArray]:
     notation = contraction(kind)
     places, factors = [], []
     for row in np.ndindex(*notation.shape):
-        full = [i for index, block in zip(row, notation.blocks, strict=True)
-                for i in (VOIGT_PAIRS[index] if block == 6 else (index,))]  # fmt: skip
-        places.append(int(np.ravel_multi_index(tuple(full), (3,) * kind.rank)))
-        factors.append(notation._factor(row))
+        digits = (
+            VOIGT_PAIRS[index] if block == 6 else (index,)
+            for index, block in zip(row, notation.blocks, strict=True)
+        )
+        places.append(flat_place([i for digit in digits for i in digit]))
+        factors.append(notation.factor(row))
     return np.array(places), np.array(factors)
+
+
+def flat_place(full: Sequence[int]) -> int:
+    """Place of a full index in the flattened tensor, in C order."""
+    place = 0
+    for index in full:
+        place = 3 * place + index
+    return place
 
 
 def _expect_shape(array: FloatArray, shape: tuple[int, ...], kind: TensorKind) -> None:

@@ -11,30 +11,30 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
-from math import lcm
 from types import MappingProxyType
 from typing import TypeAlias
 
 import numpy as np
 
-from sitesym.arrays import BoolArray, FloatArray, IntArray, frozen
+from sitesym.arrays import FloatArray, frozen
 from sitesym.errors import SymmetryError
 from sitesym.groups import PointGroup
 from sitesym.tensors.action import Action
-from sitesym.tensors.contraction import Contraction, contraction, to_matrix
-from sitesym.tensors.elimination import row_reduced
-from sitesym.tensors.indexsymmetry import IndexSymmetry
+from sitesym.tensors.contraction import contraction, to_matrix
+from sitesym.tensors.elimination import solved
+from sitesym.tensors.exactness import Terms, exact_values
+from sitesym.tensors.generators import defect
 from sitesym.tensors.kinds import TensorKind
-from sitesym.tensors.root3 import Numbers, Surd, doubled_exact, recognise
+from sitesym.tensors.layout import layout_of
+from sitesym.tensors.root3 import Surd
 from sitesym.tensors.spaces import TensorSpace
 from sitesym.tolerances import PIVOT
 
 #: Exact where the axes are standard ones, a float otherwise.
 Coefficient: TypeAlias = Surd | float
 
-_LARGEST_EXACT = 2.0**50
-#: Eigenvalues of the defect matrix are zero or of order one for a group of rotations.
-_SMALLEST_EIGENVALUE = 1e-6
+#: Decimals in which coefficients that mean one number agree.
+_DIGITS = 11
 
 
 @dataclass(frozen=True, eq=False)
@@ -66,7 +66,8 @@ class AllowedForm:
     def full(self, values: Mapping[str, float]) -> FloatArray:
         """Full tensor with the given independent values, shape (3,)*rank."""
         notation = contraction(self.kind)
-        written = self.coefficients @ np.array([values[name] for name in self.independent]) / notation.factors
+        given = np.array([values[name] for name in self.independent], dtype=np.float64)
+        written: FloatArray = self.coefficients @ given / notation.factors
         component, sign = self.kind.written.full_indices
         return (written[component] * sign).reshape((3,) * self.kind.rank)
 
@@ -97,191 +98,29 @@ def _nothing(kind: TensorKind) -> AllowedForm:
     )
 
 
-@lru_cache(maxsize=8192)
+@lru_cache(maxsize=1024)
 def _form(notation: TensorKind, action: Action) -> AllowedForm:
     """The form of a bare notation under an action that leaves something of it."""
-    names = contraction(notation)
-    independent, coefficients = _chosen(names, _written_invariants(notation, action) * names.factors[:, None])
-    values, inverse = np.unique(coefficients, return_inverse=True)
-    inverse = inverse.reshape(coefficients.shape)
-    exact = _exact_values(notation, values, inverse, action)
+    independent, written = _relations(notation, action)
+    rows, columns = np.nonzero(np.abs(written) > PIVOT)
+    values, which = np.unique(np.round(written[rows, columns], _DIGITS), return_inverse=True)
+    exact = exact_values(notation, Terms(rows, columns, which, values, len(independent)), action)
     numbers: Sequence[Coefficient] = values.tolist() if exact is None else exact
-    clean = np.array([float(number) for number in numbers])[inverse]
-    return AllowedForm(
-        notation,
-        independent,
-        _components(names, independent, numbers, inverse),
-        frozen(clean),
-        exact is not None,
-    )
-
-
-def _chosen(names: Contraction, written: FloatArray) -> tuple[tuple[str, ...], FloatArray]:
-    """Independent components in the preferred choice, and every written component as a combination of
-    them.
-    """
-    preference = np.array(names.preference)
-    present = preference[np.abs(written[preference]).max(axis=1) > PIVOT]
-    if len(present) == written.shape[1]:
-        rows, pivots = np.eye(len(present)), np.arange(len(present))
-    else:
-        rows, pivots = row_reduced(written[present].T)
-    keys = [names.keys[component] for component in present[pivots]]
-    order = sorted(range(len(keys)), key=keys.__getitem__)
-    coefficients = np.zeros((len(names.keys), len(rows)))
-    coefficients[present] = rows[order].T
-    coefficients = np.round(coefficients, 11) + 0.0
-    return tuple(keys[k] for k in order), coefficients
-
-
-def _components(
-    names: Contraction, independent: tuple[str, ...], numbers: Sequence[Coefficient], inverse: IntArray
-) -> Mapping[str, Mapping[str, Coefficient]]:
-    """Non-zero components by key, each with the coefficients of the independent ones."""
-    nonzero = np.array([float(number) != 0.0 for number in numbers])[inverse]
+    coefficients = np.zeros_like(written)
+    coefficients[rows, columns] = np.array([float(number) for number in numbers])[which]
+    keys = contraction(notation).keys
     terms: dict[str, dict[str, Coefficient]] = {}
-    for row, column in np.argwhere(nonzero).tolist():
-        terms.setdefault(names.keys[row], {})[independent[column]] = numbers[inverse[row, column]]
-    return MappingProxyType({key: MappingProxyType(terms[key]) for key in sorted(terms)})
+    for row, column, place in zip(rows.tolist(), columns.tolist(), which.tolist(), strict=True):
+        terms.setdefault(keys[row], {})[independent[column]] = numbers[place]
+    components = MappingProxyType({key: MappingProxyType(terms[key]) for key in sorted(terms)})
+    return AllowedForm(notation, independent, components, frozen(coefficients), exact is not None)
 
 
-def _written_invariants(notation: TensorKind, action: Action) -> FloatArray:
-    """Invariant tensors as columns over the written components, shape (written, count)."""
-    invariants = _invariants(TensorSpace.of(notation), action)
-    if notation.written == notation.symmetry:
-        return invariants
-    component, sign = _places_of_written(notation)
-    return invariants[component] * sign[:, None]
-
-
-@lru_cache(maxsize=128)
-def _places_of_written(notation: TensorKind) -> tuple[IntArray, IntArray]:
-    """For each written component: the component of the index symmetry obeyed, and its sign."""
-    component, sign = notation.symmetry.full_indices
-    places = [int(np.ravel_multi_index(full, (3,) * notation.rank)) for full in notation.written.components]
-    return component[places], sign[places]
-
-
-@lru_cache(maxsize=8192)
-def _invariants(space: TensorSpace, action: Action) -> FloatArray:
-    """Columns spanning the components that every generator leaves unchanged, shape (N, count).
-
-    In orthonormal components each generator is an orthogonal matrix D, and sum (1 - D)^T (1 - D) vanishes
-    exactly on the invariant tensors; its other eigenvalues are of order one.
-    """
-    scale = np.sqrt(space.symmetry.multiplicities)
-    size = len(scale)
-    defect = np.zeros((size, size))
-    for image, sign in zip(_images(space.symmetry, action), action.generators[1], strict=True):
-        change = sign * _as_float(image, space.symmetry.rank) * (scale[:, None] / scale) - np.eye(size)
-        defect += change.T @ change
-    if space.traceless:
-        trace = space.trace_vector / scale
-        defect += np.outer(trace, trace)
-    return frozen(_kernel(defect) / scale[:, None])
-
-
-@lru_cache(maxsize=512)
-def _images(symmetry: IndexSymmetry, action: Action) -> tuple[Numbers, ...]:
-    """What each generator does to the components: exact in standard axes (times 2^rank), floats otherwise.
-
-    Exact images are integers a, b of a + b sqrt(3), or a alone where no sqrt(3) occurs.
-    """
-    matrices, _ = action.generators
-    doubled = doubled_exact(matrices)
-    if doubled is None:
-        return tuple(symmetry.represent(matrix[None]) for matrix in matrices)
-    exact = [doubled[:, k] if doubled[1, k].any() else doubled[:1, k] for k in range(len(matrices))]
-    return tuple(symmetry.represent(matrix) for matrix in exact)
-
-
-def _is_exact(image: Numbers) -> bool:
-    return image.dtype == np.int64
-
-
-def _as_float(image: Numbers, rank: int) -> FloatArray:
-    if not _is_exact(image):
-        return np.asarray(image[0], dtype=np.float64)
-    surd = 3.0**0.5 * image[1] if len(image) == 2 else 0.0
-    value: FloatArray = (image[0] + surd) / 2.0**rank
-    return value
-
-
-def _kernel(defect: FloatArray) -> FloatArray:
-    """Orthonormal columns spanning the kernel of a symmetric matrix.
-
-    Components that mix form blocks, most of them small; blocks of one size are diagonalised in one call.
-    """
-    blocks = _blocks_that_mix(np.abs(defect) > PIVOT)
-    columns = [np.zeros((len(defect), 0))]
-    for length in sorted({len(block) for block in blocks}):
-        places = np.array([block for block in blocks if len(block) == length])
-        values, vectors = np.linalg.eigh(defect[places[:, :, None], places[:, None, :]])
-        which, column = np.nonzero(values < _SMALLEST_EIGENVALUE)
-        kernel = np.zeros((len(defect), len(which)))
-        kernel[places[which].T, np.arange(len(which))] = vectors[which, :, column].T
-        columns.append(kernel)
-    return np.concatenate(columns, axis=1)
-
-
-def _blocks_that_mix(linked: BoolArray) -> list[IntArray]:
-    """Connected sets of indices of a symmetric relation."""
-    size = len(linked)
-    label = np.arange(size)
-    related = linked | np.eye(size, dtype=np.bool_)
-    while True:
-        lowest = np.where(related, label, size).min(axis=1)
-        if (lowest == label).all():
-            return [np.flatnonzero(label == first) for first in np.unique(label)]
-        label = lowest
-
-
-def _exact_values(
-    notation: TensorKind, values: FloatArray, inverse: IntArray, action: Action
-) -> list[Surd] | None:
-    """The exact number behind each distinct coefficient, or None unless all satisfy every generator
-    exactly.
-    """
-    images = _images(notation.symmetry, action)
-    numbers = recognise(values) if all(_is_exact(image) for image in images) else None
-    if numbers is None:
-        return None
-    vectors = _integer_vectors(notation, numbers, inverse)
-    scales = action.generators[1] * 2.0**notation.rank
-    satisfied = all(_satisfies(image, scale, vectors) for image, scale in zip(images, scales, strict=True))
-    return numbers if satisfied and _trace_vanishes(notation, vectors) else None
-
-
-def _integer_vectors(notation: TensorKind, numbers: list[Surd], inverse: IntArray) -> FloatArray:
-    """Invariant tensors over the components of the index symmetry, times a common denominator.
-
-    Integers a, b of a + b sqrt(3), shape (2, N, k); ``inverse`` says which number stands at each coefficient.
-    """
-    factors = contraction(notation).factors
-    denominator = lcm(*(n.rational.denominator * n.root.denominator for n in numbers)) * lcm(
-        *set(factors.tolist())
-    )
-    table = np.array([[float(part * denominator) for part in (n.rational, n.root)] for n in numbers])
-    component, sign = _places_of_written(notation)
-    vectors = np.zeros((2, notation.symmetry.dimension, inverse.shape[1]))
-    vectors[:, component] = np.moveaxis(table[inverse], 2, 0) * (sign / factors)[:, None]
-    return vectors
-
-
-def _satisfies(image: Numbers, scale: float, vectors: FloatArray) -> bool:
-    """Whether D(g) v = scale v for all columns, in integer arithmetic (integers below 2^50 held in
-    doubles).
-    """
-    action = image.astype(np.float64)
-    whole, root = action[0] @ vectors[0], action[0] @ vectors[1]
-    if len(action) == 2:
-        whole, root = whole + 3.0 * (action[1] @ vectors[1]), root + action[1] @ vectors[0]
-    same = bool((whole == scale * vectors[0]).all() and (root == scale * vectors[1]).all())
-    bound = float(np.abs(action).sum(axis=2).max(initial=0.0) * np.abs(vectors).max(initial=0.0))
-    return same and 4.0 * bound < _LARGEST_EXACT
-
-
-def _trace_vanishes(notation: TensorKind, vectors: FloatArray) -> bool:
-    return not notation.traceless or not np.any(
-        np.einsum("n,snk->sk", TensorSpace.of(notation).trace_vector, vectors)
-    )
+def _relations(notation: TensorKind, action: Action) -> tuple[tuple[str, ...], FloatArray]:
+    """Independent components in the preferred choice, and every written one as a combination of them."""
+    layout, keys = layout_of(notation), contraction(notation).keys
+    free, coefficients = solved(defect(TensorSpace.of(notation), action), layout.elimination)
+    sequence = np.argsort(layout.named_rank[free])
+    naming = layout.named[free[sequence]]
+    written = coefficients[layout.component[:, None], sequence]
+    return tuple(keys[k] for k in naming), written * (layout.scales[:, None] / layout.scales[naming])

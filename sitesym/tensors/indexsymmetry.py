@@ -17,7 +17,7 @@ from itertools import combinations, combinations_with_replacement, product
 import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray
-from sitesym.tensors.root3 import Numbers, multiply
+from sitesym.tensors.root3 import multiply
 
 #: Order of the components of a symmetric pair: 11 22 33 23 13 12.
 VOIGT_PAIRS = ((0, 0), (1, 1), (2, 2), (1, 2), (0, 2), (0, 1))
@@ -43,9 +43,10 @@ class IndexSymmetry(ABC):
         """
 
     @abstractmethod
-    def represent(self, matrix: Numbers) -> Numbers:
-        """Action on the components of a matrix (1 or 2, 3, 3): T'_c = sum_k D_ck T_k, shape (1 or 2, N,
-        N).
+    def represent(self, matrix: FloatArray) -> FloatArray:
+        """Action on the components of a matrix (1 or 2, 3, 3): T'_c = sum_k D_ck T_k, shape (1 or 2, N, N).
+
+        The leading axis is that of `sitesym.tensors.root3`.
         """
 
     @abstractmethod
@@ -86,7 +87,7 @@ class Vector(IndexSymmetry):
     def located(self) -> tuple[IntArray, IntArray]:
         return np.arange(3), np.ones(3, dtype=np.int64)
 
-    def represent(self, matrix: Numbers) -> Numbers:
+    def represent(self, matrix: FloatArray) -> FloatArray:
         return matrix
 
     def character(self, traces: FloatArray, power: int = 1) -> FloatArray:
@@ -105,7 +106,7 @@ class Product(IndexSymmetry):
         return sum(factor.rank for factor in self.factors)
 
     @cached_property
-    def components(self) -> tuple[tuple[int, ...], ...]:  # type: ignore[override]
+    def components(self) -> tuple[tuple[int, ...], ...]:
         parts = product(*(factor.components for factor in self.factors))
         return tuple(tuple(i for part in chosen for i in part) for chosen in parts)
 
@@ -117,9 +118,9 @@ class Product(IndexSymmetry):
             sign = (sign[:, None] * own_sign).ravel()
         return component, sign
 
-    def represent(self, matrix: Numbers) -> Numbers:
-        total = np.zeros((len(matrix), 1, 1), dtype=matrix.dtype)
-        total[0] = 1
+    def represent(self, matrix: FloatArray) -> FloatArray:
+        total = np.zeros((len(matrix), 1, 1))
+        total[0] = 1.0
         for factor in self.factors:
             own = factor.represent(matrix)
             outer = multiply(total[:, :, None, :, None], own[:, None, :, None, :])
@@ -127,7 +128,7 @@ class Product(IndexSymmetry):
         return total
 
     def character(self, traces: FloatArray, power: int = 1) -> FloatArray:
-        total = np.ones_like(traces[power])
+        total: FloatArray = np.ones_like(traces[power])
         for factor in self.factors:
             total = total * factor.character(traces, power)
         return total
@@ -156,7 +157,7 @@ class Power(IndexSymmetry):
         return tuple(choose(range(self.base.dimension), self.count))
 
     @cached_property
-    def components(self) -> tuple[tuple[int, ...], ...]:  # type: ignore[override]
+    def components(self) -> tuple[tuple[int, ...], ...]:
         return tuple(tuple(i for k in choice for i in self.base.components[k]) for choice in self.choices)
 
     @cached_property
@@ -187,7 +188,7 @@ class Power(IndexSymmetry):
         starts = np.searchsorted(component[kept], np.arange(len(self.choices)))
         return kept, sign[kept], starts
 
-    def represent(self, matrix: Numbers) -> Numbers:
+    def represent(self, matrix: FloatArray) -> FloatArray:
         own = self.base.represent(matrix)
         rows = np.array(self.choices)
         total = own[:, rows[:, 0], :]
@@ -195,8 +196,8 @@ class Power(IndexSymmetry):
             outer = multiply(total[:, :, :, None], own[:, rows[:, factor], None, :])
             total = outer.reshape(len(matrix), len(rows), -1)
         kept, sign, starts = self._column_sums
-        signed = total[:, :, kept] if self.symmetric else total[:, :, kept] * sign.astype(total.dtype)
-        summed: Numbers = np.add.reduceat(signed, starts, axis=2)
+        signed = total[:, :, kept] if self.symmetric else total[:, :, kept] * sign
+        summed: FloatArray = np.add.reduceat(signed, starts, axis=2)
         return summed
 
     def character(self, traces: FloatArray, power: int = 1) -> FloatArray:
@@ -205,10 +206,10 @@ class Power(IndexSymmetry):
         """
         sign = 1.0 if self.symmetric else -1.0
         sums = [self.base.character(traces, power * i) for i in range(1, self.count + 1)]
-        complete = [np.ones_like(traces[power])]
+        complete: list[FloatArray] = [np.ones_like(traces[power])]
         for n in range(1, self.count + 1):
-            terms = [sign ** (i - 1) * sums[i - 1] * complete[n - i] for i in range(1, n + 1)]
-            complete.append(np.sum(terms, axis=0) / n)
+            terms = (sign ** (i - 1) * sums[i - 1] * complete[n - i] for i in range(1, n + 1))
+            complete.append(sum(terms, np.zeros_like(complete[0])) / n)
         return complete[-1]
 
 

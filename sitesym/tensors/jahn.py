@@ -14,6 +14,7 @@ from sitesym.errors import TensorInputError
 from sitesym.tensors.indexsymmetry import IndexSymmetry, Power, Product, Vector
 
 _HIGHEST_RANK = 8
+_MOST_COMPONENTS = 1000
 _SUPERSCRIPTS = str.maketrans("⁰¹²³⁴⁵⁶⁷⁸⁹", "0123456789")
 
 
@@ -39,11 +40,17 @@ def read_jahn(text: str) -> Jahn:
     prefix = marks.group() if marks else ""
     if len(set(prefix)) < len(prefix):
         raise _not_understood(text, "e and a stand once, before everything else")
+    if not plain:
+        raise _not_understood(
+            text, "the symbol is empty: a scalar that is neither axial nor odd has no constraint"
+        )
     symmetry, rest = _sequence(text, plain[len(prefix) :])
     if rest:
         raise _not_understood(text, f"nothing begins with {rest[0]!r} here")
     if symmetry.rank > _HIGHEST_RANK:
         raise _not_understood(text, f"rank {symmetry.rank} is above the highest rank {_HIGHEST_RANK}")
+    if symmetry.dimension > _MOST_COMPONENTS:
+        raise _not_understood(text, f"{symmetry.dimension} components are more than {_MOST_COMPONENTS}")
     return Jahn(plain, "e" in prefix, "a" in prefix, symmetry)
 
 
@@ -52,7 +59,7 @@ def _sequence(text: str, rest: str) -> tuple[IndexSymmetry, str]:
     factors: list[IndexSymmetry] = []
     while rest and rest[0] not in "]}":
         factor, rest = _factor(text, rest)
-        count, rest = _exponent(rest)
+        count, rest = _exponent(text, rest)
         factors.extend([factor] * count)
     return (factors[0] if len(factors) == 1 else Product(tuple(factors))), rest
 
@@ -72,10 +79,14 @@ def _factor(text: str, rest: str) -> tuple[IndexSymmetry, str]:
     return Power(factors[0], len(factors), symmetric=closing == "]"), after[1:]
 
 
-def _exponent(rest: str) -> tuple[int, str]:
-    digits = re.match(r"\d*", rest)
-    number = digits.group() if digits else ""
-    return int(number or 1), rest[len(number) :]
+def _exponent(text: str, rest: str) -> tuple[int, str]:
+    """A number from 1 to the highest rank, 1 where none is written."""
+    digits = re.match(r"\d+", rest)
+    if digits is None:
+        return 1, rest
+    if digits.group() not in map(str, range(1, _HIGHEST_RANK + 1)):
+        raise _not_understood(text, f"an exponent is a number from 1 to {_HIGHEST_RANK}")
+    return int(digits.group()), rest[digits.end() :]
 
 
 def _not_understood(text: str, rule: str) -> TensorInputError:

@@ -107,9 +107,9 @@ class TensorSpace:
         weight = irrep.dimension / table.group.order
         operators = weight * np.einsum("gi,gab->iab", irrep.matrices[:, :, 0].conj(), representation)
         first = _orthonormal_range(operators[0])
-        vectors = np.einsum("iab,kb->kia", operators, first)
-        flat = self.basis.reshape(self.dimension, -1)
-        return (vectors @ flat).reshape(len(first), irrep.dimension, *(3,) * self.symmetry.rank)
+        vectors: ComplexArray = np.einsum("iab,kb->kia", operators, first)
+        tensors: ComplexArray = vectors @ self.basis.reshape(self.dimension, -1)
+        return tensors.reshape(len(first), irrep.dimension, *(3,) * self.symmetry.rank)
 
 
 @lru_cache(maxsize=8192)

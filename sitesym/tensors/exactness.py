@@ -1,0 +1,76 @@
+"""Exact coefficients: the numbers behind the floats of an allowed form, and the proof that they satisfy every
+generator.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from sitesym.arrays import FloatArray, IntArray
+from sitesym.tensors.action import Action
+from sitesym.tensors.generators import Image, images
+from sitesym.tensors.kinds import TensorKind
+from sitesym.tensors.layout import layout_of
+from sitesym.tensors.root3 import Recognised, Surd, recognise
+from sitesym.tensors.spaces import TensorSpace
+
+#: Doubles hold integers below 2^53 exactly.
+_LARGEST_EXACT = 2.0**50
+
+
+@dataclass(frozen=True, eq=False)
+class Terms:
+    """The non-zero coefficients of a form: ``values[which[t]]`` stands at written component ``rows[t]`` and
+    independent component ``columns[t]`` of ``count``. The values are distinct.
+    """
+
+    rows: IntArray
+    columns: IntArray
+    which: IntArray
+    values: FloatArray
+    count: int
+
+
+def exact_values(notation: TensorKind, terms: Terms, action: Action) -> list[Surd] | None:
+    """The exact number behind each of ``terms.values``, or None unless all satisfy every generator."""
+    generators = images(notation.symmetry, action.generator_matrices)
+    numbers = recognise(terms.values) if all(image.exact for image in generators) else None
+    if numbers is None:
+        return None
+    vectors = _integer_vectors(notation, numbers, terms)
+    signs = action.generators[1].tolist()
+    satisfied = all(_satisfies(g, sign, vectors) for g, sign in zip(generators, signs, strict=True))
+    return numbers.surds() if satisfied and _trace_vanishes(notation, vectors) else None
+
+
+def _integer_vectors(notation: TensorKind, numbers: Recognised, terms: Terms) -> FloatArray:
+    """Invariant tensors over the components of the index symmetry, times a common denominator.
+
+    Integers a, b of a + b sqrt(3), shape (2, N, count).
+    """
+    layout = layout_of(notation)
+    denominator = int(np.lcm.reduce(numbers.denominators)) * int(
+        np.lcm.reduce(np.abs(layout.units).astype(int))
+    )
+    vectors = np.zeros((2, notation.symmetry.dimension, terms.count))
+    numerators = numbers.over(denominator)[:, terms.which] / layout.units[terms.rows]
+    vectors[:, layout.component[terms.rows], terms.columns] = numerators
+    return vectors
+
+
+def _satisfies(image: Image, sign: float, vectors: FloatArray) -> bool:
+    """Whether sign D(g) v = v for all columns, in integer arithmetic."""
+    if 4.0 * image.largest_row_sum * np.abs(vectors).max(initial=0.0) > _LARGEST_EXACT:
+        return False
+    parts, (whole, root) = image.parts, vectors
+    if len(parts) == 1:
+        moved: FloatArray = parts[0] @ vectors
+    else:
+        moved = np.stack([parts[0] @ whole + 3.0 * (parts[1] @ root), parts[0] @ root + parts[1] @ whole])
+    return np.array_equal(moved, sign * image.scale * vectors)
+
+
+def _trace_vanishes(notation: TensorKind, vectors: FloatArray) -> bool:
+    return not notation.traceless or not (TensorSpace.of(notation).trace_vector @ vectors).any()

@@ -1,0 +1,53 @@
+"""How the written components of a notation stand to the components that its index symmetry leaves."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from sitesym.arrays import FloatArray, IntArray
+from sitesym.tensors.contraction import contraction, flat_place
+from sitesym.tensors.kinds import TensorKind
+
+
+@dataclass(frozen=True, eq=False)
+class Layout:
+    """W written components against N components of the index symmetry; both differ where a tensor is
+    written in a coarser notation than it obeys.
+
+    ``component`` (W,): the component that stands at each written one. ``units`` (W,): written value over
+    tensor component (factor of the contracted notation times the sign of antisymmetry). ``named`` (N,): the
+    written component that names each component. ``elimination`` (N,): components in the order in which they
+    are expressed by others, the one preferred as independent last. ``scales`` (W,): written value over
+    orthonormal component. ``named_rank`` (N,): order of the names.
+    """
+
+    component: IntArray
+    units: FloatArray
+    named: IntArray
+    elimination: IntArray
+    scales: FloatArray
+    named_rank: IntArray
+
+
+@lru_cache(maxsize=128)
+def layout_of(notation: TensorKind) -> Layout:
+    """The layout of a kind."""
+    names = contraction(notation)
+    everywhere, signs = notation.symmetry.full_indices
+    places = [flat_place(full) for full in notation.written.components]
+    component = everywhere[places]
+    preferred = np.array(names.preference)
+    _, first = np.unique(component[preferred], return_index=True)
+    named = preferred[first]
+    units: FloatArray = np.multiply(names.factors, signs[places], dtype=np.float64)
+    return Layout(
+        component=component,
+        units=units,
+        named=named,
+        elimination=np.argsort(first)[::-1],
+        scales=units / np.sqrt(notation.symmetry.multiplicities)[component],
+        named_rank=np.argsort(np.argsort([names.keys[written] for written in named])),
+    )
