@@ -5,6 +5,7 @@
     │   └── AxesError
     ├── ReadingError             a file that cannot be turned into a crystal
     │   ├── UnknownFormatError
+    │   ├── FileTooLargeError
     │   ├── EmptyStructureError
     │   ├── CountMismatchError
     │   ├── NotANumberError
@@ -38,7 +39,9 @@ class SitesymError(Exception):
 
     code: ClassVar[str] = "error"
 
-    def __init__(self, what: str, value: str = "", rule: str = "", next_step: str = "", file: str = "") -> None:
+    def __init__(
+        self, what: str, value: str = "", rule: str = "", next_step: str = "", file: str = ""
+    ) -> None:
         super().__init__(what, value, rule, next_step, file)
         self.what = what
         self.value = value
@@ -79,6 +82,12 @@ class UnknownFormatError(ReadingError):
     """A file whose format is not known, or that does not say what it must (a POSCAR without symbols)."""
 
     code = "unknown-format"
+
+
+class FileTooLargeError(ReadingError):
+    """A file larger than the limit, as it is or once decompressed."""
+
+    code = "too-large"
 
 
 class EmptyStructureError(ReadingError):

@@ -29,7 +29,8 @@ REPRESENTATION: Final = 1e-10
 #: Two atoms closer than this cannot both be there (angstrom).
 SMALLEST_DISTANCE_ANGSTROM: Final = 0.1
 
-#: Images of one site, or sites of a file, closer than this are one atom of a special or mixed position (angstrom).
+#: Images of one site, or sites of a file, closer than this are one atom of a special or mixed position
+#: (angstrom).
 MERGE_DISTANCE_ANGSTROM: Final = 0.1
 
 #: Cell edges beyond this are taken for a mistaken unit (angstrom).
@@ -40,3 +41,6 @@ OCCUPANCY_EXCESS: Final = 0.011
 
 #: Largest relative difference between a cell's metric and its image under an operation said to be a symmetry.
 CELL_METRIC: Final = 0.02
+
+#: A layer of the cell this wide without the centre of an atom is taken for vacuum, and warned of (angstrom).
+VACUUM_GAP_ANGSTROM: Final = 7.0

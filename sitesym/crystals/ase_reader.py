@@ -1,4 +1,4 @@
-"""Adapter to ASE: every structure format but CIF."""
+"""Adapter to ASE: every structure format but CIF and POSCAR."""
 
 from __future__ import annotations
 
@@ -7,10 +7,12 @@ import struct
 import warnings
 import zlib
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-from sitesym.crystals.crystal import Crystal, Source
 from sitesym.errors import EmptyStructureError, ReadingError, UnknownFormatError
+
+if TYPE_CHECKING:
+    from ase import Atoms
 
 # ASE's readers let whatever a malformed text provokes escape: these are the classes that bad content, and
 # not a fault of this program, gives rise to.
@@ -37,50 +39,40 @@ _CONTENT_ERRORS = (
 _OPTIONS: dict[str, dict[str, Any]] = {"castep-cell": {"calculator_args": {"keyword_tolerance": 3}}}
 
 
-def read_with_ase(path: Path, ase_format: str) -> tuple[Crystal, ...]:
-    """All structures of a file, in its order; ``ase_format`` is ASE's name of the format.
+def read_frames(path: Path, ase_format: str, index: int | None) -> tuple[list[Atoms], tuple[str, ...]]:
+    """All structures of a file, in its order, or the one with an index (-1 the last); ``ase_format`` is ASE's
+    name of the format. The texts are warnings of ASE.
 
-    Warnings of ASE become remarks. Raises ReadingError and its subclasses.
+    Raises ReadingError, and EmptyStructureError where there is no such structure.
     """
     import ase.io
     from ase.io import ParseError
     from ase.io.formats import UnknownFileTypeError
 
-    if ase_format == "vasp":
-        _require_symbols(path)
     options = _OPTIONS.get(ase_format, {})
     with warnings.catch_warnings(record=True) as caught:
         warnings.simplefilter("always")
         try:
-            frames = list(ase.io.iread(str(path), index=":", format=ase_format, **options))
+            chosen = ":" if index is None else index
+            frames = list(ase.io.iread(str(path), index=chosen, format=ase_format, **options))
+        except IndexError as error:
+            if index is None:
+                raise _unreadable(ase_format, error) from error
+            frames = []
         except (ParseError, UnknownFileTypeError, *_CONTENT_ERRORS) as error:
-            raise ReadingError(
-                f"the file cannot be read as {ase_format}",
-                f"{type(error).__name__}: {error}".strip().splitlines()[0],
-                f"the content follows the format {ase_format}",
-                "correct the file, or name its format",
-            ) from error
+            raise _unreadable(ase_format, error) from error
     if not frames:
         raise EmptyStructureError(
-            "the file holds no structure",
-            f"0 structures of format {ase_format}",
-            "a file holds at least one",
+            "the file holds no structure" if index is None else "the file holds no such structure",
+            f"format {ase_format}" + ("" if index is None else f", structure {index + 1 or 'last'}"),
+            "a file holds at least one; they are counted from 1",
             "look for the missing structure",
         )
     # What ASE plans for its own interface says nothing about the file.
     warned = (
         entry for entry in caught if not issubclass(entry.category, (FutureWarning, DeprecationWarning))
     )
-    remarks = tuple(dict.fromkeys(f"ASE warns: {entry.message}" for entry in warned))
-    parts = (
-        [""]
-        if len(frames) == 1
-        else [f"structure {number} of {len(frames)}" for number in range(1, len(frames) + 1)]
-    )
-    return tuple(
-        Crystal.from_ase(atoms, Source(path.name, ase_format, part), remarks)
-        for atoms, part in zip(frames, parts, strict=True)
-    )
+    return frames, tuple(dict.fromkeys(f"ASE warns: {entry.message}" for entry in warned))
 
 
 def detected_format(path: Path) -> str:
@@ -98,14 +90,10 @@ def detected_format(path: Path) -> str:
         ) from error
 
 
-def _require_symbols(path: Path) -> None:
-    """Refuse a POSCAR that counts atoms in line 6, where the symbols belong: they would be guessed."""
-    lines = path.read_text(encoding="utf-8", errors="replace").splitlines()
-    counts = lines[5].split() if len(lines) > 5 else []
-    if counts and all(token.isdigit() for token in counts):
-        raise UnknownFormatError(
-            "a POSCAR without element symbols",
-            f"line 6 is '{lines[5].strip()}'",
-            "the element symbols stand in the line before the counts (the format since VASP 5)",
-            "insert the symbols as line 6; they are not guessed from the comment",
-        )
+def _unreadable(ase_format: str, error: Exception) -> ReadingError:
+    return ReadingError(
+        f"the file cannot be read as {ase_format}",
+        f"{type(error).__name__}: {error}".strip().splitlines()[0],
+        f"the content follows the format {ase_format}",
+        "correct the file, or name its format",
+    )

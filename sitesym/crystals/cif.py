@@ -2,84 +2,34 @@
 
 from __future__ import annotations
 
-from collections import Counter
-from pathlib import Path
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from sitesym.arrays import FloatArray
-from sitesym.crystals.cif_symmetry import stated_operations
+from sitesym.crystals.cif_atoms import listed_sites, lists_atoms
+from sitesym.crystals.cif_symmetry import stated_symmetry
+from sitesym.crystals.cif_values import number
+from sitesym.crystals.composition import formula_remarks
 from sitesym.crystals.crystal import Crystal, Source
-from sitesym.crystals.expansion import ListedSite, expand
-from sitesym.crystals.species import ATOMIC_NUMBERS
-from sitesym.errors import (
-    EmptyStructureError,
-    InfiniteValueError,
-    NotANumberError,
-    OccupancyError,
-    ReadingError,
-    SingularCellError,
-)
+from sitesym.crystals.expansion import expand
+from sitesym.crystals.validation import check_cell
+from sitesym.errors import EmptyStructureError, ReadingError, SingularCellError
 
 if TYPE_CHECKING:
     import gemmi
 
 FRAME_NOTE = "x || a, b in the xy plane, right-handed; a CIF gives no Cartesian axes"
 
-_CELL_TAGS = tuple(f"_cell_{part}" for part in ("length_a", "length_b", "length_c")) + tuple(
-    f"_cell_angle_{part}" for part in ("alpha", "beta", "gamma")
-)
-_COORDINATES = ("_atom_site_fract_x", "_atom_site_fract_y", "_atom_site_fract_z")
-_COLUMNS = (*_COORDINATES, "?_atom_site_label", "?_atom_site_type_symbol", "?_atom_site_occupancy")
-_ISOTOPES = {"D": "H", "T": "H"}
-# As type symbols and labels (Va1) for an empty place; VA1 may be a vanadium.
-_VACANCIES = ("Va", "Vac", "vac", "VAC")
+_CELL_ITEMS = ("length_a", "length_b", "length_c", "angle_alpha", "angle_beta", "angle_gamma")
 
 
-def read_cif(path: Path) -> tuple[Crystal, ...]:
-    """All structures of a CIF, one for each data block that lists atoms.
-
-    Raises ReadingError and its subclasses.
-    """
-    document = _parse(path)
-    blocks = [block for block in document if len(block.find_values(_COORDINATES[0]))]
-    if not blocks:
-        names = ", ".join(block.name for block in document) or "none"
-        raise EmptyStructureError(
-            "no data block lists atoms",
-            f"data blocks: {names}",
-            f"atoms stand in a loop with {_COORDINATES[0]}",
-            "look for the missing atoms",
-        )
-    return tuple(crystal_from_block(block, path.name) for block in blocks)
-
-
-def crystal_from_block(block: gemmi.cif.Block, file: str) -> Crystal:
-    """The crystal of one data block, its atoms expanded by the stated operations; see `cif_symmetry`."""
-    lattice = _lattice(block)
-    remarks: list[str] = []
-    sites = _listed_sites(block, remarks)
-    operations, statements = stated_operations(block, lattice)
-    atoms = expand(sites, operations, lattice)
-    return Crystal(
-        lattice,
-        atoms.positions_frac,
-        atoms.species,
-        atoms.labels,
-        Source(file, "cif", f"data block {block.name}; symmetry from the {operations.stated_by}"),
-        FRAME_NOTE,
-        statements.declared,
-        (*remarks, *atoms.remarks),
-    )
-
-
-def _parse(path: Path) -> gemmi.cif.Document:
+def cif_document(raw: bytes) -> gemmi.cif.Document:
+    """The data blocks of a CIF in UTF-8 or Latin-1. Raises ReadingError where the grammar is broken."""
     import gemmi
 
-    raw = path.read_bytes()
     try:
-        text = raw.decode("utf-8")
+        text = raw.decode("utf-8-sig")
     except UnicodeDecodeError:
         text = raw.decode("latin-1")
     try:
@@ -90,10 +40,65 @@ def _parse(path: Path) -> gemmi.cif.Document:
         ) from error
 
 
+def blocks_with_atoms(
+    document: gemmi.cif.Document, wanted: str | None = None
+) -> tuple[list[gemmi.cif.Block], tuple[str, ...]]:
+    """The blocks that list atoms, or the one of the wanted name, and a remark for each block without atoms.
+
+    Raises EmptyStructureError when there are none, ReadingError for a name that no block has.
+    """
+    names = [block.name for block in document]
+    if wanted is not None and wanted not in names:
+        raise ReadingError(
+            "there is no such data block", wanted, f"data blocks: {', '.join(names)}", "name one of these"
+        )
+    blocks = [block for block in document if lists_atoms(block) and wanted in (None, block.name)]
+    empty = [block.name for block in document if not lists_atoms(block)]
+    if not blocks:
+        raise EmptyStructureError(
+            "no data block lists atoms" if wanted is None else "the data block lists no atoms",
+            f"data blocks: {', '.join(names) or 'none'}",
+            "atoms stand in a loop with _atom_site_fract_x",
+            "look for the missing atoms",
+        )
+    return blocks, tuple(f"data block {name} lists no atoms" for name in empty)
+
+
+def crystal_from_block(
+    block: gemmi.cif.Block, file: str, symmetry_from: str | None = None, of_file: tuple[str, ...] = ()
+) -> Crystal:
+    """The crystal of one data block, its atoms expanded by the stated operations; see `cif_symmetry`.
+
+    ``of_file`` are remarks on the file as a whole.
+
+    Raises ReadingError and its subclasses.
+    """
+    lattice = _lattice(block)
+    remarks = list(of_file)
+    sites = listed_sites(block, remarks)
+    symmetry = stated_symmetry(block, lattice, symmetry_from)
+    atoms = expand(sites, symmetry.operations, lattice)
+    return Crystal(
+        lattice,
+        atoms.positions_frac,
+        atoms.species,
+        atoms.labels,
+        Source(file, "cif", f"data block {block.name}; symmetry from the {symmetry.operations.stated_by}"),
+        FRAME_NOTE,
+        symmetry.declared,
+        (*remarks, *symmetry.remarks, *atoms.remarks, *formula_remarks(block, atoms.species)),
+        len(symmetry.operations.rotations),
+        atoms.marks,
+    )
+
+
 def _lattice(block: gemmi.cif.Block) -> FloatArray:
     import gemmi
 
-    parameters = [_number(block.find_value(tag) or "?", tag) for tag in _CELL_TAGS]
+    separator = "." if block.find_value("_cell.length_a") else "_"
+    parameters = [
+        number(block.find_value(f"_cell{separator}{item}") or "?", f"_cell_{item}") for item in _CELL_ITEMS
+    ]
     if min(parameters[:3]) <= 0.0 or not all(0.0 < angle < 180.0 for angle in parameters[3:]):
         raise SingularCellError(
             "the cell parameters span no volume",
@@ -109,87 +114,5 @@ def _lattice(block: gemmi.cif.Block) -> FloatArray:
             "each angle is smaller than the sum of the other two",
             "correct the cell",
         )
+    check_cell(lattice)
     return lattice
-
-
-def _listed_sites(block: gemmi.cif.Block, remarks: list[str]) -> list[ListedSite]:
-    sites = []
-    isotopes: Counter[str] = Counter()
-    labels: Counter[str] = Counter()
-    for row in block.find(_COLUMNS):
-        position = np.array([_number(row[i], f"{_COORDINATES[i]} of {_optional(row, 3)}") for i in range(3)])
-        label, type_symbol = _optional(row, 3), _optional(row, 4)
-        symbol = _element(type_symbol or label)
-        if symbol in _VACANCIES:
-            remarks.append(f"site {label} is a vacancy and holds no atom")
-            continue
-        if symbol in _ISOTOPES:
-            isotopes[symbol] += 1
-        label = label or symbol
-        labels[label] += 1
-        if labels[label] > 1:
-            label = f"{label}_{labels[label]}"
-            remarks.append(f"a label stands on more than one site; one of them is called {label} here")
-        sites.append(ListedSite(label, position, ((_ISOTOPES.get(symbol, symbol), _occupancy(row, label)),)))
-    remarks.extend(f"{symbol} counts as hydrogen" for symbol in isotopes)
-    if not sites:
-        raise EmptyStructureError(
-            "the structure has no atoms",
-            f"data block {block.name}",
-            "a crystal has at least one atom",
-            "look for the missing atoms",
-        )
-    return sites
-
-
-def _optional(row: gemmi.cif.Table.Row, column: int) -> str:
-    import gemmi
-
-    if not row.has(column) or gemmi.cif.is_null(row[column]):
-        return ""
-    return str(gemmi.cif.as_string(row[column])).strip()
-
-
-def _number(raw: str, name: str) -> float:
-    """A number that may carry an uncertainty in brackets. Raises NotANumberError or InfiniteValueError."""
-    import gemmi
-
-    value = float(gemmi.cif.as_number(raw))
-    if np.isfinite(value):
-        return value
-    rule, step = "a finite number, with its uncertainty in brackets or none", "correct the value"
-    if raw.strip("'\"+- ").lower() in ("inf", "infinity"):
-        raise InfiniteValueError("a value is infinite", f"{name} is {raw}", rule, step)
-    raise NotANumberError("a value is not a number", f"{name} is {raw}", rule, step)
-
-
-def _occupancy(row: gemmi.cif.Table.Row, label: str) -> float:
-    if not _optional(row, 5):
-        return 1.0
-    occupancy = _number(row[5], f"_atom_site_occupancy of {label}")
-    if occupancy <= 0.0:
-        raise OccupancyError(
-            "an occupancy that cannot be",
-            f"{label} {occupancy:g}",
-            "occupancies are above zero and at most one",
-            "correct the occupancy; an empty site is left out",
-        )
-    return occupancy
-
-
-def _element(text: str) -> str:
-    """Element of a type symbol or label: Ti4+, O2-, Ti1A, OW2. Two letters are tried before one."""
-    letters = text.rstrip("0123456789")
-    if letters in _VACANCIES:
-        return letters
-    for length in (2, 1):
-        symbol = text[:length].capitalize()
-        known = symbol in ATOMIC_NUMBERS or symbol in _ISOTOPES
-        if known and symbol.isalpha() and len(symbol) == length:
-            return symbol
-    raise ReadingError(
-        "an atom of no known element",
-        repr(text),
-        "the type symbol or the label starts with an element symbol",
-        "add _atom_site_type_symbol",
-    )

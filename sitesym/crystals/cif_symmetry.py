@@ -1,30 +1,37 @@
 """Which symmetry operations a CIF states: its list, else Hall, else Hermann-Mauguin, else number.
 
-A statement that can be read in more than one way, statements that contradict each other or the cell, and a
-file without any statement are errors that name the choices. A file is never taken for P 1 because it is
-silent.
+All statements of a block are compared with each other and with the cell. A statement that can be read in
+more than one way, statements that contradict each other or the cell, and a file without any statement are
+errors that name the choices. A file is never taken for P 1 because it is silent.
 """
 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Final, TypeAlias
 
-import numpy as np
-
-from sitesym.arrays import FloatArray, IntArray
-from sitesym.crystals.operations import (
-    StatedOperations,
-    cell_text,
-    check_cell_fits,
-    check_closed,
-    metric_misfit,
+from sitesym.arrays import FloatArray
+from sitesym.crystals.cif_magnetic import magnetic_operations
+from sitesym.crystals.cif_settings import (
+    REMEDY,
+    Setting,
+    is_unique_axis_b,
+    setting_of_hall,
+    setting_of_triplets,
+    settings_of_name,
+    settings_of_number,
+    type_number,
 )
-from sitesym.errors import SpaceGroupStatementError
+from sitesym.crystals.cif_values import first_column, first_text
+from sitesym.crystals.operations import StatedOperations, cell_text, metric_misfit
+from sitesym.errors import SpaceGroupStatementError, UsageError
 from sitesym.tolerances import CELL_METRIC
 
 if TYPE_CHECKING:
     import gemmi
+
+#: Statements a file can make of its space group, the most telling first.
+STATEMENTS: Final = ("operations", "hall", "hm", "number")
 
 OPERATION_TAGS = (
     "_space_group_symop_operation_xyz",
@@ -32,199 +39,204 @@ OPERATION_TAGS = (
     "_space_group_symop.operation_xyz",
 )
 HALL_TAGS = ("_space_group_name_Hall", "_symmetry_space_group_name_Hall", "_space_group.name_Hall")
-NAME_TAGS = ("_space_group_name_H-M_alt", "_symmetry_space_group_name_H-M", "_space_group.name_H-M_alt")
+NAME_TAGS = (
+    "_space_group_name_H-M_alt",
+    "_symmetry_space_group_name_H-M",
+    "_space_group.name_H-M_alt",
+    "_space_group_name_H-M_ref",
+    "_space_group.name_H-M_ref",
+    "_space_group_name_H-M_full",
+    "_space_group.name_H-M_full",
+)
 NUMBER_TAGS = ("_space_group_IT_number", "_symmetry_Int_Tables_number", "_space_group.IT_number")
 
-# Suffixes after a blank that some programs write for a setting (common practice, no source).
-_SUFFIX_SETTINGS = {"S": "1", "Z": "2", "H": "H", "R": "R", "HR": "H", "RS": "R"}
-_REMEDY = "add the list of operations (_space_group_symop_operation_xyz) or the Hall symbol to the file"
+
+#: What a block says, by statement: the operations as texts, the others as one text.
+_Declared: TypeAlias = dict[str, str | tuple[str, ...]]
 
 
 @dataclass(frozen=True)
-class Statements:
-    """What a data block says about its space group, as texts; empty where it says nothing."""
+class Reading:
+    """One statement and the settings it may mean: one for operations and Hall, several for names."""
 
-    operations: tuple[str, ...]
-    hall: str
-    name: str
-    number: str
+    statement: str
+    text: str
+    settings: tuple[Setting, ...]
 
     @property
-    def declared(self) -> str:
-        """The space group as the file names it: H-M symbol, else Hall symbol, else number."""
-        if self.name or self.hall:
-            return self.name or f"Hall {self.hall}"
-        return f"number {self.number}" if self.number else ""
+    def meaning(self) -> str:
+        """The statement and what it means, for messages."""
+        names = dict.fromkeys(setting.text for setting in self.settings)
+        return f"the {self.text} means {' or '.join(names)}"
 
 
-def stated_operations(block: gemmi.cif.Block, lattice: FloatArray) -> tuple[StatedOperations, Statements]:
-    """The operations of a block with the cell ``lattice`` (rows, angstrom), and what the block states.
+@dataclass(frozen=True)
+class StatedSymmetry:
+    """The operations a block states, the space group as it names it, and remarks of the comparison."""
 
-    Raises SpaceGroupStatementError.
+    operations: StatedOperations
+    declared: str
+    remarks: tuple[str, ...]
+
+
+def stated_symmetry(
+    block: gemmi.cif.Block, lattice: FloatArray, symmetry_from: str | None = None
+) -> StatedSymmetry:
+    """The operations of a block with the cell ``lattice`` (rows, angstrom).
+
+    ``symmetry_from``, one of `STATEMENTS`, is the only statement to believe; without it all of them must
+    agree. Raises SpaceGroupStatementError, UsageError for an unknown name.
     """
-    statements = read_statements(block)
-    operations, stated_by = _choose(statements, lattice)
-    result = StatedOperations(
-        np.array([operation.rot for operation in operations], dtype=np.int64) // operations[0].DEN,
-        np.array([operation.tran for operation in operations], dtype=np.float64) / operations[0].DEN,
-        stated_by,
+    declared: _Declared = {
+        "operations": first_column(block, OPERATION_TAGS),
+        "hall": first_text(block, HALL_TAGS),
+        "hm": first_text(block, NAME_TAGS),
+        "number": first_text(block, NUMBER_TAGS),
+    }
+    name = str(declared["hm"] or (f"Hall {declared['hall']}" if declared["hall"] else ""))
+    name = name or (f"number {declared['number']}" if declared["number"] else "")
+    magnetic = magnetic_operations(block) if not declared["operations"] else None
+    if magnetic is not None and symmetry_from in (None, "operations"):
+        _check_cell([setting_of_triplets(magnetic.triplets)], "list of magnetic operations", lattice)
+        return StatedSymmetry(magnetic.stated, name, ())
+    if symmetry_from is not None:
+        declared = _only(declared, symmetry_from)
+    readings, remarks = _readings(declared)
+    if not readings:
+        raise _silent()
+    _compare(readings, lattice)
+    chosen = readings[0]
+    setting = _fitting_setting(chosen, lattice, remarks)
+    stated = StatedOperations(setting.rotations, setting.translations, _stated_by(chosen, setting))
+    return StatedSymmetry(stated, name, tuple(remarks))
+
+
+def _only(declared: _Declared, symmetry_from: str) -> _Declared:
+    if symmetry_from not in STATEMENTS:
+        raise UsageError(
+            "there is no such statement of symmetry",
+            symmetry_from,
+            f"one of {', '.join(STATEMENTS)}",
+            "name one of these",
+        )
+    if not declared[symmetry_from]:
+        made = ", ".join(name for name, value in declared.items() if value) or "none"
+        raise SpaceGroupStatementError(
+            "the file does not make the statement asked for",
+            symmetry_from,
+            f"statements of this file: {made}",
+            "choose one that the file makes",
+        )
+    return {name: value if name == symmetry_from else "" for name, value in declared.items()}
+
+
+def _readings(declared: _Declared) -> tuple[list[Reading], list[str]]:
+    """What the statements mean. One that cannot be read is left out with a remark where another can."""
+    readings: list[Reading] = []
+    remarks: list[str] = []
+    for statement, value in declared.items():
+        if not value:
+            continue
+        try:
+            readings.append(_reading(statement, value))
+        except SpaceGroupStatementError as error:
+            if not readings:
+                raise
+            remarks.append(f"{error.what} and is not compared: {error.value}")
+    return readings, remarks
+
+
+def _reading(statement: str, value: str | tuple[str, ...]) -> Reading:
+    if isinstance(value, tuple):
+        return Reading(statement, "list of operations", (setting_of_triplets(value),))
+    if statement == "hall":
+        return Reading(statement, f"Hall symbol {value}", (setting_of_hall(value),))
+    if statement == "hm":
+        return Reading(statement, f"H-M symbol {value}", settings_of_name(value))
+    return Reading(statement, f"number {value}", settings_of_number(value))
+
+
+def _compare(readings: list[Reading], lattice: FloatArray) -> None:
+    """Each statement against the ones before it; contradictions raise SpaceGroupStatementError."""
+    for later, second in enumerate(readings):
+        for first in readings[:later]:
+            if _agree(first, second, lattice):
+                continue
+            choices = " or ".join(f"--symmetry-from {reading.statement}" for reading in (first, second))
+            raise SpaceGroupStatementError(
+                "the file contradicts itself about its space group",
+                f"{first.meaning}; {second.meaning}",
+                "all statements of a file mean one space group in one setting",
+                f"remove the statement that is wrong, or choose: {choices} (symmetry_from in Python)",
+            )
+
+
+def _agree(first: Reading, second: Reading, lattice: FloatArray) -> bool:
+    """Whether some setting of the first is one of the second; names of another origin or cell than the
+    tables' are compared by type and rotations, a bare number by type."""
+    if "number" in (first.statement, second.statement):
+        numbers = {setting.number for setting in second.settings}
+        return any(type_number(setting, lattice) in numbers for setting in first.settings)
+    if {setting.codes for setting in first.settings} & {setting.codes for setting in second.settings}:
+        return True
+    stated = first.settings[0]
+    if stated.number or second.statement != "hm":
+        return False
+    number = type_number(stated, lattice)
+    rotations = _rotation_set(stated)
+    return any(
+        setting.number == number and _rotation_set(setting) == rotations for setting in second.settings
     )
-    if statements.operations:
-        check_closed(result)
-    check_cell_fits(result, lattice)
-    return result, statements
 
 
-def read_statements(block: gemmi.cif.Block) -> Statements:
-    """What the block says, '?' and '.' being nothing."""
-    operations: tuple[str, ...] = ()
-    for tag in OPERATION_TAGS:
-        column = block.find_values(tag)
-        if len(column) and not operations:
-            operations = tuple(text for text in (_text(value) for value in column) if text)
-    return Statements(
-        operations, _first(block, HALL_TAGS), _first(block, NAME_TAGS), _first(block, NUMBER_TAGS)
-    )
+def _rotation_set(setting: Setting) -> set[bytes]:
+    return {rotation.tobytes() for rotation in setting.rotations}
 
 
-def _first(block: gemmi.cif.Block, tags: tuple[str, ...]) -> str:
-    values = (_text(block.find_value(tag) or "?") for tag in tags)
-    return next((value for value in values if value), "")
-
-
-def _text(raw: str) -> str:
-    import gemmi
-
-    return "" if gemmi.cif.is_null(raw) else " ".join(str(gemmi.cif.as_string(raw)).split())
-
-
-def _choose(statements: Statements, lattice: FloatArray) -> tuple[list[gemmi.Op], str]:
-    if statements.operations:
-        operations = _parse_operations(statements.operations)
-        _check_against_name(operations, statements)
-        return operations, "list of operations"
-    if statements.hall:
-        return _from_hall(statements.hall), f"Hall symbol {statements.hall}"
-    if statements.name:
-        group = _setting(_named_settings(statements.name), statements.name, lattice)
-        return list(group.operations()), f"H-M symbol {group.xhm()}"
-    if statements.number:
-        group = _setting(_numbered_settings(statements.number), f"number {statements.number}", lattice)
-        return list(group.operations()), f"space group number {statements.number}"
+def _fitting_setting(reading: Reading, lattice: FloatArray, remarks: list[str]) -> Setting:
+    """The one setting that fits the cell; more than one, or none, is an error that lists them."""
+    fitting = _check_cell(list(reading.settings), reading.text, lattice)
+    along_b = [setting for setting in fitting if is_unique_axis_b(setting)]
+    if len(fitting) > 1 and reading.statement == "hm" and len(along_b) == 1:
+        remarks.append(
+            f"{reading.text} names no unique axis: b, as in International Tables, gives {along_b[0].name}"
+        )
+        return along_b[0]
+    if len(fitting) == 1:
+        return fitting[0]
     raise SpaceGroupStatementError(
+        "the space group is stated without its setting",
+        f"{reading.text} may be {', '.join(setting.name for setting in fitting)}",
+        "origin and axes decide where the atoms are; they are not guessed",
+        REMEDY,
+    )
+
+
+def _check_cell(settings: list[Setting], text: str, lattice: FloatArray) -> list[Setting]:
+    """The settings that leave the cell unchanged, at least one."""
+    misfits = [metric_misfit(setting.rotations, lattice) for setting in settings]
+    fitting = [setting for setting, misfit in zip(settings, misfits, strict=True) if misfit <= CELL_METRIC]
+    if fitting:
+        return fitting
+    names = ", ".join(setting.text for setting in settings)
+    raise SpaceGroupStatementError(
+        "the cell does not fit the stated space group",
+        f"{text}: {names}; cell {cell_text(lattice)}; its metric changes by {min(misfits):.2g} of itself",
+        f"the operations leave the cell unchanged within {CELL_METRIC:g}",
+        "correct the cell or the space group",
+    )
+
+
+def _stated_by(reading: Reading, setting: Setting) -> str:
+    if reading.statement == "hm":
+        return f"H-M symbol {setting.name}"
+    return reading.text if reading.statement != "number" else f"space group {reading.text}"
+
+
+def _silent() -> SpaceGroupStatementError:
+    return SpaceGroupStatementError(
         "the file does not state its space group",
         "no operations, no Hall symbol, no H-M symbol, no number",
         "a CIF lists the atoms of an asymmetric unit, which means nothing without the operations",
-        f"{_REMEDY}; where all atoms of the cell are listed, state P 1",
+        f"{REMEDY}; where all atoms of the cell are listed, state P 1",
     )
-
-
-def _parse_operations(texts: tuple[str, ...]) -> list[gemmi.Op]:
-    import gemmi
-
-    operations = []
-    for text in texts:
-        try:
-            operations.append(gemmi.Op(text).wrap())
-        except RuntimeError as error:
-            raise SpaceGroupStatementError(
-                "a symmetry operation cannot be read",
-                repr(text),
-                "such as -y,x-y,z+1/3",
-                "correct the operation",
-            ) from error
-    unique = {operation.triplet(): operation for operation in operations}
-    return list(unique.values())
-
-
-def _from_hall(symbol: str) -> list[gemmi.Op]:
-    import gemmi
-
-    try:
-        return list(gemmi.symops_from_hall(symbol))
-    except (RuntimeError, ValueError) as error:
-        raise SpaceGroupStatementError(
-            "the Hall symbol cannot be read",
-            repr(symbol),
-            str(error),
-            "correct the symbol or list the operations",
-        ) from error
-
-
-def _named_settings(name: str) -> list[gemmi.SpaceGroup]:
-    """All settings an H-M symbol may mean: those of one number that share the symbol without its suffix."""
-    import gemmi
-
-    stem, _, suffix = name.partition(":")
-    words = stem.split()
-    if not suffix and len(words) > 1 and words[-1] in _SUFFIX_SETTINGS:
-        stem, suffix = " ".join(words[:-1]), _SUFFIX_SETTINGS[words[-1]]
-    found = gemmi.find_spacegroup_by_name(stem)
-    if found is None:
-        raise SpaceGroupStatementError(
-            "the H-M symbol is not known", repr(name), "a symbol of International Tables A", _REMEDY
-        )
-    settings = [
-        group for group in gemmi.spacegroup_table() if (group.number, group.hm) == (found.number, found.hm)
-    ]
-    chosen = [group for group in settings if group.ext == suffix.strip()]
-    return chosen or settings
-
-
-def _numbered_settings(number: str) -> list[gemmi.SpaceGroup]:
-    import gemmi
-
-    settings = [group for group in gemmi.spacegroup_table() if str(group.number) == number]
-    if not settings:
-        raise SpaceGroupStatementError(
-            "no space group has this number", number, "numbers are 1 to 230", _REMEDY
-        )
-    return settings
-
-
-def _setting(settings: list[gemmi.SpaceGroup], stated: str, lattice: FloatArray) -> gemmi.SpaceGroup:
-    """The one setting that fits the cell; more than one, or none, is an error that lists them."""
-    fitting = [group for group in settings if metric_misfit(_rotations(group), lattice) < CELL_METRIC]
-    if len(fitting) == 1:
-        return fitting[0]
-    listed = ", ".join(group.xhm() for group in (fitting or settings))
-    if not fitting:
-        raise SpaceGroupStatementError(
-            "the cell does not fit the stated space group",
-            f"{stated} ({listed}); cell {cell_text(lattice)}",
-            "the operations leave the cell unchanged",
-            "correct the cell or the space group",
-        )
-    raise SpaceGroupStatementError(
-        "the space group is stated without its setting",
-        f"{stated} may be {listed}",
-        "origin and axes decide where the atoms are; they are not guessed",
-        _REMEDY,
-    )
-
-
-def _check_against_name(operations: list[gemmi.Op], statements: Statements) -> None:
-    """Compare the listed operations with the named space group, where one is named and known."""
-    import gemmi
-
-    listed = gemmi.find_spacegroup_by_ops(gemmi.GroupOps(operations))
-    stem = statements.name.partition(":")[0]
-    named = gemmi.find_spacegroup_by_name(stem) if stem else None
-    if named is None:
-        return
-    same_type = listed is None or listed.number == named.number
-    # A shifted origin is not in the table; the number of point operations still tells two readings apart.
-    same_class = len({str(op.rot) for op in operations}) == len({str(op.rot) for op in named.operations()})
-    if not (same_type and same_class):
-        reading = listed.xhm() if listed is not None else "an unnamed setting"
-        raise SpaceGroupStatementError(
-            "the file contradicts itself about its space group",
-            f"{len(operations)} listed operations make {reading}; the H-M symbol is {statements.name}",
-            "operations and symbol belong to one space group",
-            "remove the statement that is wrong",
-        )
-
-
-def _rotations(group: gemmi.SpaceGroup) -> IntArray:
-    operations = list(group.operations().sym_ops)
-    return np.array([operation.rot for operation in operations], dtype=np.int64) // operations[0].DEN

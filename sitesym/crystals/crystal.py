@@ -12,8 +12,9 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.crystals.marks import Marks, checked_marks, kinds_of_atoms, marks_remarks, moment_texts
 from sitesym.crystals.species import SYMBOLS, Species, reduced_formula
-from sitesym.crystals.validation import check_structure
+from sitesym.crystals.validation import check_structure, fractional
 from sitesym.errors import CountMismatchError, NotPeriodicError, ReadingError
 
 if TYPE_CHECKING:
@@ -37,8 +38,10 @@ class Crystal:
 
     ``lattice``: (3, 3), rows a, b, c in angstrom, in the file's Cartesian axes. ``positions_frac``: (n, 3).
     ``species`` and ``labels``: one for each site. ``frame_note`` says where the Cartesian axes come from,
-    ``declared_space_group`` what the file claims (empty where it claims nothing), ``remarks`` what was
-    noticed or changed on reading.
+    ``declared_space_group`` what the file claims (empty where it claims nothing) and
+    ``declared_operations`` how many operations that is in the file's cell, ``remarks`` what was noticed or
+    changed on reading. ``marks``: what the file says of its atoms beside element and occupancy, one text for
+    each atom; those named in ``distinguish`` tell atoms apart.
 
     Raises one of the ReadingError classes, see `sitesym.crystals.validation`.
     """
@@ -51,19 +54,23 @@ class Crystal:
     frame_note: str = FRAME_OF_VECTORS
     declared_space_group: str = ""
     remarks: tuple[str, ...] = ()
+    declared_operations: int = 0
+    marks: Marks = field(default_factory=dict)
+    distinguish: tuple[str, ...] = ()
 
     def __post_init__(self) -> None:
         object.__setattr__(self, "lattice", frozen(np.asarray(self.lattice, dtype=np.float64)))
         object.__setattr__(self, "positions_frac", frozen(np.asarray(self.positions_frac, dtype=np.float64)))
         if not self.labels:
             object.__setattr__(self, "labels", numbered_labels(self.species))
-        if len(self.labels) != len(self.species):
-            raise CountMismatchError(
-                "labels and atoms differ in number",
-                f"{len(self.labels)} labels, {len(self.species)} atoms",
-                "one label for each atom",
-                "correct the labels or leave them out",
-            )
+        for name, texts in {"label": self.labels, **self.marks}.items():
+            if len(texts) != len(self.species):
+                raise CountMismatchError(
+                    f"{name}s and atoms differ in number",
+                    f"{len(texts)} {name}s, {len(self.species)} atoms",
+                    f"one {name} for each atom",
+                    f"correct the {name}s or leave them out",
+                )
         check_structure(self.lattice, self.positions_frac, self.labels)
 
     @classmethod
@@ -78,7 +85,8 @@ class Crystal:
 
     @classmethod
     def from_ase(cls, atoms: Atoms, source: Source | None = None, remarks: tuple[str, ...] = ()) -> Crystal:
-        """From ASE Atoms, periodic in all three directions; partial occupancies in ``atoms.info`` are kept.
+        """From ASE Atoms, periodic in all three directions; partial occupancies in ``atoms.info`` are kept,
+        and magnetic moments (Bohr magnetons, in the axes of ASE) become marks.
 
         Raises NotPeriodicError and the errors of validation.
         """
@@ -91,14 +99,29 @@ class Crystal:
             )
         lattice = np.asarray(atoms.cell.array, dtype=np.float64)
         positions = np.asarray(atoms.positions, dtype=np.float64)
-        fractional = _fractional(lattice, positions)
         return cls(
-            lattice, fractional, _ase_species(atoms), source=source or Source(format="ase"), remarks=remarks
+            lattice,
+            fractional(lattice, positions),
+            _ase_species(atoms),
+            source=source or Source(format="ase"),
+            remarks=remarks,
+            marks=_ase_marks(atoms),
         )
 
     def with_remarks(self, *remarks: str) -> Crystal:
         """The same crystal with more remarks."""
         return replace(self, remarks=self.remarks + remarks)
+
+    def distinguished_by(self, *names: str) -> Crystal:
+        """The same crystal with atoms told apart by these marks as well; remarks say which marks go unused.
+
+        Names: isotope, oxidation, label, moment. Raises UsageError for any other.
+        """
+        distinguish = checked_marks(names)
+        unused = marks_remarks(self.marks, distinguish)
+        if not unused and distinguish == self.distinguish:
+            return self
+        return replace(self, distinguish=distinguish, remarks=(*self.remarks, *unused))
 
     def __len__(self) -> int:
         return len(self.species)
@@ -110,9 +133,8 @@ class Crystal:
 
     @cached_property
     def species_indices(self) -> IntArray:
-        """(n,) whole numbers from 1, equal for sites that hold the same species."""
-        kinds = {kind: index for index, kind in enumerate(dict.fromkeys(self.species), start=1)}
-        return frozen(np.array([kinds[kind] for kind in self.species], dtype=np.int64))
+        """(n,) whole numbers from 1, equal for sites with the same species and distinguishing marks."""
+        return kinds_of_atoms(self.species, self.marks, self.distinguish)
 
     @property
     def is_ordered(self) -> bool:
@@ -151,17 +173,20 @@ def _symbol(number: int) -> str:
     return SYMBOLS[int(number)]
 
 
-def _fractional(lattice: FloatArray, positions_cart: FloatArray) -> FloatArray:
-    """Fractional coordinates; a cell that cannot be inverted is left for validation to name."""
-    if not np.isfinite(lattice).all() or abs(np.linalg.det(lattice)) == 0.0:
-        return positions_cart
-    return np.asarray(np.linalg.solve(lattice.T, positions_cart.T).T, dtype=np.float64)
+def _ase_marks(atoms: Atoms) -> Marks:
+    """Moments the file gives: those of a calculation, else those it started from."""
+    calculated = atoms.calc.results.get("magmoms") if atoms.calc is not None else None
+    moments = calculated if calculated is not None else atoms.arrays.get("initial_magmoms")
+    if moments is None or len(moments) != len(atoms):
+        return {}
+    texts = moment_texts(np.asarray(moments))
+    return {"moment": texts} if any(texts) else {}
 
 
 def _ase_species(atoms: Atoms) -> tuple[Species, ...]:
     occupancies = atoms.info.get("occupancy")
     if occupancies is None:
-        return tuple(Species.pure(_symbol(number)) for number in atoms.numbers)
+        return tuple(Species.pure(_symbol(number)) for number in atoms.numbers.tolist())
     kinds = [str(kind) for kind in atoms.arrays.get("spacegroup_kinds", ())]
     table = {str(kind): Species.mixed(parts) for kind, parts in occupancies.items()}
     if len(kinds) != len(atoms) or not set(kinds) <= set(table):

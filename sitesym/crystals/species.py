@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from functools import lru_cache
 from math import gcd
 from typing import Final
 
@@ -20,6 +21,8 @@ _SYMBOLS_IN_ORDER: Final = """
 #: Element symbols by atomic number; number 0 is no element.
 SYMBOLS: Final = tuple(_SYMBOLS_IN_ORDER.split())
 ATOMIC_NUMBERS: Final = {symbol: number for number, symbol in enumerate(SYMBOLS) if number}
+#: Symbols of isotopes that stand for atoms of an element.
+ISOTOPES: Final = {"D": "H", "T": "H"}
 _NOBLE_GASES: Final = (0, 2, 10, 18, 36, 54, 86, 118)
 
 
@@ -34,8 +37,8 @@ class Species:
 
     @classmethod
     def pure(cls, element: str) -> Species:
-        """One element that fills the site."""
-        return cls.mixed({element: 1.0})
+        """One element that fills the site. Raises ReadingError for an unknown element."""
+        return _pure(element)
 
     @classmethod
     def mixed(cls, occupancies: Mapping[str, float]) -> Species:
@@ -69,6 +72,11 @@ class Species:
 
     def __str__(self) -> str:
         return _counts_text(dict(self.parts))
+
+
+@lru_cache(maxsize=len(SYMBOLS))
+def _pure(element: str) -> Species:
+    return Species.mixed({element: 1.0})
 
 
 def _occupancy_error(value: str) -> OccupancyError:

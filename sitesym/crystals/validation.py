@@ -10,7 +10,7 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from sitesym.arrays import FloatArray
+from sitesym.arrays import FloatArray, IntArray
 from sitesym.errors import (
     CountMismatchError,
     EmptyStructureError,
@@ -31,9 +31,9 @@ def check_structure(lattice: FloatArray, positions_frac: FloatArray, labels: Seq
     OverlappingAtomsError.
     """
     _check_shapes(lattice, positions_frac, len(labels))
-    _check_finite(lattice, [f"cell vector {name}" for name in "abc"])
-    _check_finite(positions_frac, [f"the position of {label}" for label in labels])
-    _check_cell(lattice)
+    _check_finite(lattice, "cell vector", "abc")
+    _check_finite(positions_frac, "the position of", labels)
+    check_cell(lattice)
     _check_distances(lattice, positions_frac, labels)
 
 
@@ -44,29 +44,47 @@ def plane_spacings(lattice: FloatArray) -> FloatArray:
     return spacings
 
 
+def fractional(lattice: FloatArray, positions_cart: FloatArray) -> FloatArray:
+    """Fractional coordinates (n, 3) of Cartesian ones; a cell that cannot be inverted is left for
+    `check_structure` to name."""
+    if not np.isfinite(lattice).all() or abs(np.linalg.det(lattice)) == 0.0:
+        return positions_cart
+    return np.asarray(np.linalg.solve(lattice.T, positions_cart.T).T, dtype=np.float64)
+
+
+def close_pairs(
+    lattice: FloatArray, positions_frac: FloatArray, within_angstrom: float
+) -> tuple[IntArray, FloatArray]:
+    """Pairs of atoms (m, 2) nearer than a limit and their distances (m,) in angstrom, over periodic images.
+
+    The limit must be below half the spacings of the lattice planes: then two atoms have at most one such
+    vector between their images, the one of smallest fractional components.
+    """
+    from scipy.spatial import cKDTree
+
+    wrapped: FloatArray = positions_frac - np.floor(positions_frac)
+    wrapped[wrapped >= 1.0] = 0.0
+    # A vector this long in angstrom is at most this long in fractional coordinates.
+    radius = within_angstrom * float(np.linalg.norm(np.linalg.inv(lattice), 2))
+    pairs = cKDTree(wrapped, boxsize=1.0).query_pairs(radius, output_type="ndarray")
+    difference = wrapped[pairs[:, 0]] - wrapped[pairs[:, 1]]
+    distances = np.linalg.norm((difference - np.rint(difference)) @ lattice, axis=1)
+    near = distances < within_angstrom
+    return pairs[near], distances[near]
+
+
 def closest_pair(
     lattice: FloatArray, positions_frac: FloatArray, within_angstrom: float
 ) -> tuple[int, int, float] | None:
     """Indices and distance (angstrom) of the closest two atoms nearer than a limit, periodic images included.
 
-    None when there is no such pair. The limit must be smaller than the spacings of the lattice planes.
+    None when there is no such pair. The limit must be below half the spacings of the lattice planes.
     """
-    from scipy.spatial import cKDTree
-
-    wrapped: FloatArray = positions_frac - np.floor(positions_frac)
-    index = np.arange(len(wrapped))
-    for axis, margin in enumerate(within_angstrom / plane_spacings(lattice)):
-        # An atom this close to the lower face has a neighbour, if any, beyond the upper one.
-        at_face = wrapped[:, axis] < margin
-        wrapped = np.vstack([wrapped, wrapped[at_face] + np.eye(3)[axis]])
-        index = np.concatenate([index, index[at_face]])
-    cartesian = wrapped @ lattice
-    pairs = cKDTree(cartesian).query_pairs(within_angstrom, output_type="ndarray")
+    pairs, distances = close_pairs(lattice, positions_frac, within_angstrom)
     if len(pairs) == 0:
         return None
-    distances = np.linalg.norm(cartesian[pairs[:, 0]] - cartesian[pairs[:, 1]], axis=1)
     nearest = int(np.argmin(distances))
-    first, second = sorted(int(index[atom]) for atom in pairs[nearest])
+    first, second = sorted(pairs[nearest].tolist())
     return first, second, float(distances[nearest])
 
 
@@ -94,18 +112,19 @@ def _check_shapes(lattice: FloatArray, positions_frac: FloatArray, count: int) -
         )
 
 
-def _check_finite(rows: FloatArray, names: Sequence[str]) -> None:
+def _check_finite(rows: FloatArray, what: str, names: Sequence[str]) -> None:
     if np.isfinite(rows).all():
         return
     faulty = next(number for number, row in enumerate(rows) if not np.isfinite(row).all())
-    value = f"{names[faulty]} is {' '.join(f'{entry:g}' for entry in rows[faulty])}"
+    value = f"{what} {names[faulty]} is {' '.join(f'{entry:g}' for entry in rows[faulty])}"
     rule, step = "all coordinates and cell entries are finite numbers", "correct the value in the file"
     if np.isnan(rows).any():
         raise NotANumberError("a value is not a number", value, rule, step)
     raise InfiniteValueError("a value is infinite", value, rule, step)
 
 
-def _check_cell(lattice: FloatArray) -> None:
+def check_cell(lattice: FloatArray) -> None:
+    """The cell (rows, angstrom) has a volume and sensible lengths; else SingularCellError."""
     edges = np.linalg.norm(lattice, axis=1)
     text = f"edges {' '.join(f'{edge:.6g}' for edge in edges)} angstrom"
     if edges.max() > LARGEST_CELL_EDGE_ANGSTROM:
@@ -121,11 +140,11 @@ def _check_cell(lattice: FloatArray) -> None:
             "the cell vectors span no volume", text, "a, b and c are not in one plane", "correct the cell"
         )
     spacings = plane_spacings(lattice)
-    if spacings.min() <= SMALLEST_DISTANCE_ANGSTROM:
+    if spacings.min() <= 2.0 * SMALLEST_DISTANCE_ANGSTROM:
         raise SingularCellError(
             "the cell is too flat to hold atoms",
             f"{text}; lattice planes {' '.join(f'{spacing:.3g}' for spacing in spacings)} angstrom apart",
-            f"lattice planes are more than {SMALLEST_DISTANCE_ANGSTROM:g} angstrom apart",
+            f"lattice planes are more than {2.0 * SMALLEST_DISTANCE_ANGSTROM:g} angstrom apart",
             "look at the unit of length, or reduce the cell",
         )
 

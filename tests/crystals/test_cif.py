@@ -209,7 +209,7 @@ def test_uncertainties_latin_text_charges_and_deuterium_are_read(read):
     )  # fmt: skip
     assert [str(kind) for kind in crystal.species] == ["Ti", "O", "H"]
     assert crystal.positions_frac[2, 0] == pytest.approx(0.707)
-    assert crystal.remarks == ("D counts as hydrogen",)
+    assert crystal.remarks == ("D counts as hydrogen; distinguish isotope tells isotopes apart",)
 
 
 def test_equal_labels_are_told_apart_and_the_change_is_reported(read):

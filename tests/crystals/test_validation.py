@@ -70,7 +70,7 @@ def test_closest_pair_agrees_with_all_pairs_over_all_neighbouring_images():
     for _ in range(40):
         lattice = np.eye(3) * 3.0 + rng.normal(scale=0.7, size=(3, 3))
         positions = rng.uniform(-2, 2, size=(12, 3))
-        limit = min(0.6, 0.9 * float(plane_spacings(lattice).min()))
+        limit = min(0.6, 0.45 * float(plane_spacings(lattice).min()))
         wrapped = positions % 1.0
         vectors = wrapped[:, None, None, :] - wrapped[None, :, None, :] + shifts
         distances = np.linalg.norm(vectors @ lattice, axis=-1)
