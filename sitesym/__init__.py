@@ -15,6 +15,7 @@ import importlib
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from sitesym.audit import AuditResult, Measurement, audit_tensor
     from sitesym.crystals import (
         Axes,
         Crystal,
@@ -42,6 +43,7 @@ if TYPE_CHECKING:
 __version__ = "0.1.0"
 
 _HOMES = {
+    "sitesym.audit": ("AuditResult", "Measurement", "audit_tensor"),
     "sitesym.crystals": (
         "Axes", "Crystal", "CrystalSymmetry", "Site", "axes_for", "find_symmetry", "read_crystal",
         "read_crystals",
@@ -58,10 +60,12 @@ _HOME_OF = {name: home for home, names in _HOMES.items() for name in names}
 
 __all__ = [
     "AllowedForm",
+    "AuditResult",
     "Axes",
     "CharacterTable",
     "Crystal",
     "CrystalSymmetry",
+    "Measurement",
     "PointGroup",
     "Site",
     "SitesymError",
@@ -69,6 +73,7 @@ __all__ = [
     "TensorSpace",
     "all_kinds",
     "allowed_form",
+    "audit_tensor",
     "axes_for",
     "character_table",
     "find_symmetry",

@@ -13,6 +13,8 @@ from sitesym.groups import PointGroup
 Verdict: TypeAlias = Literal["consistent", "consistent-otherwise", "violates", "cannot-tell", "no-constraint"]
 VERDICTS: Final = ("consistent", "consistent-otherwise", "violates", "cannot-tell", "no-constraint")
 
+Cause: TypeAlias = Literal["", "reading", "slip", "crystal", "index-symmetry", "unexplained"]
+
 
 @dataclass(frozen=True)
 class Residual:
@@ -167,7 +169,8 @@ class AuditResult:
 
     ``stated``: the reading as stated (None where order or axes are unknown). ``best``: the reading that
     explains the tensor, or the slip; None when nothing does. ``rivals``: others that do about as well.
-    ``undetected``: changes of axes, order, layout or factor that leave the tensor as obedient as it is:
+    ``cause``: what the verdict is put down to: another reading, a slip, a crystal of another class, broken index
+    symmetry, nothing found, or '' where nothing is wrong. ``undetected``: changes of axes, order, layout or factor that leave the tensor as obedient as it is:
     symmetry cannot exclude them. ``message``: two lines, the verdict and what to do.
     """
 
@@ -177,6 +180,7 @@ class AuditResult:
     verdict: Verdict
     message: str
     index_symmetry: IndexFinding
+    cause: Cause = ""
     stated: Reading | None = None
     best: Reading | None = None
     rivals: tuple[Reading, ...] = ()

@@ -1,0 +1,117 @@
+"""Neumann's principle as two subspaces: what a group allows of the arrays of one kind, and the rest.
+
+In the orthonormal metric the nearest allowed tensor is the projection onto the allowed subspace, and the
+residual is the length of what is left. Source: F. E. Neumann, Vorlesungen ueber die Theorie der Elastizitaet
+(1885); J. F. Nye, Physical Properties of Crystals (1957).
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from sitesym.arrays import FloatArray, frozen
+from sitesym.audit.arrayspace import ArraySpace, array_space
+from sitesym.groups import PointGroup
+from sitesym.groups.normaliser import equivalent_turns
+from sitesym.tensors import TensorKind, TensorSpace
+from sitesym.tolerances import SAME_MATRIX
+
+
+@dataclass(frozen=True, eq=False)
+class Subspaces:
+    """Arrays of one kind under one group, in the Cartesian axes of that group.
+
+    ``allowed`` (k, n): orthonormal rows spanning what the group allows. ``constraints``: how many independent
+    numbers of the index-symmetric tensor must vanish.
+    """
+
+    space: ArraySpace
+    group: PointGroup
+    allowed: FloatArray
+    constraints: int
+
+    @property
+    def independent(self) -> int:
+        """Number of independent components."""
+        return len(self.allowed)
+
+    def forbidden_part(self, coordinates: FloatArray) -> FloatArray:
+        """What is left of coordinates (n,) or (..., n, m) without their allowed part."""
+        rest: FloatArray = coordinates - self.allowed.T @ (self.allowed @ coordinates)
+        return rest
+
+
+@lru_cache(maxsize=512)
+def subspaces(kind: TensorKind, group: PointGroup) -> Subspaces:
+    """The allowed arrays of a kind in a group, by averaging over its elements."""
+    space = array_space(kind)
+    basis = space.index_basis
+    mean = np.zeros((len(basis), len(basis)))
+    signs = element_signs(kind, group)
+    proper = group.rotations_cart * group.determinants[:, None, None]
+    for rotation, sign in zip(proper, signs, strict=True):
+        mean += sign * (basis @ space.rotated(rotation[None], basis.T)[0]) / group.order
+    values, vectors = np.linalg.eigh((mean + mean.T) / 2.0)
+    allowed = vectors[:, values > 0.5].T @ basis
+    return Subspaces(space, group, frozen(allowed), len(basis) - len(allowed))
+
+
+def element_signs(kind: TensorKind, group: PointGroup) -> FloatArray:
+    """Sign by which each element acts beyond its proper part, shape (order,)."""
+    inversion = group.determinants.astype(np.float64) ** kind.rank
+    signs: FloatArray = inversion * TensorSpace.of(kind).signs(group)
+    return signs
+
+
+@lru_cache(maxsize=512)
+def equivalent_actions(kind: TensorKind, group: PointGroup) -> FloatArray:
+    """What equivalent choices of axes do to the allowed coefficients, the identity first, shape (m, k, k).
+
+    ``group`` in the standard orientation. The turns of `turns_of_normaliser`, each also with the opposite
+    hand.
+    """
+    spaces = subspaces(kind, group)
+    turns = np.array([np.eye(3), *turns_of_normaliser(group)])
+    moved = spaces.space.rotated(turns, spaces.allowed.T)
+    actions = spaces.allowed @ moved
+    return frozen(actions if inversion_sign(kind) > 0 else np.concatenate([actions, -actions]))
+
+
+def inversion_sign(kind: TensorKind) -> int:
+    """Sign a tensor of this kind takes when the hand of the axes changes: -1 for piezoelectricity."""
+    return -1 if (kind.rank + int(kind.axial)) % 2 else 1
+
+
+@lru_cache(maxsize=512)
+def turns_of_normaliser(group: PointGroup) -> tuple[FloatArray, ...]:
+    """Turns (3, 3) that map a group in the standard orientation onto itself and are none of its elements.
+
+    Besides those of the cube and the hexagonal prism: 45 degrees about z (422, 4mm, 4/mmm) and 30 degrees
+    (622, 6mm, 6/mmm), where the twofold axes or mirrors of two sorts change places.
+    """
+    finer = (about_z(45.0), about_z(30.0))
+    return (*equivalent_turns(group), *(turn for turn in finer if normalises(group, turn)))
+
+
+@lru_cache(maxsize=512)
+def is_continuous(group: PointGroup) -> bool:
+    """Whether turns by any angle about some axis x, y or z map the group onto itself."""
+    arbitrary = about_z(17.0)
+    turns = [arbitrary[np.ix_(cycle, cycle)] for cycle in ([0, 1, 2], [1, 2, 0], [2, 0, 1])]
+    return any(normalises(group, turn) for turn in turns)
+
+
+def normalises(group: PointGroup, turn: FloatArray, within: float = SAME_MATRIX) -> bool:
+    """Whether a turn maps the operations of a group onto themselves, entries equal ``within`` so much."""
+    images = turn @ group.rotations_cart @ turn.T
+    distance = np.abs(images[:, None] - group.rotations_cart[None]).max(axis=(2, 3))
+    return bool((distance.min(axis=1) < within).all())
+
+
+def about_z(degrees: float) -> FloatArray:
+    """Turn of axes by an angle about z, new axes as rows."""
+    cosine, sine = np.cos(np.radians(degrees)), np.sin(np.radians(degrees))
+    return np.array([[cosine, sine, 0.0], [-sine, cosine, 0.0], [0.0, 0.0, 1.0]])

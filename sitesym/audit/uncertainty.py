@@ -1,0 +1,147 @@
+"""What counts as noise: a relative level, stated standard uncertainties, and the rounding of printed digits."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from sitesym.arrays import FloatArray
+from sitesym.audit.layouts import contracted
+from sitesym.audit.measurement import Layout, Measurement
+from sitesym.audit.neumann import Subspaces
+from sitesym.audit.orders import Order
+from sitesym.audit.result import Residual
+
+#: A tensor with known uncertainties obeys when chance gives so large a chi-squared at least this often.
+SMALLEST_P: Final = 0.001
+
+#: A printed number stands for an interval; its error has the variance step^2 / 12. The tolerance allows this
+#: many standard
+#: deviations of all of them together.
+_ROUNDING_DEVIATIONS = 3.0
+#: An uncertainty stated as zero counts as this fraction of the largest entry: no weight can be infinite.
+_SMALLEST_SIGMA = 1e-6
+#: Rounding of the computer's numbers, relative to the tensor.
+_NUMERICAL = 1e-9
+#: Residuals beyond so many standard uncertainties of the whole tensor need no closer look.
+_SCREENING_DEVIATIONS = 3.0
+#: A tensor shorter than so many standard uncertainties of it could be noise altogether.
+_DROWNED_DEVIATIONS = 2.0
+#: A single entry may deviate by so many of its standard uncertainties.
+_ENTRY_DEVIATIONS = 3.0
+
+
+@dataclass(frozen=True, eq=False)
+class Noise:
+    """Noise of one reading of a measurement, over the entries of the contracted array, shape (n,).
+
+    ``relative``: level relative to the length of the tensor, used where ``sigma`` is None. ``sigma`` and
+    ``step``: per entry, in the unit of the entries.
+    """
+
+    relative: float
+    sigma: FloatArray | None
+    step: FloatArray | None
+
+    def tolerance(self, spaces: Subspaces, length: float) -> float:
+        """Largest residual that noise may leave, for a tensor of this length, both in the orthonormal metric.
+
+        With known uncertainties a bound for screening only: the verdict is that of `chi_squared`.
+        """
+        share = spaces.constraints / max(spaces.constraints + spaces.independent, 1)
+        square = (_NUMERICAL * length) ** 2
+        if self.step is not None:
+            rounding = float(((spaces.space.weights * self.step) ** 2).sum()) / 12.0
+            square += _ROUNDING_DEVIATIONS**2 * rounding * share
+        if self.sigma is None:
+            # Where everything must vanish the tensor sets no scale for its own noise.
+            square += (self.relative * length) ** 2 if spaces.independent else 0.0
+        else:
+            variance = float(((spaces.space.weights * self.sigma) ** 2).sum())
+            square += _SCREENING_DEVIATIONS**2 * variance
+        return float(np.sqrt(square))
+
+    def drowns(self, spaces: Subspaces, coordinates: FloatArray) -> bool:
+        """Whether the whole tensor could be noise."""
+        weights = spaces.space.weights
+        square = np.zeros(len(weights))
+        if self.sigma is not None:
+            square = square + (weights * self.sigma) ** 2
+        if self.step is not None:
+            square = square + (weights * self.step) ** 2 / 12.0
+        return float(np.linalg.norm(coordinates)) <= _DROWNED_DEVIATIONS * float(np.sqrt(square.sum()))
+
+    def entry_tolerance(self, spaces: Subspaces, length: float) -> FloatArray:
+        """Largest deviation of each entry from its expected value that is no finding, shape (n,)."""
+        weights = spaces.space.weights
+        if self.sigma is not None:
+            tolerance = _ENTRY_DEVIATIONS * self.sigma
+        else:
+            share = _ENTRY_DEVIATIONS * self.relative * length / np.sqrt(spaces.space.size)
+            tolerance = min(share, self.relative * length) / weights
+        if self.step is not None:
+            tolerance = tolerance + self.step
+        floored: FloatArray = tolerance + _NUMERICAL * length / weights
+        return floored
+
+
+def noise_of(
+    measurement: Measurement, layout: Layout, order: Order, divisors: FloatArray, relative: float
+) -> Noise:
+    """The noise of a reading; ``divisors`` (n,) are what its entries were divided by."""
+    arrays: list[FloatArray | None] = []
+    for value in (measurement.sigma, measurement.rounding):
+        if value is None:
+            arrays.append(None)
+        else:
+            full = np.broadcast_to(np.asarray(value, dtype=np.float64), measurement.values.shape)
+            arrays.append(contracted(measurement.kind, full, layout, order).reshape(-1) / divisors)
+    return Noise(relative, arrays[0], arrays[1])
+
+
+def judged(
+    noise: Noise, spaces: Subspaces, coordinates: FloatArray, to_group_axes: FloatArray
+) -> Residual:
+    """The residual of a tensor with coordinates (n,) in its own axes; the rotation (3, 3) leads to the group's."""
+    moved = spaces.space.rotated(to_group_axes[None], coordinates[:, None])[0, :, 0]
+    absolute = float(np.linalg.norm(spaces.forbidden_part(moved)))
+    length = float(np.linalg.norm(coordinates))
+    relative = absolute / length if length else 0.0
+    tolerance = noise.tolerance(spaces, length)
+    if noise.sigma is None:
+        return Residual(absolute, relative, tolerance, absolute <= tolerance)
+    chi2, dof = chi_squared(noise, spaces, coordinates, to_group_axes)
+    p_value = upper_tail(chi2, dof)
+    return Residual(absolute, relative, tolerance, p_value >= SMALLEST_P, chi2, dof, p_value)
+
+
+def chi_squared(
+    noise: Noise, spaces: Subspaces, coordinates: FloatArray, to_group_axes: FloatArray
+) -> tuple[float, int]:
+    """Chi-squared of the best allowed tensor by least squares with the stated uncertainties, and its degrees
+    of freedom.
+
+    Entries that index symmetry makes equal are one number written twice and count once.
+    """
+    space = spaces.space
+    design = space.rotated(to_group_axes.T[None], spaces.allowed.T)[0]
+    basis = space.index_basis
+    sigma = np.zeros(space.size) if noise.sigma is None else noise.sigma
+    step = np.zeros(space.size) if noise.step is None else noise.step
+    spread = space.weights * np.sqrt(sigma**2 + step**2 / 12.0)
+    spread = np.maximum(spread, _SMALLEST_SIGMA * float(np.abs(coordinates).max(initial=0.0)))
+    # A component that stands in c entries has weight 1/sqrt(c) in each: c = 1 / (sum of fourth powers).
+    scale = np.sqrt((basis**2) @ spread**2 / (basis**4).sum(axis=1))
+    scale = np.where(scale > 0.0, scale, 1.0)
+    left, right = (basis @ design) / scale[:, None], (basis @ coordinates) / scale
+    fitted = left @ np.linalg.lstsq(left, right, rcond=None)[0] if spaces.independent else 0.0
+    return float(((right - fitted) ** 2).sum()), spaces.constraints
+
+
+def upper_tail(chi2: float, dof: int) -> float:
+    """How often chance alone gives a chi-squared at least this large."""
+    from scipy.special import chdtrc
+
+    return float(chdtrc(dof, chi2)) if dof else 1.0

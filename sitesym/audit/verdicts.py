@@ -1,0 +1,157 @@
+"""From all residuals to a verdict: what is consistent, what explains a failure, what stays open."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from sitesym.audit.other_crystal import OtherCrystal, other_crystal
+from sitesym.audit.result import Cause, Reading, Verdict
+from sitesym.audit.rotation_search import best_rotation
+from sitesym.audit.search import (
+    EARNED,
+    RIVAL,
+    Candidate,
+    Field,
+    accepted,
+    candidates,
+    chance,
+    judged_reading,
+    residual_of,
+)
+from sitesym.audit.slips import Repair, repairs
+from sitesym.audit.turns import smallest_turn, turn_of
+
+#: A reading is preferred to a slip unless the slip is this much (in the logarithm) more likely.
+_PREFERENCE = 1.0
+_MOST_SLIPS = 6
+
+
+@dataclass(frozen=True, eq=False)
+class Finding:
+    """A verdict with the readings behind it. ``crystal``: the class the tensor looks like, if that explains."""
+
+    verdict: Verdict
+    cause: Cause = ""
+    stated: Reading | None = None
+    best: Reading | None = None
+    rivals: tuple[Reading, ...] = ()
+    crystal: OtherCrystal | None = None
+
+
+def settle(field: Field, explain: bool) -> Finding:
+    """The verdict on a tensor that is long enough to be judged, in a crystal that constrains it."""
+    first = field.candidate(0, 0)
+    if not is_stated(field):
+        return _unstated(field)
+    stated = judged_reading(field, first)
+    if accepted(field, first):
+        return Finding("consistent", "", stated, stated)
+    if not explain:
+        return Finding("violates", "unexplained", stated)
+    return replace(_explained(field, candidates(field)), stated=stated)
+
+
+def is_stated(field: Field) -> bool:
+    """Whether axes and, where the array has contracted pairs, their order were stated."""
+    measurement = field.measurement
+    ordered = measurement.order is not None or len({v.order for v in field.variants}) == 1
+    return ordered and not (isinstance(measurement.axes, str) and measurement.axes == "unknown")
+
+
+def _unstated(field: Field) -> Finding:
+    """Readings that contradict nothing stated come first; several different ones leave the answer open."""
+    fits = candidates(field)
+    compatible = [fit for fit in fits if not fit.departs]
+    if not compatible or compatible[0].score > fits[0].score + RIVAL:
+        return _explained(field, fits)
+    best, *others = compatible
+    rivals = tuple(judged_reading(field, o) for o in others if o.score <= best.score + RIVAL)
+    verdict: Verdict = "cannot-tell" if rivals else "consistent"
+    return Finding(verdict, "", None, judged_reading(field, best), rivals)
+
+
+def _explained(field: Field, fits: list[Candidate]) -> Finding:
+    """The most likely explanation of a failure."""
+    reading = fits[0] if fits and fits[0].score <= EARNED else None
+    slips = _slips(field)
+    slip = slips[0] if slips and slips[0].score <= EARNED else None
+    readings = tuple(judged_reading(field, fit) for fit in fits)
+    if reading is not None and (slip is None or reading.score <= slip.score + _PREFERENCE):
+        near = tuple(r for r in readings[1:] if r.score <= reading.score + RIVAL)
+        return Finding("consistent-otherwise", "reading", None, readings[0], near)
+    crystal = other_crystal(field)
+    if crystal is not None and crystal.score > EARNED:
+        crystal = None
+    if slip is not None and (crystal is None or slip.score < crystal.score):
+        near = tuple(s for s in slips[1:] if s.score <= slip.score + RIVAL)[:_MOST_SLIPS]
+        return Finding("violates", "slip", None, slip, (*near, *readings[:1]), crystal)
+    turned = _turned(field)
+    if turned is not None and turned.score <= EARNED and (crystal is None or turned.score <= crystal.score):
+        return Finding("consistent-otherwise", "reading", None, turned, readings[:1])
+    rivals = (*readings[:1], *([turned] if turned is not None else []), *slips[:1])
+    if crystal is not None:
+        return Finding("violates", "crystal", None, None, rivals, crystal)
+    return Finding("violates", "unexplained", None, None, rivals)
+
+
+def _slips(field: Field) -> list[Reading]:
+    """Slips in the axes that are not turned, read as stated, the most likely first."""
+    plain = [o for o in range(len(field.orientations)) if field.orientations[o].is_plain]
+    found: list[tuple[Repair, Candidate]] = []
+    for place in plain:
+        candidate = field.candidate(place, 0)
+        found.extend((repair, candidate) for repair in repairs(field, candidate))
+    found.sort(key=lambda pair: pair[0].score)
+    distinct: dict[tuple[str, tuple[str, ...], int], Reading] = {}
+    for repair, candidate in found:
+        key = (repair.slip.sort, repair.slip.entries, repair.slip.exponent)
+        if key not in distinct and len(distinct) < 4 * _MOST_SLIPS:
+            distinct[key] = _repaired(field, repair, candidate)
+    return list(distinct.values())
+
+
+def _repaired(field: Field, repair: Repair, candidate: Candidate) -> Reading:
+    reading = judged_reading(field, candidate)
+    relative = repair.residual / float(np.linalg.norm(candidate.variant.coordinates))
+    residual = replace(
+        reading.residual,
+        absolute=repair.residual,
+        relative=relative,
+        within=True,
+        chi2=None,
+        dof=None,
+        p_value=None,
+    )
+    return replace(
+        reading, residual=residual, choices=repair.choices, score=repair.score, slip=repair.slip, joined=()
+    )
+
+
+def _turned(field: Field) -> Reading | None:
+    """The reading in axes turned by a free rotation, where it brings the tensor within tolerance."""
+    variant = field.variants[0]
+    found = best_rotation(field.spaces, variant.coordinates)
+    if found.residual > field.tolerances[0]:
+        return None
+    base = field.orientations[0].rotation
+    rotation = smallest_turn(found.rotation.T @ field.frames.standard_from_file, base, field.frames)
+    residual = residual_of(field, rotation, variant)
+    if not residual.within:
+        return None
+    free = max(field.spaces.constraints - found.effective, 0)
+    score = float(
+        np.log(found.choices) + chance(np.array(residual.relative), field.typical, field.floor(0), free)
+    )
+    return Reading(
+        "turned freely",
+        rotation,
+        variant.order,
+        variant.layout,
+        variant.factor,
+        residual,
+        found.choices,
+        score,
+        turn=turn_of(rotation, base, field.frames),
+    )
