@@ -37,6 +37,16 @@ class SpaceGroupSetting:
         return frozen(np.array([place[rotation.tobytes()] for rotation in self.rotations], dtype=np.int64))
 
     @cached_property
+    def has_inversion(self) -> bool:
+        """Whether some operation turns every direction round."""
+        return bool((self.point_rotations == -np.eye(3)).all(axis=(1, 2)).any())
+
+    @cached_property
+    def is_polar(self) -> bool:
+        """Whether a direction is left unchanged by all operations: the mean rotation is then not zero."""
+        return bool(self.point_rotations.sum(axis=0).any())
+
+    @cached_property
     def primitive_basis(self) -> FloatArray:
         """(3, 3) rows: vectors of a primitive cell in the basis of the conventional cell, right-handed."""
         centring = self.translations[self.point_indices == 0]

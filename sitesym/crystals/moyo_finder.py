@@ -15,7 +15,7 @@ from typing import Any
 
 import numpy as np
 
-from sitesym.arrays import frozen
+from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.found import FoundSymmetry, nearest_copies, orbit_multiplicities
 from sitesym.crystals.spglib_finder import setting
@@ -60,6 +60,16 @@ def hall_number_with_moyo(crystal: Crystal, tolerance_angstrom: float) -> tuple[
     with _warnings_kept():
         dataset = _dataset(crystal, tolerance_angstrom)
     return int(dataset.hall_number), float(dataset.symprec)
+
+
+def lattice_rotations(lattice: FloatArray, tolerance_angstrom: float) -> IntArray:
+    """(k, 3, 3) integer rotations that leave a primitive lattice (rows, angstrom) unchanged."""
+    import moyopy
+
+    point = moyopy.Cell(lattice.tolist(), [[0.0, 0.0, 0.0]], [1])
+    with _warnings_kept():
+        dataset = moyopy.MoyoDataset(point, symprec=tolerance_angstrom)
+    return np.array(dataset.operations.rotations, dtype=np.int64)
 
 
 def _dataset(crystal: Crystal, tolerance_angstrom: float) -> Any:

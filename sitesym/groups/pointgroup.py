@@ -25,6 +25,7 @@ from sitesym.groups.symbols import (
     generated,
     read_symbol,
 )
+from sitesym.tolerances import SAME_MATRIX
 
 
 @dataclass(frozen=True, eq=False)
@@ -185,7 +186,8 @@ class PointGroup:
     @property
     def has_inversion(self) -> bool:
         """Whether the inversion is an element, with or without time reversal."""
-        return any(e.improper and e.order == 1 for e in self.elements)
+        distance = np.abs(self.rotations_cart + np.eye(3)).max(axis=(1, 2))
+        return bool(distance.min() < SAME_MATRIX)
 
     @property
     def has_mirror(self) -> bool:
