@@ -18,7 +18,7 @@ from sitesym.groups.orientation import standard_rotation
 from sitesym.groups.pointgroup import PointGroup
 from sitesym.groups.rootsum import RootSum, integer
 from sitesym.groups.verify import Checks, verified
-from sitesym.tolerances import REPRESENTATION
+from sitesym.tolerances import REPRESENTATION, SAME_MATRIX
 
 
 @dataclass(frozen=True, eq=False)
@@ -71,11 +71,12 @@ def character_table(group: PointGroup, rotation: FloatArray | None = None) -> Ch
 
     ``rotation`` (3, 3) leads to the standard orientation; where it is not given, `standard_rotation` finds
     one. The matrices are written in that orientation. Raises SymmetryError if any check of the table fails,
-    and for a group with time reversal, AxesError if ``rotation`` is none.
+    if ``rotation`` leads elsewhere, or for a group with time reversal; AxesError if it is no rotation.
     """
     _require_unitary(group)
     matrix = standard_rotation(group) if rotation is None else np.asarray(rotation, dtype=np.float64)
     oriented = group.rotated(matrix)
+    _require_standard(oriented)
     characters = _exact_characters(group.abstract)
     labels = _labels(oriented, characters)
     irreps = [
@@ -99,6 +100,21 @@ def _require_unitary(group: PointGroup) -> None:
             value=f"{int(group.time_reversal.sum())} of {group.order} operations reverse time",
             rule="time reversal is antiunitary: such a group has corepresentations (E. P. Wigner 1959)",
             next_step="take the subgroup of the operations that do not reverse time",
+        )
+
+
+def _require_standard(oriented: PointGroup) -> None:
+    """Labels mean nothing elsewhere: the operations must be those of the symbol in its standard orientation."""
+    if oriented.system == "non-crystallographic":
+        return
+    standard = PointGroup.from_symbol(oriented.symbol).rotations_cart
+    distances = np.abs(oriented.rotations_cart[:, None] - standard).max(axis=(2, 3)).min(axis=1)
+    if distances.max() > SAME_MATRIX:
+        raise SymmetryError(
+            f"the rotation does not lead to the standard orientation of {oriented.symbol}",
+            value=f"{int((distances > SAME_MATRIX).sum())} of {oriented.order} operations lie elsewhere",
+            rule="labels refer to the standard orientation",
+            next_step="give the rotation that leads there, or none",
         )
 
 
@@ -133,18 +149,10 @@ def _labels(oriented: PointGroup, characters: tuple[tuple[RootSum, ...], ...]) -
     for letter, number, mark, _ in parts:
         if letter == "E":
             numbers_of_e.setdefault(mark, set()).add(number)
-    labels = [
+    return [
         f"{pair}{letter}{'' if letter == 'E' and len(numbers_of_e[mark]) == 1 else number or ''}{mark}"
         for letter, number, mark, pair in parts
     ]
-    if len(set(labels)) < len(labels):
-        raise SymmetryError(
-            f"labels do not tell the irreps of {oriented.symbol} apart",
-            value=" ".join(labels),
-            rule="labels refer to the standard orientation",
-            next_step="give the rotation that leads there, or none",
-        )
-    return labels
 
 
 def _numbered(characters: tuple[tuple[RootSum, ...], ...]) -> list[str]:

@@ -80,7 +80,7 @@ def test_characters_of_cyclic_and_of_all_groups_solve_the_class_algebra(symbol: 
 def test_the_prime_and_its_root_of_unity_have_what_the_method_needs() -> None:
     for exponent, order in ((12, 48), (6, 24), (1, 1), (2, 8)):
         prime = prime_for(exponent, order)
-        assert prime % exponent == 1 % prime
+        assert (prime - 1) % exponent == 0
         assert prime**2 > 4 * order
         root = primitive_root_of_unity(exponent, prime)
         assert [k for k in range(1, exponent + 1) if pow(root, k, prime) == 1] == [exponent]
