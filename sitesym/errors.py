@@ -6,6 +6,7 @@
     ├── ReadingError             a file that cannot be turned into a crystal
     │   ├── UnknownFormatError
     │   ├── FileTooLargeError
+    │   ├── UnsafePathError
     │   ├── EmptyStructureError
     │   ├── CountMismatchError
     │   ├── NotANumberError
@@ -88,6 +89,12 @@ class FileTooLargeError(ReadingError):
     """A file larger than the limit, as it is or once decompressed."""
 
     code = "too-large"
+
+
+class UnsafePathError(ReadingError):
+    """A member of an archive whose path leaves the archive, or that is a link."""
+
+    code = "unsafe-path"
 
 
 class EmptyStructureError(ReadingError):
