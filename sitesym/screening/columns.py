@@ -67,7 +67,7 @@ _BEFORE: Final = (
     Column("chiral_class", "bool", "whether the point group has no improper operation (11 classes)"),
     Column("chiral_space_group", "bool", "whether the mirror image has another space-group type (22 types)"),
     Column("polar", "bool", "whether a polar vector is left unchanged"),
-    Column("polar_axis", "text", "unit vector in the file's Cartesian axes, its sense open; or what is polar"),
+    Column("polar_axis", "text", "unit vector in the file's Cartesian axes, sense open; or what is polar"),
     Column("piezoelectric", "bool", "whether symmetry allows it"),
     Column("pyroelectric", "bool", "whether symmetry allows it"),
     Column("second_harmonic", "bool", "whether symmetry allows second-harmonic generation by dipoles"),
