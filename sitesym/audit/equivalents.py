@@ -27,16 +27,14 @@ def undetected_variants(field: Field, rotation: FloatArray, stated: int) -> tupl
     ``rotation`` (3, 3): the axes as rows in the file's axes; ``stated``: the variant they are compared with.
     """
     own = field.variants[stated]
-    found = []
-    for number, variant in enumerate(field.variants):
-        differences = _differences(own, variant)
-        change = float(np.linalg.norm(variant.coordinates - own.coordinates))
-        if len(differences) != 1 or change <= 2.0 * field.tolerances[stated]:
-            continue
-        left = float(np.linalg.norm(field.spaces.forbidden_part(field.moved(rotation, variant))))
-        if left <= field.tolerances[number]:
-            found.append(differences[0])
-    return tuple(found)
+    coordinates = np.array([v.coordinates for v in field.variants])
+    changes = np.linalg.norm(coordinates - own.coordinates, axis=1)
+    to_standard = field.frames.standard_from_file @ rotation.T
+    moved = field.spaces.space.rotated(to_standard[None], coordinates.T)[0]
+    left = np.linalg.norm(field.spaces.forbidden_part(moved), axis=0)
+    obeying = np.flatnonzero((changes > 2.0 * field.tolerances[stated]) & (left <= field.tolerances))
+    differences = (_differences(own, field.variants[number]) for number in obeying)
+    return tuple(found[0] for found in differences if len(found) == 1)
 
 
 def _differences(own: Variant, other: Variant) -> list[str]:

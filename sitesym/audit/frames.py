@@ -70,16 +70,18 @@ def _frames(
         shared = name in ("file", "lattice", "ieee")
         if shared or not any(np.abs(rotation - known).max() < SAME_MATRIX for known in distinct.values()):
             distinct[name] = frozen(rotation)
-    return Frames(group, _shared(group.rotated(ieee)), frozen(ieee), MappingProxyType(distinct), lattice)
+    return Frames(group, _shared(group, ieee), frozen(ieee), MappingProxyType(distinct), lattice)
 
 
-def _shared(group: PointGroup) -> PointGroup:
-    """The one object kept for this set of operations, so that everything derived from it is computed once.
+def _shared(group: PointGroup, ieee: FloatArray) -> PointGroup:
+    """A group in the standard orientation: the one object kept for this set of operations, so that everything
+    derived from it is computed once.
 
     Its matrices replace the group's, which differ from them by rounding alone.
     """
+    turned = group.rotated(ieee)
     known = standard_groups().get(group.symbol)
-    return known if known is not None and _same_operations(group, known) else group
+    return known if known is not None and _same_operations(turned, known) else turned
 
 
 @lru_cache(maxsize=1)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray
@@ -37,7 +39,7 @@ def check_index_symmetry(
         uncertainty = np.full(len(tensor), noise * length / np.sqrt(len(tensor)))
     pairs: list[EntryPair] = []
     largest, applies, breaking = 0.0, False, 0.0
-    for members in _groups(component, sign):
+    for members in _groups(component.tobytes(), sign.tobytes()):
         first = int(members[0])
         applies = True
         signed = tensor[members] * sign[members]
@@ -94,8 +96,12 @@ def _alike(
     return contracted(measurement.kind, full, layout, order).reshape(-1)
 
 
-def _groups(component: IntArray, sign: IntArray) -> list[IntArray]:
+@lru_cache(maxsize=256)
+def _groups(component_bytes: bytes, sign_bytes: bytes) -> tuple[IntArray, ...]:
     """Entries that belong to one component, where there is more than one, and entries that must vanish."""
+    component = np.frombuffer(component_bytes, dtype=np.int64)
+    sign = np.frombuffer(sign_bytes, dtype=np.int64)
     regular = np.flatnonzero(sign)
     groups = [regular[component[regular] == c] for c in np.unique(component[regular])]
-    return [g for g in groups if len(g) > 1] + [np.array([i]) for i in np.flatnonzero(sign == 0)]
+    forced = [np.array([place]) for place in np.flatnonzero(sign == 0)]
+    return (*(group for group in groups if len(group) > 1), *forced)

@@ -12,7 +12,7 @@ import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray
 from sitesym.audit.arrayspace import ArraySpace, array_space
-from sitesym.audit.measurement import Layout, Measurement
+from sitesym.audit.measurement import Layout
 from sitesym.audit.orders import SHEAR_ORDERS, STANDARD_ORDER, Order
 from sitesym.tensors import TensorKind, contraction
 from sitesym.tensors.indexsymmetry import VOIGT_PAIRS
@@ -42,13 +42,12 @@ def contracted(kind: TensorKind, values: FloatArray, layout: Layout, order: Orde
     return array
 
 
-def other_layouts(measurement: Measurement) -> tuple[Layout, ...]:
+def other_layouts(kind: TensorKind, stated: Layout) -> tuple[Layout, ...]:
     """Layouts in which an array of this shape could also have been written and would read differently."""
-    space = array_space(measurement.kind)
-    stated = measurement.stated_layout
+    space = array_space(kind)
     if stated.startswith("full"):
         choices: tuple[Layout, ...] = ("full", "full-last-first") if len(space.blocks) > 1 else ()
-    elif len(space.blocks) != 2 or contraction(measurement.kind).commuting:
+    elif len(space.blocks) != 2 or contraction(kind).commuting:
         choices = ()
     elif space.blocks[0] == space.blocks[1]:
         choices = ("matrix", "transposed")
@@ -57,10 +56,10 @@ def other_layouts(measurement: Measurement) -> tuple[Layout, ...]:
     return tuple(layout for layout in choices if layout != stated)
 
 
-def orders_of(measurement: Measurement) -> tuple[Order, ...]:
+def orders_of(kind: TensorKind, stated: Layout) -> tuple[Order, ...]:
     """Orders in which the contracted index could have been written; one where there is no such index."""
-    has_pairs = 6 in array_space(measurement.kind).blocks
-    written = not measurement.stated_layout.startswith("full")
+    has_pairs = 6 in array_space(kind).blocks
+    written = not stated.startswith("full")
     return SHEAR_ORDERS if has_pairs and written else (STANDARD_ORDER,)
 
 

@@ -97,6 +97,14 @@ def turns_of_normaliser(group: PointGroup) -> tuple[FloatArray, ...]:
 
 
 @lru_cache(maxsize=512)
+def equivalent_rotations(group: PointGroup) -> FloatArray:
+    """All products of a turn of `turns_of_normaliser` (or none) and a proper part of an element, (m, 3, 3)."""
+    proper = group.rotations_cart * group.determinants[:, None, None]
+    turns = np.array([np.eye(3), *turns_of_normaliser(group)])
+    return frozen((turns[:, None] @ proper[None]).reshape(-1, 3, 3))
+
+
+@lru_cache(maxsize=512)
 def is_continuous(group: PointGroup) -> bool:
     """Whether turns by any angle about some axis x, y or z map the group onto itself."""
     arbitrary = about_z(17.0)

@@ -17,11 +17,18 @@ from sitesym.arrays import FloatArray, IntArray
 from sitesym.audit.frames import Frames, tried_turns
 from sitesym.audit.indexcheck import check_index_symmetry
 from sitesym.audit.measurement import Measurement
-from sitesym.audit.neumann import Subspaces, equivalent_actions, is_continuous, normalises
+from sitesym.audit.neumann import (
+    Subspaces,
+    equivalent_actions,
+    equivalent_rotations,
+    is_continuous,
+    normalises,
+)
 from sitesym.audit.orders import STANDARD_ORDER, order_text
 from sitesym.audit.result import IndexFinding, Reading, Residual
 from sitesym.audit.uncertainty import judged, noise_of
 from sitesym.audit.variants import Variant
+from sitesym.groups import PointGroup
 
 #: A residual below this fraction of the noise level is not taken for better than another one.
 _FLOOR = 0.1
@@ -33,17 +40,22 @@ EARNED = float(np.log(0.05))
 _SAME_AXES = 1e-3
 _MOST_RIVALS = 4
 _MOST_JOINED = 5
+#: Weights of the entries of a matrix without rational relations: square roots of primes.
+_MARK = np.sqrt(np.array([2.0, 3.0, 5.0, 7.0, 11.0, 13.0, 17.0, 19.0, 23.0]))
 
 
 @dataclass(frozen=True, eq=False)
 class Orientation:
-    """Axes the tensor may have: in words, as rows in the file's axes (3, 3), and how many such there are."""
+    """Axes the tensor may have: in words, as rows in the file's axes (3, 3), how many such there are, whether
+    they contradict the stated ones, whether they are named axes not turned, other words for equivalent axes.
+    """
 
     words: str
     rotation: FloatArray
     choices: int
     departs: bool
     is_plain: bool
+    same_axes: tuple[str, ...]
 
 
 @dataclass(frozen=True, eq=False)
@@ -76,7 +88,10 @@ class Candidate:
 
 
 def orientations(measurement: Measurement, frames: Frames) -> tuple[Orientation, ...]:
-    """The stated axes, or all named ones where none are stated, then every turn of every named set of axes."""
+    """The stated axes, or all named ones where none are stated, then every turn of every named set of axes.
+
+    Axes that an equivalent turn of the crystal takes to earlier ones are listed with these.
+    """
     stated = measurement.axes
     named = dict(frames.named)
     if not isinstance(stated, str):
@@ -85,24 +100,47 @@ def orientations(measurement: Measurement, frames: Frames) -> tuple[Orientation,
     unknown = stated == "unknown"
     if not unknown:
         named = {stated: named.pop(stated), **named}
-    plain = [
+    turns = tried_turns()
+    bases = np.array(list(named.values()))
+    # No turn comes first, so that all named axes stand before all turned ones.
+    rotations = np.array([turn.matrix for turn in turns])[:, None] @ bases[None]
+    labels = [f"{name}, {turn.words}" if turn.words else name for turn in turns for name in named]
+    flat = rotations.reshape(-1, 3, 3)
+    first, member = _classes_of_axes(frames.standard_from_file @ np.swapaxes(flat, 1, 2), frames.standard)
+    together: list[list[str]] = [[] for _ in first]
+    for number, label in zip(member.tolist(), labels, strict=True):
+        together[number].append(label)
+    return tuple(
         Orientation(
-            name, rotation, 1 if name == stated else len(named), not unknown and name != stated, is_plain=True
+            labels[place],
+            flat[place],
+            _axes_choices(place, len(named), unknown),
+            not unknown and place > 0,
+            place < len(named),
+            tuple(together[number][1 : 1 + _MOST_JOINED]),
         )
-        for name, rotation in named.items()
-    ]
-    turned = [
-        Orientation(
-            f"{base.words}, {turn.words}",
-            turn.matrix @ base.rotation,
-            len(named) * len(tried_turns()),
-            not unknown,
-            is_plain=False,
-        )
-        for base in plain
-        for turn in tried_turns()[1:]
-    ]
-    return (*plain, *turned)
+        for number, place in enumerate(first.tolist())
+    )
+
+
+def _axes_choices(place: int, named: int, unknown: bool) -> int:
+    if place == 0 and not unknown:
+        return 1
+    return named if place < named else named * len(tried_turns())
+
+
+def _classes_of_axes(to_standard: FloatArray, group: PointGroup) -> tuple[IntArray, IntArray]:
+    """First member of each class of rotations (m, 3, 3) that lead to equivalent axes, and the class of each.
+
+    A fixed linear function of the matrices, its largest value over all equivalent turns, names the class.
+    """
+    turns = equivalent_rotations(group)
+    values = np.round((turns.reshape(len(turns), 1, 3, 3) @ to_standard).reshape(len(turns), -1, 9) @ _MARK, 6)
+    _, first, member = np.unique(values.max(axis=0), return_index=True, return_inverse=True)
+    order = np.argsort(first)
+    place = np.empty_like(order)
+    place[order] = np.arange(len(order))
+    return first[order], place[member]
 
 
 @dataclass(frozen=True, eq=False)
@@ -209,7 +247,9 @@ def candidates(field: Field) -> list[Candidate]:
         joined = _same_tensor(field, leader, open_places)
         joined[0] = True
         if accepted(field, leader):
-            chosen.append(replace(leader, joined=_words(field, open_places[joined][1:])))
+            others = _words(field, open_places[joined][1:])
+            names = (*leader.orientation.same_axes, *others)[:_MOST_JOINED]
+            chosen.append(replace(leader, joined=names))
         open_places = open_places[~joined]
         if chosen and len(open_places) and _score(field, open_places[0]) > chosen[0].score + RIVAL:
             break

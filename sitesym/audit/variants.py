@@ -7,12 +7,13 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import lru_cache
 from itertools import product
 
 import numpy as np
 
 from sitesym.arrays import FloatArray, frozen
-from sitesym.audit.arrayspace import ArraySpace, array_space
+from sitesym.audit.arrayspace import array_space
 from sitesym.audit.layouts import contracted, orders_of, other_layouts
 from sitesym.audit.measurement import Layout, Measurement
 from sitesym.audit.orders import SHEAR_ORDERS, STANDARD_ORDER, Order
@@ -41,6 +42,18 @@ class Variant:
     departs: bool
 
 
+@dataclass(frozen=True, eq=False)
+class _Plan:
+    """A variant before any numbers."""
+
+    order: Order
+    layout: Layout
+    factor: str
+    divisors: FloatArray
+    choices: int
+    departs: bool
+
+
 @dataclass(frozen=True)
 class _Factor:
     words: str
@@ -49,63 +62,74 @@ class _Factor:
 
 
 def variants_of(measurement: Measurement) -> tuple[Variant, ...]:
-    """All variants, the one as stated first; where no order is stated, those in standard factors and stated
-    layout come first.
-    """
-    space = array_space(measurement.kind)
-    layouts: tuple[Layout, ...] = (measurement.stated_layout, *other_layouts(measurement))
-    factors = _factors(measurement, space)
-    return tuple(
-        _variant(measurement, space, order, layout, factor, len(layouts))
-        for factor, layout, order in product(factors, layouts, _orders(measurement))
-    )
+    """All variants, the one as stated first; the standard order counts as stated where none is."""
+    plans = _plans(measurement.kind, measurement.stated_layout, measurement.order)
+    weights = array_space(measurement.kind).weights
+    arrays: dict[tuple[Layout, Order], FloatArray] = {}
+    variants = []
+    for plan in plans:
+        key = (plan.layout, plan.order)
+        if key not in arrays:
+            array = contracted(measurement.kind, measurement.values, plan.layout, plan.order)
+            arrays[key] = array.reshape(-1) * weights
+        variants.append(
+            Variant(
+                plan.order,
+                plan.layout,
+                plan.factor,
+                plan.divisors,
+                arrays[key] / plan.divisors,
+                plan.choices,
+                plan.departs,
+            )
+        )
+    return tuple(variants)
 
 
-def _variant(
-    measurement: Measurement,
-    space: ArraySpace,
-    order: Order,
-    layout: Layout,
-    factor: _Factor,
-    layouts: int,
-) -> Variant:
-    divisors = np.prod(np.array(factor.powers) ** space.shears, axis=1)
-    entries = contracted(measurement.kind, measurement.values, layout, order).reshape(-1) / divisors
-    departs_in_layout = layout != measurement.stated_layout
-    order_choices = _order_choices(order, measurement.order, len(orders_of(measurement)))
-    return Variant(
-        order,
-        layout,
-        factor.words,
-        frozen(divisors),
-        frozen(space.coordinates(entries)),
-        order_choices * (layouts if departs_in_layout else 1) * factor.choices,
-        bool(factor.words)
-        or departs_in_layout
-        or (measurement.order is not None and order_choices > 1),
-    )
+@lru_cache(maxsize=256)
+def _plans(kind: TensorKind, stated_layout: Layout, stated_order: Order | None) -> tuple[_Plan, ...]:
+    """The variants of every array of one kind that was stated alike."""
+    space = array_space(kind)
+    layouts: tuple[Layout, ...] = (stated_layout, *other_layouts(kind, stated_layout))
+    orders = _orders(kind, stated_layout, stated_order)
+    plans = []
+    for factor, layout, order in product(_factors(kind, stated_layout), layouts, orders):
+        order_choices = _order_choices(order, orders[0])
+        departs = bool(factor.words) or layout != stated_layout
+        plans.append(
+            _Plan(
+                order,
+                layout,
+                factor.words,
+                frozen(np.prod(np.array(factor.powers) ** space.shears, axis=1)),
+                order_choices * (1 if layout == stated_layout else len(layouts)) * factor.choices,
+                departs or (stated_order is not None and order_choices > 1),
+            )
+        )
+    return tuple(plans)
 
 
-def _orders(measurement: Measurement) -> tuple[Order, ...]:
+def _orders(kind: TensorKind, stated_layout: Layout, stated: Order | None) -> tuple[Order, ...]:
     """The stated order (or the standard one) first."""
-    stated = measurement.order or STANDARD_ORDER
-    return (stated, *(order for order in orders_of(measurement) if order != stated))
+    first = stated or STANDARD_ORDER
+    return (first, *(order for order in orders_of(kind, stated_layout) if order != first))
 
 
-def _order_choices(order: Order, stated: Order | None, total: int) -> int:
+def _order_choices(order: Order, stated: Order) -> int:
     """1 for the stated order, 3 for the orders in common use, 6 for the rest."""
-    if total == 1 or order == (stated or STANDARD_ORDER):
+    if order == stated:
         return 1
     return 3 if order in SHEAR_ORDERS[:3] else 6
 
 
-def _factors(measurement: Measurement, space: ArraySpace) -> tuple[_Factor, ...]:
+def _factors(kind: TensorKind, stated_layout: Layout) -> tuple[_Factor, ...]:
+    space = array_space(kind)
     axes = len(space.blocks)
     pairs = [axis for axis, block in enumerate(space.blocks) if block == 6]
     plain = _Factor("", (1.0,) * axes, 1)
-    if not pairs or measurement.stated_layout.startswith("full") or space.size > _LARGEST_WITH_FACTORS:
+    if not pairs or stated_layout.startswith("full") or space.size > _LARGEST_WITH_FACTORS:
         return (plain,)
-    return (plain, *_other_factors(measurement.kind, axes, pairs))
+    return (plain, *_other_factors(kind, axes, pairs))
 
 
 def _other_factors(kind: TensorKind, axes: int, pairs: list[int]) -> Iterator[_Factor]:

@@ -98,7 +98,11 @@ def _explained(field: Field, fits: list[Candidate]) -> Finding:
 
 def _slips(field: Field) -> list[Reading]:
     """Slips in the axes that are not turned, read as stated, the most likely first."""
-    plain = [o for o in range(len(field.orientations)) if field.orientations[o].is_plain]
+    plain = [
+        o
+        for o, orientation in enumerate(field.orientations)
+        if orientation.is_plain and field.residuals[o, 0] > field.tolerances[0]
+    ]
     found: list[tuple[Repair, Candidate]] = []
     for place in plain:
         candidate = field.candidate(place, 0)
