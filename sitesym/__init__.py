@@ -40,6 +40,8 @@ if TYPE_CHECKING:
         kind_from_jahn,
     )
 
+    audit = audit_tensor
+
 __version__ = "0.1.0"
 
 _HOMES = {
@@ -88,7 +90,9 @@ __all__ = [
 
 
 def __getattr__(name: str) -> Any:
-    """The public name, from the module that defines it."""
+    """The public name, from the module that defines it; `audit` is a package that can be called."""
+    if name == "audit":
+        return importlib.import_module("sitesym.audit")
     if name not in _HOME_OF:
         raise AttributeError(f"module 'sitesym' has no attribute {name!r}")
     return getattr(importlib.import_module(_HOME_OF[name]), name)

@@ -54,10 +54,6 @@ def audit(
     return _detailed(field, index, settle(field, explain))
 
 
-#: The same function under the name it has at the top of the package.
-audit_tensor = audit
-
-
 def _without_search(
     spaces: Subspaces, stated: Variant, level: Noise, index: IndexFinding
 ) -> Finding | None:

@@ -32,6 +32,11 @@ class CrystalReference:
         return "\n" in self.text.strip()
 
     @property
+    def is_structure(self) -> bool:
+        """Whether it is the structure of one crystal, and not a symbol that many share."""
+        return self.is_structure_text or self.path.is_file()
+
+    @property
     def path(self) -> Path:
         """The path it would be."""
         return Path(self.folder) / self.text

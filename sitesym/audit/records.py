@@ -23,7 +23,7 @@ from sitesym.tensors import TensorKind, contraction, kind
 #: Fields a record may have; others are kept as remarks.
 FIELDS: Final = (
     "id", "crystal", "quantity", "unit", "order", "axes", "values", "sigma", "source", "conditions", "layout",
-    "rounding", "sample",
+    "rounding", "sample", "remark",
 )  # fmt: skip
 #: Fields whose text is the structure itself, used where ``crystal`` is missing.
 _STRUCTURE_FIELDS: Final = ("poscar", "cif")
@@ -92,7 +92,7 @@ def _measurement(identity: str, fields: Fields) -> Measurement:
         identity,
         tensor_kind,
         values,
-        order=_order(tensor_kind, fields, values.shape),
+        order=stated_order(tensor_kind, _word(fields, "order"), values.shape),
         layout=_layout(fields),
         axes=_axes(fields),
         unit=_word(fields, "unit") or UNKNOWN,
@@ -133,9 +133,11 @@ def _one_or_array(value: Any, name: str) -> float | FloatArray | None:
     return float(array) if array.shape == () else array
 
 
-def _order(tensor_kind: TensorKind, fields: Fields, shape: tuple[int, ...]) -> Order | None:
-    """The stated order; None where it matters and is not stated."""
-    text = _word(fields, "order")
+def stated_order(tensor_kind: TensorKind, text: str, shape: tuple[int, ...]) -> Order | None:
+    """The order a text states for an array of a shape; None where one matters and none is stated.
+
+    Raises TensorInputError for a text that is no order.
+    """
     if text and text.lower() != UNKNOWN:
         return read_order(text)
     contracted = 6 in contraction(tensor_kind).blocks and shape != (3,) * tensor_kind.rank
@@ -224,6 +226,8 @@ def _word(fields: Fields, name: str) -> str:
 
 
 def _remarks(fields: Fields) -> Iterator[str]:
+    if _word(fields, "remark"):
+        yield _word(fields, "remark")
     used = {*FIELDS, "components"} | (set() if fields.get("crystal") else set(_STRUCTURE_FIELDS))
     for name, value in fields.items():
         if name not in used:

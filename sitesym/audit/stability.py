@@ -22,6 +22,9 @@ from sitesym.tensors import TensorKind, allowed_form, contraction, kind, to_full
 
 StabilityAnswer: TypeAlias = Literal["stable", "unstable", "unreliable"]
 
+#: Kinds that have an elastic stability.
+ELASTIC_KINDS: Final = ("elastic-stiffness", "elastic-compliance")
+
 _KELVIN: Final = np.array([1.0, 1.0, 1.0, *[2.0**0.5] * 3])
 #: Noise of an eigenvalue is taken three standard deviations wide (no unit).
 _SIGMAS: Final = 3.0
@@ -81,11 +84,11 @@ def elastic_stability(
     ``relative_noise``: of the norm of the tensor; ``sigma`` (6, 6): standard deviation of each entry. Raises
     TensorInputError for another kind of tensor, or a matrix of another shape.
     """
-    if tensor_kind.name not in ("elastic-stiffness", "elastic-compliance"):
+    if tensor_kind.name not in ELASTIC_KINDS:
         raise TensorInputError(
             "elastic stability is asked of a tensor that is not elastic",
             tensor_kind.name,
-            "elastic-stiffness or elastic-compliance",
+            " or ".join(ELASTIC_KINDS),
             "leave the question out for this quantity",
         )
     kelvin = _kelvin(tensor_kind, matrix)

@@ -11,8 +11,9 @@ The entries are linear in the independent stiffnesses of the standard orientatio
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from fractions import Fraction
+from functools import lru_cache
 
 import numpy as np
 
@@ -25,6 +26,7 @@ from sitesym.tolerances import PIVOT, RECOGNISED
 
 _STRAIN = TensorSpace(read_jahn("[V2]").symmetry)
 _LARGEST_DENOMINATOR = 64
+_KEY_DIGITS = 6
 
 
 @dataclass(frozen=True)
@@ -70,6 +72,20 @@ class StrainBlock:
 
 def strain_blocks(group: PointGroup) -> tuple[StrainBlock, ...]:
     """The blocks of a group that stands in its standard orientation, in the order of its character table."""
+    return _blocks_of(_SameOperations((np.round(group.rotations_cart, _KEY_DIGITS) + 0.0).tobytes(), group))
+
+
+@dataclass(frozen=True)
+class _SameOperations:
+    """A group as a key: equal operations are equal keys, whatever object holds them."""
+
+    key: bytes
+    group: PointGroup = field(compare=False)
+
+
+@lru_cache(maxsize=256)
+def _blocks_of(operations: _SameOperations) -> tuple[StrainBlock, ...]:
+    group = operations.group
     table = character_table(group, np.eye(3))
     form = allowed_form(kind("elastic-stiffness"), group)
     derivatives = _derivatives(form)
@@ -78,9 +94,8 @@ def strain_blocks(group: PointGroup) -> tuple[StrainBlock, ...]:
         strains = _first_partners(table, joined.members[0])
         if len(strains):
             conditions = _conditions(form.independent, strains, derivatives)
-            blocks.append(
-                StrainBlock(joined.label, joined.dimension, _kelvin_orthonormal(strains), conditions)
-            )
+            orthonormal = _kelvin_orthonormal(strains)
+            blocks.append(StrainBlock(joined.label, joined.dimension, orthonormal, conditions))
     return tuple(blocks)
 
 

@@ -21,6 +21,7 @@ COMMANDS: Final = {
     "sites": "Sites of a crystal: orbit, Wyckoff letter, site symmetry.",
     "allowed": "Tensor components that symmetry allows, and their relations.",
     "irreps": "Irreducible representations and their characters.",
+    "audit": "Measured tensors against the symmetry of their crystals.",
     "screen": "A folder of structures: one row of verdicts each.",
     "conventions": "The axes, orders, factors and words the output uses.",
 }

@@ -9,6 +9,8 @@ from sitesym.errors import UsageError
 from sitesym.reports import (
     allowed_tables,
     allowed_text,
+    audit_tables,
+    audit_text,
     conventions,
     irreps_report,
     screen_report,
@@ -42,6 +44,12 @@ _RENDERERS: Final[Mapping[str, Mapping[str, Callable[[Document], str]]]] = {
         "csv": screen_report.screen_csv,
         "markdown": screen_report.screen_markdown,
         "latex": screen_report.screen_latex,
+    },
+    "sitesym.audit/1": {
+        "text": audit_text.audit_text,
+        "csv": audit_tables.audit_csv,
+        "markdown": audit_tables.audit_markdown,
+        "latex": audit_tables.audit_latex,
     },
     "sitesym.conventions/1": {
         "text": conventions.conventions_text,

@@ -1,0 +1,175 @@
+"""An `audit` document as plain text: for each record the verdict, what to do, then the evidence."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+
+from sitesym.reports.audit_phrases import (
+    MOST_ITEMS,
+    Entry,
+    cut,
+    index_text,
+    percent,
+    reading_text,
+    short,
+    stated_text,
+    symmetry_text,
+)
+from sitesym.reports.audit_stability import stability_text
+from sitesym.reports.headings import footer
+from sitesym.reports.layout import TEXT_WIDTH, cell_text, labelled, paragraph, table, vector_text
+from sitesym.reports.markup import Document
+
+_LABEL = 13
+#: Records whose evidence is left out where there are many: nothing is to be done about them.
+_SETTLED = ("consistent", "no-constraint")
+
+
+def audit_text(document: Document) -> str:
+    """The records, the cross-checks, the summary; a single record and one to act on with all its evidence."""
+    records = document["records"]
+    blocks = [record_text(one, len(records) == 1 or _is_open(one)) for one in records]
+    if document["cross_checks"]:
+        blocks.append(cross_checks_text(document["cross_checks"]))
+    blocks.append(
+        "\n".join([_line("summary", summary_text(document)), _line("tolerances", _tolerances(document))])
+    )
+    blocks.append(footer(document))
+    return "\n\n".join(blocks) + "\n"
+
+
+def record_text(one: Entry, with_evidence: bool) -> str:
+    """First line the verdict, second line what to do, then the evidence."""
+    lines = list(headline(one))
+    lines.extend(_line("warning", warning) for warning in one["warnings"])
+    if with_evidence and one["verdict"] is not None:
+        lines.extend(_evidence(one))
+    lines.extend(_line("remark", remark) for remark in one["remarks"])
+    return "\n".join(lines)
+
+
+def headline(one: Entry) -> Iterator[str]:
+    """The two lines that matter; of an error what happened and the next step."""
+    name = cell_text(one["id"])
+    if one["error"] is not None:
+        error = one["error"]
+        value = f": {cell_text(error['value'])}" if error["value"] else ""
+        yield paragraph(f"{name}: error: {error['what']}{value} ({one['place']})")
+        yield paragraph(f"do: {error['next_step'] or error['rule'] or 'see the message'}", indent=2)
+        return
+    verdict, *action = one["message"]
+    yield paragraph(f"{name}: {verdict}")
+    yield paragraph(f"do: {' '.join(action)}", indent=2)
+
+
+def _is_open(one: Entry) -> bool:
+    unstable = one["stability"] is not None and one["stability"]["answer"] != "stable"
+    return one["verdict"] not in _SETTLED or unstable
+
+
+def _evidence(one: Entry) -> Iterator[str]:
+    yield _line("crystal", _crystal_text(one))
+    yield _line("tensor", _tensor_text(one))
+    yield _line("index", index_text(one["index_symmetry"]))
+    if one["stated"] is not None:
+        yield _line("as stated", stated_text(one["stated"]))
+    yield from _deviations("forbidden", one["forbidden"])
+    yield from _deviations("relations", one["relations"])
+    if one["best"] is not None:
+        yield _line("best reading", reading_text(one["best"]))
+        yield _line("its axes", _rows(one["best"]["rotation"]))
+    for rival in one["rivals"][:MOST_ITEMS]:
+        yield _line("rival", reading_text(rival))
+    if one["equivalent_axes"]:
+        yield _line("equivalent", "\n".join(_equivalent_lines(one)))
+    if one["undetected"]:
+        yield _line("undetected", f"symmetry cannot exclude: {cut(one['undetected'])}")
+    if one["tensor_symmetry"] is not None:
+        yield _line("tensor has", symmetry_text(one["tensor_symmetry"]))
+    if one["stability"] is not None:
+        is_compliance = one["quantity"] == "elastic-compliance"
+        yield stability_text(one["stability"], one["measurement"]["unit"], is_compliance, 2 + _LABEL)
+
+
+def _line(label: str, text: str) -> str:
+    return labelled(f"  {label}", text, width=TEXT_WIDTH, label_width=_LABEL + 2)
+
+
+def _crystal_text(one: Entry) -> str:
+    crystal = one["crystal"]
+    parts = [crystal["formula"], crystal["space_group"], f"point group {one['group']}", crystal["reference"]]
+    frame = f"\nfile axes: {crystal['frame']}" if crystal["frame"] else "\nfile axes: those of the symbol"
+    return ", ".join(filter(None, parts)) + frame
+
+
+def _tensor_text(one: Entry) -> str:
+    """What the record says of itself."""
+    told = one["measurement"]
+    axes = told["axes"] if isinstance(told["axes"], str) else "a matrix"
+    parts = [f"{one['quantity']} {told['symbol']}", f"unit {told['unit']}", f"axes {axes}"]
+    if told["layout"] != "full":
+        parts.append(f"order {told['order']}")
+    parts.append(f"layout {told['layout']}")
+    parts.extend(f"{name} {told[name]}" for name in ("conditions", "source") if told[name])
+    parts.append(f"{one['independent']} independent components, {one['constraints']} constraints")
+    return "; ".join(parts)
+
+
+def _deviations(label: str, deviations: Sequence[Entry]) -> Iterator[str]:
+    if not deviations:
+        return
+    rows = []
+    for one in deviations[:MOST_ITEMS]:
+        said = one["relation"] or f"{one['component']} = 0"
+        rows.append((said, *(short(one[name]) for name in ("value", "expected", "tolerance"))))
+    more = len(deviations) - len(rows)
+    drawn = table((label, "value", "expected", "tolerance"), rows, indent=2 + _LABEL)
+    yield drawn + (f"\n{' ' * (2 + _LABEL)}and {more} more" if more else "")
+
+
+def _rows(rotation: Sequence[Sequence[float]]) -> str:
+    first, *rest = (f"{name} = {vector_text(row)}" for name, row in zip("xyz", rotation, strict=True))
+    return "\n".join([f"{first}  in the file's Cartesian axes", *rest])
+
+
+def _equivalent_lines(one: Entry) -> Iterator[str]:
+    yield "a zero residual does not tell these from the axes above:"
+    symbol = one["measurement"]["symbol"]
+    for axes in one["equivalent_axes"][:MOST_ITEMS]:
+        flips = ", ".join(f"{symbol}{name}" for name in axes["flips"])
+        yield f"{axes['turn']}: " + ("mixes components" if axes["mixes"] else f"reverses {flips}")
+
+
+def cross_checks_text(checks: Sequence[Entry]) -> str:
+    """One row a relation between records of one crystal."""
+    head = ("relation", "records", "holds", "difference", "worst entry", "of tolerance")
+    rows = []
+    for check in checks:
+        records = ", ".join(map(cell_text, check["records"]))
+        difference, share = percent(check["relative_difference"]), short(check["share_of_tolerance"])
+        rows.append((check["relation"], records, check["holds"], difference, check["worst_entry"], share))
+    basis = "; ".join(dict.fromkeys(check["basis"] for check in checks))
+    blocks = ["quantities of one crystal", table(head, rows, indent=2)]
+    return "\n".join([*blocks, paragraph(f"tolerance: {basis}", indent=2)])
+
+
+def summary_text(document: Document) -> str:
+    """Counts, and what the stated axes alone would have said."""
+    summary = document["summary"]
+    counted = ", ".join(f"{number} {verdict}" for verdict, number in summary["verdicts"].items() if number)
+    errors = f"{summary['errors']} with errors" if summary["errors"] else ""
+    violating = summary["violating_in_stated_axes_alone"]
+    alone = f"in the stated axes alone {violating} would have been called violating"
+    unknown = summary["axes_or_order_not_stated"]
+    missing = f"{unknown} state no axes or no order" if unknown else ""
+    failing = summary["cross_checks_failing"]
+    crossed = f"{failing} of {summary['cross_checks']} cross-checks fail" if summary["cross_checks"] else ""
+    head = f"{summary['records']} records: {', '.join(filter(None, (counted, errors)))}"
+    return "; ".join(filter(None, (head, alone, missing, crossed)))
+
+
+def _tolerances(document: Document) -> str:
+    return (
+        f"noise {percent(document['noise'])} of a tensor where no deviations are stated; "
+        f"{document['tolerance_angstrom']:g} angstrom for the symmetry of crystals"
+    )
