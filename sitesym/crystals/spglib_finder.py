@@ -12,7 +12,7 @@ from typing import Any
 
 import numpy as np
 
-from sitesym.arrays import FloatArray, frozen
+from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.found import (
     FoundSymmetry,
@@ -86,6 +86,19 @@ def setting(hall_number: int) -> SpaceGroupSetting:
         frozen(translations),
         frozen(np.array(unique, dtype=np.int64)),
     )
+
+
+def number_of_operations(rotations: IntArray, translations: FloatArray, lattice: FloatArray) -> int:
+    """Number in International Tables A of the space group with these operations (n, 3, 3), (n, 3) of a cell
+    (rows). Raises SymmetryNotFoundError when the library does not recognise them."""
+    spglib = _spglib()
+    try:
+        kind = spglib.get_spacegroup_type_from_symmetry(rotations, translations, lattice=lattice)
+    except spglib.SpglibError as error:
+        raise SymmetryNotFoundError("the operations are of no space group known", str(error)) from error
+    if kind is None:
+        raise SymmetryNotFoundError("the operations are of no space group known", "no answer of spglib")
+    return int(kind.number)
 
 
 def niggli_lattice(lattice: FloatArray) -> FloatArray:
