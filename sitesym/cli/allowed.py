@@ -7,7 +7,7 @@ from typing import Any, Final
 import click
 import numpy as np
 
-from sitesym.cli.options import emit, output_options, split_names, tolerance_option
+from sitesym.cli.options import emit, output_options, reliability_options, split_names
 from sitesym.cli.subject import Subject, read_matrix, subject_arguments, subject_of
 from sitesym.crystals import AXES_NAMES, Site
 from sitesym.errors import TensorInputError, UsageError
@@ -50,7 +50,7 @@ EVERYDAY: Final = (
     "--rotation", metavar="MATRIX", help="With --axes given: nine numbers, rows x, y, z in the file's axes."
 )
 @click.option("--site", "label", metavar="LABEL", help="Tensors of one atom: the group of its site.")
-@tolerance_option
+@reliability_options
 @output_options
 def command(
     file: str | None,
@@ -61,6 +61,8 @@ def command(
     rotation: str | None,
     label: str | None,
     tolerance_angstrom: float,
+    finder: str,
+    ladder: str,
     format_name: str,
     output: str | None,
 ) -> None:
@@ -69,7 +71,7 @@ def command(
     Without --property: the ten properties most asked for. Exit code 0 also when a property is forbidden: the
     count of independent components is then 0.
     """
-    subject = subject_of(file, symbol, tolerance_angstrom)
+    subject = subject_of(file, symbol, tolerance_angstrom, finder, ladder == "on")
     site = _site(subject, label)
     kinds = _kinds(names, jahn, site is not None or subject.symmetry is None)
     axes = subject.axes(*_axes_choice(axes_name, rotation, file))

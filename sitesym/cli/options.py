@@ -41,6 +41,25 @@ tolerance_option = click.option(
 )
 
 
+def reliability_options(command: _Command) -> _Command:
+    """``--tolerance``, ``--finder`` and ``--ladder``."""
+    finder = click.option(
+        "--finder",
+        type=click.Choice(("spglib", "moyo", "both")),
+        default="spglib",
+        show_default=True,
+        help="Library that finds the symmetry; both: the first, with the second as second opinion.",
+    )
+    ladder = click.option(
+        "--ladder",
+        type=click.Choice(("on", "off")),
+        default="on",
+        show_default=True,
+        help="Try other tolerances, and measure the distance from inversion and a reversed polar axis.",
+    )
+    return tolerance_option(finder(ladder(command)))
+
+
 def emit(document: Document, format_name: str, output: str | None) -> None:
     """Write the document in a format to standard output or to a file. Raises UsageError as `write` does."""
     write(render(document, format_name), output)

@@ -4,16 +4,18 @@ from __future__ import annotations
 
 import click
 
-from sitesym.cli.options import emit, output_options, tolerance_option
-from sitesym.crystals import find_symmetry, read_crystal
+from sitesym.cli.options import emit, output_options, reliability_options
+from sitesym.cli.subject import symmetry_of_file
 from sitesym.reports.sites import sites_document
 
 
 @click.command("sites")
 @click.argument("file")
-@tolerance_option
+@reliability_options
 @output_options
-def command(file: str, tolerance_angstrom: float, format_name: str, output: str | None) -> None:
+def command(
+    file: str, tolerance_angstrom: float, finder: str, ladder: str, format_name: str, output: str | None
+) -> None:
     """Orbit, Wyckoff letter, oriented site symmetry, operations and axis directions of every site in FILE."""
-    symmetry = find_symmetry(read_crystal(file), tolerance_angstrom)
+    symmetry = symmetry_of_file(file, tolerance_angstrom, finder, ladder == "on")
     emit(sites_document(symmetry), format_name, output)

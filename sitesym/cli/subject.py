@@ -4,15 +4,23 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, TypeVar
 
 import click
 import numpy as np
 
 from sitesym.arrays import FloatArray
-from sitesym.crystals import AXES_NAMES, CrystalSymmetry, axes_for, find_symmetry, read_crystal
+from sitesym.crystals import (
+    AXES_NAMES,
+    DEFAULT_FINDER,
+    CrystalSymmetry,
+    axes_for,
+    examined_symmetry,
+    read_crystal,
+)
 from sitesym.crystals.axes import IEEE_EDITION, given_frame
+from sitesym.crystals.native_output import native_output_kept
 from sitesym.errors import UsageError
 from sitesym.groups import PointGroup, standard_rotation
 from sitesym.reports.sites import crystal_entry, crystal_remarks
@@ -62,8 +70,14 @@ def subject_arguments(command: _Command) -> _Command:
     return click.argument("file", required=False)(by_symbol(command))
 
 
-def subject_of(file: str | None, symbol: str | None, tolerance_angstrom: float) -> Subject:
-    """The crystal of a file or the group of a symbol.
+def subject_of(
+    file: str | None,
+    symbol: str | None,
+    tolerance_angstrom: float,
+    finder: str = DEFAULT_FINDER,
+    ladder: bool = False,
+) -> Subject:
+    """The crystal of a file or the group of a symbol; ``finder`` and ``ladder`` as in `examined_symmetry`.
 
     Raises UsageError unless exactly one of them is given, and the errors of reading and of symmetry finding.
     """
@@ -76,8 +90,20 @@ def subject_of(file: str | None, symbol: str | None, tolerance_angstrom: float) 
         )
     if symbol is not None:
         return Subject(PointGroup.from_symbol(symbol))
-    symmetry = find_symmetry(read_crystal(str(file)), tolerance_angstrom)
+    symmetry = symmetry_of_file(str(file), tolerance_angstrom, finder, ladder)
     return Subject(symmetry.point_group, symmetry)
+
+
+def symmetry_of_file(file: str, tolerance_angstrom: float, finder: str, ladder: bool) -> CrystalSymmetry:
+    """The symmetry of the one crystal of a file; what the finder prints becomes remarks of the crystal.
+
+    Raises the errors of reading and of symmetry finding.
+    """
+    crystal = read_crystal(file)
+    with native_output_kept() as printed:
+        symmetry = examined_symmetry(crystal, tolerance_angstrom, finder, ladder)
+    said = dict.fromkeys((*printed, *symmetry.found.messages))
+    return replace(symmetry, crystal=crystal.with_remarks(*(f"the finder says: {line}" for line in said)))
 
 
 def read_matrix(text: str) -> FloatArray:

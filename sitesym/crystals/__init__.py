@@ -5,6 +5,7 @@ from sitesym.crystals.crystal import Crystal, Source
 from sitesym.crystals.finders import DEFAULT_FINDER, FINDERS
 from sitesym.crystals.idealisation import Idealisation
 from sitesym.crystals.reading import FORMATS, named_format, read_crystal, read_crystals
+from sitesym.crystals.reliability import FINDER_CHOICES, Reliability, examined_symmetry
 from sitesym.crystals.sites import Site, SiteAxis
 from sitesym.crystals.species import Species
 from sitesym.crystals.symmetry import CrystalSymmetry, find_symmetry
@@ -13,16 +14,19 @@ __all__ = [
     "AXES_NAMES",
     "DEFAULT_FINDER",
     "FINDERS",
+    "FINDER_CHOICES",
     "FORMATS",
     "Axes",
     "Crystal",
     "CrystalSymmetry",
     "Idealisation",
+    "Reliability",
     "Site",
     "SiteAxis",
     "Source",
     "Species",
     "axes_for",
+    "examined_symmetry",
     "find_symmetry",
     "named_format",
     "read_crystal",

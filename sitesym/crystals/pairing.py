@@ -134,7 +134,7 @@ def _involution(permutation: IntArray, costs: FloatArray) -> IntArray:
     """Cycles longer than two split into pairs.
 
     With symmetric costs a cycle of even length costs at least as much as the better of its two splittings
-    into pairs. A cycle of odd length keeps one atom alone, the one that makes it cheapest; that can cost more.
+    into pairs. A cycle of odd length keeps one atom alone, the one that makes it cheapest; it can cost more.
     """
     result, seen = permutation.copy(), np.zeros(len(permutation), dtype=np.bool_)
     for start in range(len(permutation)):

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
+from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -22,14 +23,21 @@ from sitesym.errors import UsageError
 from sitesym.groups import PointGroup
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
+if TYPE_CHECKING:
+    from sitesym.crystals.reliability import Reliability
+
 
 @dataclass(frozen=True, eq=False)
 class CrystalSymmetry:
-    """A crystal with its symmetry at one tolerance, as one finder sees it."""
+    """A crystal with its symmetry at one tolerance, as one finder sees it.
+
+    ``reliability``: what was asked about other tolerances and of the other finder, see `examined_symmetry`.
+    """
 
     crystal: Crystal
     tolerance_angstrom: float
     found: FoundSymmetry
+    reliability: Reliability | None = None
 
     @cached_property
     def measured_lattice(self) -> FloatArray:

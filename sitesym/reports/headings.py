@@ -8,6 +8,7 @@ from typing import Any
 from sitesym.reports.layout import labelled, paragraph, vector_text
 from sitesym.reports.markup import Document, latex_escape, markdown_escape
 from sitesym.reports.provenance import CAUTION, versions_line
+from sitesym.reports.reliability_text import reliability_lines
 
 #: Shifts (angstrom) and strains below this are rounding of the file's numbers.
 _ROUNDING = 1e-9
@@ -100,13 +101,19 @@ def crystal_lines(crystal: Mapping[str, Any]) -> Iterator[tuple[str, str]]:
         "tolerance",
         f"{crystal['tolerance_angstrom']:g} angstrom; {_idealised_text(crystal['idealisation'])}",
     )
+    yield from reliability_lines(crystal)
 
 
-def _idealised_text(change: Mapping[str, float]) -> str:
+def _idealised_text(change: Mapping[str, Any]) -> str:
     shift, strain = change["largest_shift_angstrom"], change["largest_strain"]
     if max(shift, strain) < _ROUNDING:
         return "the symmetry is exact in the file"
-    return f"made exact by moving atoms at most {shift:.1e} angstrom and straining the cell by {strain:.1e}"
+    operations = change.get("operations", ())
+    far = max((operation["displacement_angstrom"] for operation in operations), default=0.0)
+    worst = next((o["name"] for o in operations if o["displacement_angstrom"] == far and far > _ROUNDING), "")
+    missed = f"; {worst} misses atoms by up to {far:.1e} angstrom" if worst else ""
+    moved = f"moving atoms at most {shift:.1e} angstrom and straining the cell by {strain:.1e}"
+    return f"made exact by {moved}{missed}"
 
 
 def _setting_text(crystal: Mapping[str, Any]) -> str:

@@ -8,6 +8,7 @@ from sitesym.crystals import CrystalSymmetry, Site, SiteAxis
 from sitesym.crystals.operations import xyz_text
 from sitesym.reports.markup import Document
 from sitesym.reports.provenance import CAUTION, library_versions
+from sitesym.reports.reliability import reliability_entries
 
 SCHEMA = "sitesym.sites/1"
 AVERAGE_STRUCTURE = "average structure: mixed or partly filled sites count as species of their own"
@@ -60,8 +61,25 @@ def crystal_entry(symmetry: CrystalSymmetry) -> dict[str, Any]:
             "largest_strain": change.largest_strain,
             "orthogonality_error": change.orthogonality_error,
             "largest_shift_angstrom": change.largest_shift_angstrom,
+            "operations": _operation_changes(symmetry),
         },
+        **reliability_entries(symmetry),
     }
+
+
+def _operation_changes(symmetry: CrystalSymmetry) -> list[dict[str, Any]]:
+    """How far each operation of the point group is from being exact in the file."""
+    change = symmetry.idealisation
+    rows = zip(
+        symmetry.point_group.names,
+        change.operation_displacements_angstrom.tolist(),
+        change.operation_strains.tolist(),
+        strict=True,
+    )
+    return [
+        {"name": name, "displacement_angstrom": displacement, "strain": strain}
+        for name, displacement, strain in rows
+    ]
 
 
 def crystal_remarks(symmetry: CrystalSymmetry) -> list[str]:

@@ -6,6 +6,7 @@ import os
 from collections.abc import Iterator
 from pathlib import Path
 
+from sitesym.crystals.finders import DEFAULT_FINDER
 from sitesym.crystals.reading import named_format
 from sitesym.errors import ReadingError
 from sitesym.screening.rows import Row, Screener
@@ -13,13 +14,16 @@ from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
 
 def screen_folder(
-    folder: str | os.PathLike[str], tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM
+    folder: str | os.PathLike[str],
+    tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM,
+    finder: str = DEFAULT_FINDER,
+    ladder: bool = True,
 ) -> Iterator[Row]:
     """Rows of every structure file below a folder; a file that fails is a row with its error.
 
     Raises ReadingError when there is no such folder.
     """
-    screener = Screener(tolerance_angstrom)
+    screener = Screener(tolerance_angstrom, finder, ladder)
     for path in structure_files(folder):
         yield from screener.rows(path, path.relative_to(folder).as_posix())
 

@@ -7,13 +7,18 @@ from __future__ import annotations
 
 import os
 from collections.abc import Iterator
+from dataclasses import replace
 from typing import Final, TypeAlias
 
 from sitesym.crystals.crystal import Crystal
+from sitesym.crystals.finders import DEFAULT_FINDER
+from sitesym.crystals.native_output import native_output_kept
 from sitesym.crystals.reading import read_crystals
-from sitesym.crystals.symmetry import CrystalSymmetry, find_symmetry
+from sitesym.crystals.reliability import examined_symmetry
+from sitesym.crystals.symmetry import CrystalSymmetry
 from sitesym.errors import SitesymError
 from sitesym.groups import PointGroup
+from sitesym.screening.verdicts import reliability_columns, reliability_remarks
 from sitesym.tensors import independent_count, kind
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
@@ -48,15 +53,27 @@ _COUNT_COLUMNS: Final = {name: f"count_{name.replace('-', '_')}" for name in COU
 COLUMNS: Final = (
     "id", "source", "formula", "atoms", "space_group_number", "space_group", "hall_number", "crystal_system",
     "point_group", "schoenflies", "centrosymmetric", "chiral", "polar", *VERDICTS, *_COUNT_COLUMNS.values(),
-    "distinct_sites", "tolerance_angstrom", "remarks", "status", "error_code", "error_message",
+    "distinct_sites", "tolerance_angstrom", "stability", "interval_low_angstrom", "interval_high_angstrom",
+    "distance_to_centrosymmetric_angstrom", "remarks", "status", "error_code", "error_message",
 )  # fmt: skip
 
 
 class Screener:
-    """Makes rows at one tolerance (angstrom); counts are computed once for each group of integer matrices."""
+    """Makes rows at one tolerance (angstrom); counts are computed once for each group of integer matrices.
 
-    def __init__(self, tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM) -> None:
+    ``finder`` and ``ladder`` as in `examined_symmetry`. What libraries print to standard error meanwhile is
+    in the remarks of the row, so the process must be the screener's own.
+    """
+
+    def __init__(
+        self,
+        tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM,
+        finder: str = DEFAULT_FINDER,
+        ladder: bool = True,
+    ) -> None:
         self.tolerance_angstrom = tolerance_angstrom
+        self.finder = finder
+        self.ladder = ladder
         self._counts: dict[bytes, dict[str, int]] = {}
 
     def rows(self, path: str | os.PathLike[str], name: str) -> Iterator[Row]:
@@ -80,7 +97,12 @@ class Screener:
     def row(self, crystal: Crystal, identity: str, source: str) -> Row:
         """The row of one crystal, or of the error when its symmetry cannot be settled."""
         try:
-            symmetry = find_symmetry(crystal, self.tolerance_angstrom)
+            with native_output_kept() as printed:
+                symmetry = examined_symmetry(crystal, self.tolerance_angstrom, self.finder, self.ladder)
+            said = dict.fromkeys((*printed, *symmetry.found.messages))
+            symmetry = replace(
+                symmetry, crystal=crystal.with_remarks(*(f"the finder says: {line}" for line in said))
+            )
             return self._blank(identity, source) | self._answers(symmetry) | {"status": "ok"}
         except SitesymError as error:
             return self._failed(identity, source, error)
@@ -97,6 +119,7 @@ class Screener:
 
     def _answers(self, symmetry: CrystalSymmetry) -> Row:
         group, counts = symmetry.point_group, self.counts(symmetry.point_group)
+        remarks = [*symmetry.crystal.remarks, *reliability_remarks(symmetry.reliability)]
         facts: Row = {
             "formula": symmetry.crystal.formula,
             "atoms": len(symmetry.crystal),
@@ -110,7 +133,8 @@ class Screener:
             "chiral": group.is_chiral,
             "polar": group.is_polar,
             "distinct_sites": len(symmetry.sites),
-            "remarks": "; ".join(symmetry.crystal.remarks) or None,
+            "remarks": "; ".join(remarks) or None,
+            **reliability_columns(symmetry.reliability),
         }
         verdicts: Row = {column: counts[name] > 0 for column, name in VERDICTS.items()}
         counted: Row = {column: counts[name] for name, column in _COUNT_COLUMNS.items()}
