@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cached_property, lru_cache
 from typing import TYPE_CHECKING, Final
 
 import numpy as np
@@ -39,6 +39,12 @@ class Setting:
     number: int
     name: str
     codes: frozenset[int]
+
+    @cached_property
+    def point_rotations(self) -> IntArray:
+        """(k, 3, 3) the rotation parts, each once."""
+        unique = {rotation.tobytes(): rotation for rotation in self.rotations}
+        return frozen(np.array(list(unique.values()), dtype=np.int64))
 
     @property
     def text(self) -> str:
@@ -99,18 +105,15 @@ def settings_of_name(name: str) -> tuple[Setting, ...]:
     words = stem.split()
     if not suffix and len(words) > 1 and words[-1].upper() in _SUFFIX_SETTINGS:
         stem, suffix = " ".join(words[:-1]), _SUFFIX_SETTINGS[words[-1].upper()]
-    found = gemmi.find_spacegroup_by_name(stem) or _by_full_symbol(stem)
-    if found is None:
+    found = gemmi.find_spacegroup_by_name(stem)
+    same = _spelled(stem, found) or _by_full_symbol(stem)
+    if not same:
         raise SpaceGroupStatementError(
             "the H-M symbol is not known", repr(name), "a symbol of International Tables A", REMEDY
         )
-    same = [
-        group
-        for group in gemmi.spacegroup_table()
-        if group.number == found.number and (group.hm == found.hm or _is_short_form(stem, group))
-    ]
     chosen = [group for group in same if group.ext == suffix.strip().upper()] if suffix else same
-    return tuple(_tabulated(group) for group in chosen or same)
+    # Two symbols with a glide plane e may mean the same operations.
+    return tuple({setting.codes: setting for setting in map(_tabulated, chosen or same)}.values())
 
 
 @lru_cache(maxsize=230)
@@ -170,30 +173,58 @@ def _of_operations(operations: list[gemmi.Op], group: gemmi.SpaceGroup | None) -
     )
 
 
-def _is_short_form(stem: str, group: gemmi.SpaceGroup) -> bool:
-    """Whether a monoclinic symbol such as P 21/m leaves out the two 1 that tell the unique axis."""
-    words = [word for word in group.hm.split() if word != "1"]
-    return group.number in _MONOCLINIC and "".join(words) == "".join(stem.split())
-
-
-def _by_full_symbol(stem: str) -> gemmi.SpaceGroup | None:
+def _spelled(stem: str, found: gemmi.SpaceGroup | None) -> list[gemmi.SpaceGroup]:
+    """All groups of the table that a symbol may stand for; the one that gemmi finds tells the number."""
     import gemmi
 
-    hall = _full_symbols().get("".join(stem.split()))
-    return next((group for group in gemmi.spacegroup_table() if group.hall == hall), None)
+    letters = _letters(stem)
+    return [
+        group
+        for group in gemmi.spacegroup_table()
+        if (found is None or group.number == found.number)
+        and ((found is not None and group.hm == found.hm) or _stands_for(letters, group))
+    ]
+
+
+def _stands_for(letters: str, group: gemmi.SpaceGroup) -> bool:
+    """Whether a symbol is that of a monoclinic group without the two 1 that tell the unique axis, or that of
+    a group in which the glide planes a and b, written e, are both there."""
+    if group.number in _MONOCLINIC:
+        return letters == _letters(" ".join(word for word in group.hm.split() if word != "1"))
+    listed = _letters(group.hm)
+    return (
+        "e" in letters
+        and len(letters) == len(listed)
+        and all(
+            own == other or (own == "e" and other in "abc")
+            for own, other in zip(letters, listed, strict=True)
+        )
+    )
+
+
+def _by_full_symbol(stem: str) -> list[gemmi.SpaceGroup]:
+    import gemmi
+
+    halls = _full_symbols().get(_letters(stem), [])
+    return [group for group in gemmi.spacegroup_table() if group.hall in halls]
 
 
 @lru_cache(maxsize=1)
-def _full_symbols() -> dict[str, str]:
-    """Full H-M symbol without blanks to the Hall symbol of its first setting."""
+def _full_symbols() -> dict[str, list[str]]:
+    """Full H-M symbol, such as F 4_1/d -3 2/m, to the Hall symbols of its settings."""
     import spglib
 
-    kinds = [spglib.get_spacegroup_type(hall_number) for hall_number in range(530, 0, -1)]
-    return {
-        kind.international_full.replace("_", "").replace(" ", ""): kind.hall_symbol
-        for kind in kinds
-        if kind is not None
-    }
+    found: dict[str, list[str]] = {}
+    for hall_number in range(1, 531):
+        kind = spglib.get_spacegroup_type(hall_number)
+        if kind is not None:
+            found.setdefault(_letters(kind.international_full), []).append(str(kind.hall_symbol))
+    return found
+
+
+def _letters(symbol: str) -> str:
+    """A symbol without blanks, underscores and capitals, for comparison."""
+    return symbol.replace("_", "").replace(" ", "").lower()
 
 
 def _unreadable_operation(triplet: str) -> SpaceGroupStatementError:

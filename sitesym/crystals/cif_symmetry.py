@@ -10,7 +10,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final, TypeAlias
 
-from sitesym.arrays import FloatArray
+from sitesym.arrays import FloatArray, IntArray
 from sitesym.crystals.cif_magnetic import magnetic_operations
 from sitesym.crystals.cif_settings import (
     REMEDY,
@@ -183,14 +183,15 @@ def _agree(first: Reading, second: Reading, lattice: FloatArray) -> bool:
     if stated.number or second.statement != "hm":
         return False
     number = type_number(stated, lattice)
-    rotations = _rotation_set(stated)
+    rotations = _as_set(stated.point_rotations)
     return any(
-        setting.number == number and _rotation_set(setting) == rotations for setting in second.settings
+        setting.number == number and _as_set(setting.point_rotations) == rotations
+        for setting in second.settings
     )
 
 
-def _rotation_set(setting: Setting) -> set[bytes]:
-    return {rotation.tobytes() for rotation in setting.rotations}
+def _as_set(rotations: IntArray) -> set[bytes]:
+    return {rotation.tobytes() for rotation in rotations}
 
 
 def _fitting_setting(reading: Reading, lattice: FloatArray, remarks: list[str]) -> Setting:
@@ -214,7 +215,7 @@ def _fitting_setting(reading: Reading, lattice: FloatArray, remarks: list[str]) 
 
 def _check_cell(settings: list[Setting], text: str, lattice: FloatArray) -> list[Setting]:
     """The settings that leave the cell unchanged, at least one."""
-    misfits = [metric_misfit(setting.rotations, lattice) for setting in settings]
+    misfits = [metric_misfit(setting.point_rotations, lattice) for setting in settings]
     fitting = [setting for setting, misfit in zip(settings, misfits, strict=True) if misfit <= CELL_METRIC]
     if fitting:
         return fitting

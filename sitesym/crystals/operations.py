@@ -57,8 +57,10 @@ def check_closed(rotations: IntArray, translations: FloatArray) -> None:
 def metric_misfit(rotations: IntArray, lattice: FloatArray) -> float:
     """Largest change of the metric tensor a.b under any rotation, relative to the longest edge squared."""
     metric = lattice @ lattice.T
-    images = np.swapaxes(rotations, 1, 2) @ metric @ rotations
-    scale = np.sqrt(np.outer(np.diag(metric), np.diag(metric)))
+    matrices = rotations.astype(np.float64)
+    images = np.swapaxes(matrices, 1, 2) @ metric @ matrices
+    edges = np.sqrt(metric.diagonal())
+    scale = edges[:, None] * edges
     return float((np.abs(images - metric) / scale).max())
 
 

@@ -126,7 +126,7 @@ def _check_finite(rows: FloatArray, what: str, names: Sequence[str]) -> None:
 def check_cell(lattice: FloatArray) -> None:
     """The cell (rows, angstrom) has a volume and sensible lengths; else SingularCellError."""
     edges = np.linalg.norm(lattice, axis=1)
-    text = f"edges {' '.join(f'{edge:.6g}' for edge in edges)} angstrom"
+    text = f"edges {' '.join(f'{edge:.6g}' for edge in edges.tolist())} angstrom"
     if edges.max() > LARGEST_CELL_EDGE_ANGSTROM:
         raise SingularCellError(
             "the cell is absurdly large",
@@ -135,7 +135,7 @@ def check_cell(lattice: FloatArray) -> None:
             "look at the unit of length",
         )
     # The product of the edges sets the scale on which a volume counts as zero.
-    if edges.min() == 0.0 or abs(np.linalg.det(lattice)) < 1e-9 * float(np.prod(edges)):
+    if edges.min() == 0.0 or abs(np.linalg.det(lattice)) < 1e-9 * float(edges.prod()):
         raise SingularCellError(
             "the cell vectors span no volume", text, "a, b and c are not in one plane", "correct the cell"
         )
