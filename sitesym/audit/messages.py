@@ -122,5 +122,5 @@ def _residual(reading: Reading | None) -> str:
     if reading is None:
         return "not stated"
     residual = reading.residual
-    text = f"residual {100 * residual.relative:.2g} %"
+    text = f"residual {100 * residual.relative:.3g} %"
     return text if residual.p_value is None else f"{text}, p = {residual.p_value:.2g}"

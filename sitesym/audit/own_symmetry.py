@@ -14,6 +14,7 @@ from typing import Literal
 import numpy as np
 
 from sitesym.arrays import FloatArray
+from sitesym.audit.arrayspace import array_space
 from sitesym.audit.frames import standard_groups
 from sitesym.audit.neumann import Subspaces, element_signs, subspaces
 from sitesym.audit.result import TensorSymmetry
@@ -38,62 +39,68 @@ def tensor_symmetry(spaces: Subspaces, moved: FloatArray, tolerance: float) -> T
     ``moved`` (n,): coordinates in the standard orientation of the crystal's group.
     """
     kind, group = spaces.space.kind, spaces.group
-    own = kept_operations(kind, moved, tolerance)
-    expected = _expected(kind, group)[own.holohedry]
-    # Of the two holohedries the one that is expected to show more decides between equals.
-    description = _described(own)
+    own, expected = _kept(kind, moved, tolerance), _expected(kind, group)
+    description = _described(_larger(own))
     return TensorSymmetry(
         description.symbol,
         description.system,
         description.names,
-        _described(expected).symbol,
-        _relation(own.elements, expected.elements),
+        _described(_larger(expected)).symbol,
+        _relation(own, expected),
     )
 
 
 def kept_operations(kind: TensorKind, moved: FloatArray, tolerance: float) -> Kept:
     """The larger of the groups of operations, cubic or hexagonal, within a tolerance."""
-    found = []
-    for symbol in _HOLOHEDRIES:
-        deviations = _deviations(kind, symbol, moved)
-        found.append(Kept(symbol, _largest_group(symbol, deviations, tolerance)))
-    return max(found, key=lambda kept: len(kept.elements))
+    return _larger(_kept(kind, moved, tolerance))
 
 
-def _deviations(kind: TensorKind, symbol: str, moved: FloatArray) -> FloatArray:
-    """Half the change that each operation of a holohedry makes, shape (order,)."""
+def _kept(kind: TensorKind, moved: FloatArray, tolerance: float) -> tuple[Kept, ...]:
+    """The operations of each holohedry within a tolerance."""
+    return tuple(
+        Kept(symbol, _largest_group(symbol, _images(kind, symbol, moved), moved, tolerance))
+        for symbol in _HOLOHEDRIES
+    )
+
+
+def _larger(groups: tuple[Kept, ...]) -> Kept:
+    return max(groups, key=lambda kept: len(kept.elements))
+
+
+def _images(kind: TensorKind, symbol: str, moved: FloatArray) -> FloatArray:
+    """The tensor after each operation of a holohedry, shape (order, n)."""
     group = standard_groups()[symbol]
-    space = subspaces(kind, group).space
     proper = group.rotations_cart * group.determinants[:, None, None]
-    images = space.rotated(proper, moved[:, None])[:, :, 0] * element_signs(kind, group)[:, None]
-    halves: FloatArray = np.linalg.norm(images - moved, axis=1) / 2.0
-    return halves
+    turned = array_space(kind).rotated(proper, moved[:, None])[:, :, 0]
+    images: FloatArray = turned * element_signs(kind, group)[:, None]
+    return images
 
 
-def _largest_group(symbol: str, deviations: FloatArray, tolerance: float) -> frozenset[int]:
-    """Operations added in order of their deviation while all their products stay within tolerance."""
+def _largest_group(
+    symbol: str, images: FloatArray, moved: FloatArray, tolerance: float
+) -> frozenset[int]:
+    """Operations added in order of what they change, while the mean over the group stays within tolerance."""
     group = standard_groups()[symbol]
-    near = {int(k) for k in np.flatnonzero(deviations <= tolerance)}
+    changes = np.linalg.norm(images - moved, axis=1)
+    # The mean over a group that holds an operation is at least half as far as its image.
+    near = {int(place) for place in np.flatnonzero(changes <= 2.0 * tolerance)}
     kept: set[int] = {0}
-    for element in np.argsort(deviations, kind="stable").tolist():
+    for element in np.argsort(np.round(changes, 12), kind="stable").tolist():
         if element in near and element not in kept:
             wider = group.abstract.closure([*kept, element])
-            if wider <= near:
+            if wider <= near and np.linalg.norm(images[sorted(wider)].mean(axis=0) - moved) <= tolerance:
                 kept = wider
     return frozenset(kept)
 
 
 @lru_cache(maxsize=512)
-def _expected(kind: TensorKind, group: PointGroup) -> dict[str, Kept]:
+def _expected(kind: TensorKind, group: PointGroup) -> tuple[Kept, ...]:
     """What a tensor without special values shows in a crystal class, for each holohedry."""
     spaces = subspaces(kind, group)
     # Incommensurate numbers: no accidental equality, the same in every run.
     numbers = np.sqrt(np.arange(2.0, 2.0 + spaces.independent)) % 1.0 + 0.5
     moved = spaces.allowed.T @ numbers
-    return {
-        symbol: Kept(symbol, _largest_group(symbol, _deviations(kind, symbol, moved), _EXACT * len(moved)))
-        for symbol in _HOLOHEDRIES
-    }
+    return _kept(kind, moved, _EXACT * len(moved))
 
 
 @dataclass(frozen=True)
@@ -114,10 +121,12 @@ def _description(holohedry: str, elements: tuple[int, ...]) -> _Description:
 
 
 def _relation(
-    own: frozenset[int], expected: frozenset[int]
+    own: tuple[Kept, ...], expected: tuple[Kept, ...]
 ) -> Literal["same", "higher", "lower", "other"]:
-    if own == expected:
-        return "same"
-    if own > expected:
-        return "higher"
-    return "lower" if own < expected else "other"
+    """How the operations kept compare with those expected, over both holohedries."""
+    pairs = [(mine.elements, theirs.elements) for mine, theirs in zip(own, expected, strict=True)]
+    misses = any(theirs - mine for mine, theirs in pairs)
+    adds = any(mine - theirs for mine, theirs in pairs)
+    if misses:
+        return "other" if adds else "lower"
+    return "higher" if adds else "same"

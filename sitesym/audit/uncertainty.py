@@ -1,8 +1,14 @@
-"""What counts as noise: a relative level, stated standard uncertainties, and the rounding of printed digits."""
+"""What counts as noise: a relative level, stated standard uncertainties, the rounding of printed digits.
+
+One rule serves all: a tensor obeys unless chance alone gives so large a residual less than once in a thousand
+times. A relative level is taken to be spread evenly over the N components that index symmetry leaves, so that
+each has the standard uncertainty level * |T| / sqrt(N) in the orthonormal metric.
+"""
 
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import Final
 
 import numpy as np
@@ -17,10 +23,6 @@ from sitesym.audit.result import Residual
 #: A tensor with known uncertainties obeys when chance gives so large a chi-squared at least this often.
 SMALLEST_P: Final = 0.001
 
-#: A printed number stands for an interval; its error has the variance step^2 / 12. The tolerance allows this
-#: many standard
-#: deviations of all of them together.
-_ROUNDING_DEVIATIONS = 3.0
 #: An uncertainty stated as zero counts as this fraction of the largest entry: no weight can be infinite.
 _SMALLEST_SIGMA = 1e-6
 #: Rounding of the computer's numbers, relative to the tensor.
@@ -50,17 +52,17 @@ class Noise:
 
         With known uncertainties a bound for screening only: the verdict is that of `chi_squared`.
         """
-        share = spaces.constraints / max(spaces.constraints + spaces.independent, 1)
+        share = 1.0 / max(spaces.constraints + spaces.independent, 1)
         square = (_NUMERICAL * length) ** 2
         if self.step is not None:
             rounding = float(((spaces.space.weights * self.step) ** 2).sum()) / 12.0
-            square += _ROUNDING_DEVIATIONS**2 * rounding * share
-        if self.sigma is None:
-            # Where everything must vanish the tensor sets no scale for its own noise.
-            square += (self.relative * length) ** 2 if spaces.independent else 0.0
-        else:
+            square += largest_by_chance(spaces.constraints) * rounding * share
+        if self.sigma is not None:
             variance = float(((spaces.space.weights * self.sigma) ** 2).sum())
             square += _SCREENING_DEVIATIONS**2 * variance
+        elif spaces.independent:
+            # Where everything must vanish the tensor sets no scale for its own noise.
+            square += largest_by_chance(spaces.constraints) * (self.relative * length) ** 2 * share
         return float(np.sqrt(square))
 
     def drowns(self, spaces: Subspaces, coordinates: FloatArray) -> bool:
@@ -79,8 +81,8 @@ class Noise:
         if self.sigma is not None:
             tolerance = _ENTRY_DEVIATIONS * self.sigma
         else:
-            share = _ENTRY_DEVIATIONS * self.relative * length / np.sqrt(spaces.space.size)
-            tolerance = min(share, self.relative * length) / weights
+            share = self.relative * length / np.sqrt(spaces.constraints + spaces.independent)
+            tolerance = _ENTRY_DEVIATIONS * share / weights
         if self.step is not None:
             tolerance = tolerance + self.step
         floored: FloatArray = tolerance + _NUMERICAL * length / weights
@@ -104,7 +106,9 @@ def noise_of(
 def judged(
     noise: Noise, spaces: Subspaces, coordinates: FloatArray, to_group_axes: FloatArray
 ) -> Residual:
-    """The residual of a tensor with coordinates (n,) in its own axes; the rotation (3, 3) leads to the group's."""
+    """The residual of a tensor with coordinates (n,) in its own axes; the rotation (3, 3) leads to the
+    group's.
+    """
     moved = spaces.space.rotated(to_group_axes[None], coordinates[:, None])[0, :, 0]
     absolute = float(np.linalg.norm(spaces.forbidden_part(moved)))
     length = float(np.linalg.norm(coordinates))
@@ -138,6 +142,14 @@ def chi_squared(
     left, right = (basis @ design) / scale[:, None], (basis @ coordinates) / scale
     fitted = left @ np.linalg.lstsq(left, right, rcond=None)[0] if spaces.independent else 0.0
     return float(((right - fitted) ** 2).sum()), spaces.constraints
+
+
+@lru_cache(maxsize=256)
+def largest_by_chance(dof: int) -> float:
+    """The chi-squared that chance exceeds once in a thousand times."""
+    from scipy.special import chdtri
+
+    return float(chdtri(dof, SMALLEST_P)) if dof else 0.0
 
 
 def upper_tail(chi2: float, dof: int) -> float:
