@@ -104,7 +104,7 @@ def _require_unitary(group: PointGroup) -> None:
 
 
 def _require_standard(oriented: PointGroup) -> None:
-    """Labels mean nothing elsewhere: the operations must be those of the symbol in its standard orientation."""
+    """Labels mean nothing elsewhere: the operations must be those that the symbol names."""
     if oriented.system == "non-crystallographic":
         return
     standard = PointGroup.from_symbol(oriented.symbol).rotations_cart
