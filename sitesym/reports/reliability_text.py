@@ -20,20 +20,16 @@ def reliability_lines(crystal: Mapping[str, Any]) -> Iterator[tuple[str, str]]:
 
 
 def _ladder_text(ladder: Mapping[str, Any]) -> str:
-    """Robust or fragile with the interval; the groups along the ladder; the verdicts that flip.
+    """Robust or fragile, the groups along the ladder, the verdicts that flip.
 
-    >>> rung = {"space_group": "P4mm", "tolerance_angstrom": 0.01}
-    >>> print(_ladder_text({"fragile": False, "stable_interval_angstrom": [1e-5, 0.1], "flips": [],
-    ...     "window_angstrom": [0.001, 0.1], "rungs": [rung]}))
-    robust: the group holds from 1e-05 to 0.1 angstrom; a change within 0.001 to 0.1 would be fragile
-    P4mm at 0.01
+    >>> rungs = [{"space_group": "P4mm", "tolerance_angstrom": length} for length in (0.01, 0.1)]
+    >>> _ladder_text({"fragile": False, "window_angstrom": [0.001, 0.1], "rungs": rungs, "flips": []})
+    'robust: P4mm from 0.01 to 0.1 angstrom'
     """
     low, high = ladder["window_angstrom"]
-    start, end = ladder["stable_interval_angstrom"]
-    held = f"at {start:g} angstrom only" if start == end else f"from {start:g} to {end:g} angstrom"
-    word, would_be = ("fragile", "is") if ladder["fragile"] else ("robust", "would be")
-    lines = [f"{word}: the group holds {held}; a change within {low:g} to {high:g} {would_be} fragile"]
-    lines.append("; ".join(_stretches(ladder["rungs"])))
+    changes = f"fragile, the group changes within {low:g} to {high:g} angstrom"
+    word = changes if ladder["fragile"] else "robust"
+    lines = [f"{word}: {'; '.join(_stretches(ladder['rungs']))} angstrom"]
     lines.extend(_flip_texts(ladder["flips"]))
     return "\n".join(lines)
 
@@ -41,7 +37,7 @@ def _ladder_text(ladder: Mapping[str, Any]) -> str:
 def _stretches(rungs: Sequence[Mapping[str, Any]]) -> Iterator[str]:
     for group, members in groupby(rungs, key=lambda rung: rung["space_group"]):
         lengths = [rung["tolerance_angstrom"] for rung in members]
-        span = f"at {lengths[0]:g}" if len(lengths) == 1 else f"{lengths[0]:g} to {lengths[-1]:g}"
+        span = f"at {lengths[0]:g}" if len(lengths) == 1 else f"from {lengths[0]:g} to {lengths[-1]:g}"
         yield f"{group or 'no answer'} {span}"
 
 
@@ -58,28 +54,29 @@ def _flip_texts(flips: Sequence[Mapping[str, Any]]) -> Iterator[str]:
 
 
 def _distance_text(distance: Mapping[str, Any]) -> str:
-    """How far from inversion, and from a reversed polar axis where that is another arrangement."""
+    """How far from inversion, and from a reversed polar axis where that is another arrangement.
+
+    >>> nearest = {"operation": "-1", "largest_displacement_angstrom": 0.106, "checked": True,
+    ...     "rms_displacement_angstrom": 0.0615, "parent": "P4/mmm"}
+    >>> _distance_text({"note": None, "centrosymmetric": nearest, "nonpolar": nearest})
+    'to inversion: atoms move 0.1060 angstrom at most, 0.0615 r.m.s., to P4/mmm in this cell'
+    """
     if distance["note"]:
         return str(distance["note"])
     central, nonpolar = distance["centrosymmetric"], distance["nonpolar"]
-    lines = []
-    if central is not None:
-        lines.append(f"to an inversion centre: {_nearest_text(central)}")
+    lines = [] if central is None else [f"to inversion: {_nearest_text(central)}"]
     if nonpolar is not None and nonpolar["operation"] != "-1":
         lines.append(f"to {nonpolar['operation']}, which reverses the polar axis: {_nearest_text(nonpolar)}")
-    if lines:
-        lines.append(f"cell {distance['cell']}")
     return "\n".join(lines)
 
 
 def _nearest_text(nearest: Mapping[str, Any]) -> str:
-    moved = (
-        f"atoms move {nearest['largest_displacement_angstrom']:.4f} angstrom at most, "
-        f"{nearest['rms_displacement_angstrom']:.4f} r.m.s."
+    largest, rms = nearest["largest_displacement_angstrom"], nearest["rms_displacement_angstrom"]
+    moved = f"atoms move {largest:.4f} angstrom at most, {rms:.4f} r.m.s."
+    parent = (
+        f"to {nearest['parent']} in this cell" if nearest["checked"] else "to no crystal that was confirmed"
     )
-    if not nearest["checked"]:
-        return f"{moved}; the arrangement could not be confirmed"
-    return f"{moved}; the arrangement is {nearest['parent']}"
+    return f"{moved}, {parent}"
 
 
 def _second_text(second: Mapping[str, Any], crystal: Mapping[str, Any]) -> str:

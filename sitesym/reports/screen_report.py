@@ -51,10 +51,15 @@ def screen_text(document: Document) -> str:
     rows = document["rows"]
     blocks = [labelled("folder", document["folder"]), labelled("tolerance", _tolerance(document))]
     blocks = ["\n".join(blocks)]
-    good = [row for row in rows if row["status"] == "ok"]
+    good = [row for row in rows if row["status"] == "ok" and row.get("stability") != "fragile"]
+    fragile = [row for row in rows if row["status"] == "ok" and row.get("stability") == "fragile"]
     bad = [row for row in rows if row["status"] != "ok"]
     if good:
         blocks.append(table(_HEAD, map(_shown, good), right=_RIGHT))
+    if fragile:
+        drawn = table((*_HEAD, "holds from", "to"), map(_fragile, fragile), right=(*_RIGHT, 14, 15))
+        blocks.append(f"fragile: the group changes near the tolerance (angstrom)\n\n{drawn}")
+    if good or fragile:
         blocks.append(paragraph("A dot is a no. Columns d, eps and c count independent components."))
     if bad:
         blocks.append("\n".join(["could not be read or settled", *map(_failure, bad)]))
@@ -90,6 +95,12 @@ def _shown(row: Row) -> list[object]:
     """The cells a person sees; a dot for no, so that the yes stands out."""
     cells = (row[column] for _, column in _SHOWN)
     return ["." if cell is False else cell for cell in cells]
+
+
+def _fragile(row: Row) -> list[object]:
+    """The cells a person sees of a fragile structure, and the tolerances between which its group holds."""
+    low, high = row["interval_low_angstrom"], row["interval_high_angstrom"]
+    return [*_shown(row), f"{low:g}", f"{high:g}"]
 
 
 def _with_status(document: Document) -> tuple[tuple[str, ...], list[list[object]]]:
