@@ -20,6 +20,10 @@
     │   ├── NotAGroupError
     │   └── SymmetryNotFoundError
     ├── TensorInputError         an index symmetry, a kind or an array of values that is not understood
+    ├── ScreeningError           worker processes that cannot do their work
+    │   ├── CrashError
+    │   ├── TooSlowError
+    │   └── TooMuchMemoryError
     └── StoreError               a store of results that cannot be opened, read or written
 
 Every error carries what happened, the offending value, the rule it broke and the next step. The constructor
@@ -173,6 +177,30 @@ class TensorInputError(SitesymError):
     """An index symmetry, a tensor kind or an array of values that is not understood."""
 
     code = "tensor-input"
+
+
+class ScreeningError(SitesymError):
+    """Worker processes that cannot do their work."""
+
+    code = "screening"
+
+
+class CrashError(ScreeningError):
+    """A structure that ended the process working on it."""
+
+    code = "crashed"
+
+
+class TooSlowError(ScreeningError):
+    """A structure that took more time than one structure may."""
+
+    code = "timed-out"
+
+
+class TooMuchMemoryError(ScreeningError):
+    """A structure that took more memory than one structure may."""
+
+    code = "out-of-memory"
 
 
 class StoreError(SitesymError):

@@ -7,9 +7,9 @@ from typing import Any, Final
 import click
 import numpy as np
 
-from sitesym.cli.options import emit, output_options, reliability_options, split_names
+from sitesym.cli.options import emit, output_options, reading_options, reliability_options, split_names
 from sitesym.cli.subject import Subject, read_matrix, subject_arguments, subject_of
-from sitesym.crystals import AXES_NAMES, Site
+from sitesym.crystals import AXES_NAMES, ReadingChoices, Site
 from sitesym.errors import TensorInputError, UsageError
 from sitesym.reports.allowed import allowed_document
 from sitesym.reports.sites import site_entry
@@ -51,6 +51,7 @@ EVERYDAY: Final = (
 )
 @click.option("--site", "label", metavar="LABEL", help="Tensors of one atom: the group of its site.")
 @reliability_options
+@reading_options
 @output_options
 def command(
     file: str | None,
@@ -63,6 +64,7 @@ def command(
     tolerance_angstrom: float,
     finder: str,
     ladder: str,
+    reading: ReadingChoices,
     format_name: str,
     output: str | None,
 ) -> None:
@@ -71,7 +73,7 @@ def command(
     Without --property: the ten properties most asked for. Exit code 0 also when a property is forbidden: the
     count of independent components is then 0.
     """
-    subject = subject_of(file, symbol, tolerance_angstrom, finder, ladder == "on")
+    subject = subject_of(file, symbol, tolerance_angstrom, finder, ladder == "on", reading)
     site = _site(subject, label)
     kinds = _kinds(names, jahn, site is not None or subject.symmetry is None)
     axes = subject.axes(*_axes_choice(axes_name, rotation, file))

@@ -5,8 +5,9 @@ from __future__ import annotations
 import click
 import numpy as np
 
-from sitesym.cli.options import output_options, tolerance_option, write
+from sitesym.cli.options import output_options, reading_options, tolerance_option, write
 from sitesym.cli.subject import subject_arguments, subject_of
+from sitesym.crystals import ReadingChoices
 from sitesym.groups import character_table
 from sitesym.reports.irreps import irreps_document
 from sitesym.reports.irreps_report import irreps_text
@@ -19,6 +20,7 @@ from sitesym.tensors import kind
 @click.option("--matrices", is_flag=True, help="Print the matrices in text too; JSON always has them.")
 @click.option("--reduce", "name", metavar="NAME", help="How often each irrep occurs in this tensor.")
 @tolerance_option
+@reading_options
 @output_options
 def command(
     file: str | None,
@@ -26,11 +28,12 @@ def command(
     matrices: bool,
     name: str | None,
     tolerance_angstrom: float,
+    reading: ReadingChoices,
     format_name: str,
     output: str | None,
 ) -> None:
     """Classes, exact characters, labels and functions of the point group of FILE, or SYMBOL, in ieee axes."""
-    subject = subject_of(file, symbol, tolerance_angstrom)
+    subject = subject_of(file, symbol, tolerance_angstrom, reading=reading)
     axes = subject.axes("ieee")
     table = character_table(subject.group, np.array(axes["rotation_from_file"]))
     document = irreps_document(table, axes, subject.crystal, None if name is None else kind(name))

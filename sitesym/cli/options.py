@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import wraps
 from pathlib import Path
-from typing import Any, TypeVar
+from typing import Any, TypeVar, cast
 
 import click
 
+from sitesym.crystals import MARKS, STATEMENTS, ReadingChoices
 from sitesym.errors import UsageError
 from sitesym.reports.markup import Document
 from sitesym.reports.render import FORMATS, render
@@ -58,6 +60,41 @@ def reliability_options(command: _Command) -> _Command:
         help="Try other tolerances, and measure the distance from inversion and a reversed polar axis.",
     )
     return tolerance_option(finder(ladder(command)))
+
+
+def reading_options(command: _Command) -> _Command:
+    """``--frame``, ``--block``, ``--symmetry-from`` and ``--distinguish``, together as ``reading``."""
+
+    @wraps(command)
+    def collected(
+        *args: Any,
+        frame: str | None,
+        block: str | None,
+        symmetry_from: str | None,
+        distinguish: tuple[str, ...],
+        **others: Any,
+    ) -> Any:
+        reading = ReadingChoices(
+            frame=frame, block=block, symmetry_from=symmetry_from, distinguish=split_names(distinguish)
+        )
+        return command(*args, reading=reading, **others)
+
+    frame_choice = click.option(
+        "--frame", metavar="last|N", help="Of a file with several structures: the last, or number N from 1."
+    )
+    block_choice = click.option("--block", metavar="NAME", help="Of a CIF: the data block of this name.")
+    symmetry = click.option(
+        "--symmetry-from",
+        type=click.Choice(STATEMENTS),
+        help="Of a CIF that contradicts itself: the only statement of symmetry to believe.",
+    )
+    told_apart = click.option(
+        "--distinguish",
+        multiple=True,
+        metavar="MARKS",
+        help=f"Tell atoms apart also by these: {', '.join(MARKS)}; several separated by commas.",
+    )
+    return cast(_Command, frame_choice(block_choice(symmetry(told_apart(collected)))))
 
 
 def emit(document: Document, format_name: str, output: str | None) -> None:

@@ -15,6 +15,7 @@ from sitesym.crystals import (
     AXES_NAMES,
     DEFAULT_FINDER,
     CrystalSymmetry,
+    ReadingChoices,
     axes_for,
     examined_symmetry,
     read_crystal,
@@ -76,8 +77,10 @@ def subject_of(
     tolerance_angstrom: float,
     finder: str = DEFAULT_FINDER,
     ladder: bool = False,
+    reading: ReadingChoices | None = None,
 ) -> Subject:
-    """The crystal of a file or the group of a symbol; ``finder`` and ``ladder`` as in `examined_symmetry`.
+    """The crystal of a file or the group of a symbol; ``finder`` and ``ladder`` as in `examined_symmetry`,
+    ``reading`` as in `read_crystal`.
 
     Raises UsageError unless exactly one of them is given, and the errors of reading and of symmetry finding.
     """
@@ -90,16 +93,18 @@ def subject_of(
         )
     if symbol is not None:
         return Subject(PointGroup.from_symbol(symbol))
-    symmetry = symmetry_of_file(str(file), tolerance_angstrom, finder, ladder)
+    symmetry = symmetry_of_file(str(file), tolerance_angstrom, finder, ladder, reading)
     return Subject(symmetry.point_group, symmetry)
 
 
-def symmetry_of_file(file: str, tolerance_angstrom: float, finder: str, ladder: bool) -> CrystalSymmetry:
+def symmetry_of_file(
+    file: str, tolerance_angstrom: float, finder: str, ladder: bool, reading: ReadingChoices | None = None
+) -> CrystalSymmetry:
     """The symmetry of the one crystal of a file; what the finder prints becomes remarks of the crystal.
 
     Raises the errors of reading and of symmetry finding.
     """
-    crystal = read_crystal(file)
+    crystal = read_crystal(file, **(reading or {}))
     with native_output_kept() as printed:
         symmetry = examined_symmetry(crystal, tolerance_angstrom, finder, ladder)
     said = dict.fromkeys((*printed, *symmetry.found.messages))

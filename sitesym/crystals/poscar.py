@@ -69,7 +69,7 @@ def read_poscar(text: str, file: str) -> Crystal:
 def _scale_factors(line: str) -> FloatArray:
     tokens = line.split()
     count = 3 if len(tokens) >= 3 and all(map(_is_number, tokens[:3])) else 1
-    scales = _numbers([line], count, "scale factor")[0]
+    scales: FloatArray = _numbers([line], count, "scale factor")[0]
     if not scales.all() or (count == 3 and scales.min() < 0.0):
         raise SingularCellError(
             "the scale factor leaves no cell",

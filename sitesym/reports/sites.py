@@ -6,12 +6,12 @@ from typing import Any
 
 from sitesym.crystals import CrystalSymmetry, Site, SiteAxis
 from sitesym.crystals.operations import xyz_text
+from sitesym.crystals.remarks import symmetry_remarks
 from sitesym.reports.markup import Document
 from sitesym.reports.provenance import CAUTION, library_versions
 from sitesym.reports.reliability import reliability_entries
 
 SCHEMA = "sitesym.sites/1"
-AVERAGE_STRUCTURE = "average structure: mixed or partly filled sites count as species of their own"
 
 
 def sites_document(symmetry: CrystalSymmetry) -> Document:
@@ -42,6 +42,7 @@ def crystal_entry(symmetry: CrystalSymmetry) -> dict[str, Any]:
         "format": crystal.source.format,
         "part": crystal.source.part or None,
         "declared_space_group": crystal.declared_space_group or None,
+        "distinguished_by": ["element", "occupancy", *crystal.distinguish],
         "space_group_number": setting.number,
         "space_group": setting.symbol,
         "hall_number": setting.hall_number,
@@ -84,10 +85,7 @@ def _operation_changes(symmetry: CrystalSymmetry) -> list[dict[str, Any]]:
 
 def crystal_remarks(symmetry: CrystalSymmetry) -> list[str]:
     """Remarks of reading, and what stands in every result about this crystal."""
-    remarks = list(symmetry.crystal.remarks)
-    if not symmetry.crystal.is_ordered:
-        remarks.append(AVERAGE_STRUCTURE)
-    return remarks
+    return list(symmetry_remarks(symmetry))
 
 
 def site_entry(site: Site) -> dict[str, Any]:

@@ -1,0 +1,45 @@
+"""What must stand beside every result about a crystal: what was noticed, disorder, declared against found."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from sitesym.crystals.symmetry import CrystalSymmetry
+
+AVERAGE_STRUCTURE = "average structure: mixed or partly filled sites count as species of their own"
+
+# Operations are counted in whole multiples; half way to the next lower or higher one.
+_MORE = 1.5
+
+
+def symmetry_remarks(symmetry: CrystalSymmetry) -> tuple[str, ...]:
+    """Remarks of reading, then what follows from the crystal's contents and its symmetry."""
+    crystal = symmetry.crystal
+    remarks = list(crystal.remarks)
+    if not crystal.is_ordered:
+        remarks.append(AVERAGE_STRUCTURE)
+    if crystal.distinguish:
+        remarks.append(f"atoms are told apart by element, occupancy, {', '.join(crystal.distinguish)}")
+    return (*remarks, *_declared_remarks(symmetry))
+
+
+def _declared_remarks(symmetry: CrystalSymmetry) -> tuple[str, ...]:
+    """A remark where the file declares fewer or more operations for a volume than are found."""
+    crystal = symmetry.crystal
+    if not (crystal.declared_space_group and crystal.declared_operations):
+        return ()
+    declared = crystal.declared_operations / abs(np.linalg.det(crystal.lattice))
+    volume = abs(np.linalg.det(symmetry.conventional_lattice))
+    ratio = len(symmetry.setting.rotations) / volume / float(declared)
+    found = f"{symmetry.space_group_symbol} is found at {symmetry.tolerance_angstrom:g} angstrom"
+    if ratio > _MORE:
+        return (
+            f"the file declares {crystal.declared_space_group}, {found}, with {ratio:.0f} times as many "
+            "operations for the same volume: possible missed symmetry",
+        )
+    if ratio < 1.0 / _MORE:
+        return (
+            f"the file declares {crystal.declared_space_group}, {found}, with only 1 in {1.0 / ratio:.0f} of "
+            "its operations",
+        )
+    return ()
