@@ -3,20 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from sitesym.audit.as_read import ReadMatrix, chosen_reading, matrix_as_read
 from sitesym.audit.auditing import audit
 from sitesym.audit.crosschecks import CrossCheck
 from sitesym.audit.crystal_references import CrystalReference, CrystalShelf, Host
+from sitesym.audit.measurement import Measurement
 from sitesym.audit.projection import Projection, nearest_allowed
 from sitesym.audit.records import Record, records_of_file
 from sitesym.audit.related import RelatedRecord, checks_among
 from sitesym.audit.result import AuditResult
 from sitesym.audit.stability import ELASTIC_KINDS, Stability, elastic_stability
 from sitesym.audit.units import unit_warnings
-from sitesym.errors import SitesymError, TensorInputError
+from sitesym.errors import SitesymError, TensorInputError, UsageError
 
 
 @dataclass(frozen=True, eq=False)
@@ -80,27 +81,48 @@ def audited_record(
     explain: bool = True,
     default: CrystalReference | None = None,
 ) -> AuditedRecord:
-    """One record audited; an error of reading it or its crystal stands in the answer."""
+    """One record audited; what prevents that, its own error or that of its crystal, stands in the answer."""
     if record.measurement is None:
         return AuditedRecord(record, error=record.error)
-    measurement = record.measurement
-    warnings = unit_warnings(measurement.kind, measurement.unit, measurement.values)
-    reference = record.crystal or default
+    measurement, reference = record.measurement, record.crystal or default
+    told = AuditedRecord(
+        record, reference, warnings=unit_warnings(measurement.kind, measurement.unit, measurement.values)
+    )
     try:
-        if reference is None:
-            raise TensorInputError(
-                "the record names no crystal",
-                "",
-                "a path, the text of a structure file or a point-group symbol under crystal",
-                "add it, or give one for all such records",
-            )
-        host = shelf.host(reference)
-        result = audit(measurement, host, noise, explain)
-        reading = chosen_reading(result)
-        read = None if reading is None else matrix_as_read(result, reading)
-        return AuditedRecord(record, reference, host, result, read, _stability(result, read), warnings)
+        return _answered(told, measurement, shelf, noise, explain)
+    except UsageError:
+        raise
     except SitesymError as error:
-        return AuditedRecord(record, reference, warnings=warnings, error=error.in_file(record.place))
+        return replace(told, error=error.in_file(record.place))
+    except Exception as error:  # noqa: BLE001  the worker boundary: one record must not end a run
+        return replace(told, error=_unexpected(error).in_file(record.place))
+
+
+def _answered(
+    told: AuditedRecord, measurement: Measurement, shelf: CrystalShelf, noise: float, explain: bool
+) -> AuditedRecord:
+    if told.crystal is None:
+        raise TensorInputError(
+            "the record names no crystal",
+            "",
+            "a path, the text of a structure file or a point-group symbol under crystal",
+            "add it, or give one for all such records",
+        )
+    host = shelf.host(told.crystal)
+    result = audit(measurement, host, noise, explain)
+    reading = chosen_reading(result)
+    read = None if reading is None else matrix_as_read(result, reading)
+    return replace(told, host=host, result=result, read=read, stability=_stability(result, read))
+
+
+def _unexpected(error: Exception) -> SitesymError:
+    """An error nobody foresaw, as an answer can hold it."""
+    return SitesymError(
+        "unexpected failure of the program",
+        f"{type(error).__name__}: {error}",
+        "errors of a record are foreseen",
+        "report it with the record",
+    )
 
 
 def _stability(result: AuditResult, read: ReadMatrix | None) -> Stability | None:

@@ -37,8 +37,8 @@ def evidence(result: AuditResult | None) -> dict[str, Any]:
     symmetry = result.tensor_symmetry
     return {
         "stated": None if result.stated is None else _stated_entry(result.stated),
-        "best": None if result.best is None else _reading_entry(result.best),
-        "rivals": [_reading_entry(rival) for rival in result.rivals],
+        "best": None if result.best is None else reading_entry(result.best),
+        "rivals": [reading_entry(rival) for rival in result.rivals],
         "index_symmetry": _index_entry(result.index_symmetry),
         "forbidden": [_deviation_entry(deviation) for deviation in result.forbidden],
         "relations": [_deviation_entry(deviation) for deviation in result.relations],
@@ -72,7 +72,8 @@ def _stated_entry(reading: Reading) -> dict[str, Any]:
     }
 
 
-def _reading_entry(reading: Reading) -> dict[str, Any]:
+def reading_entry(reading: Reading) -> dict[str, Any]:
+    """A reading: how the array is read, how well it then obeys, and what that cost."""
     residual = reading.residual
     return {
         "axes": reading.axes,

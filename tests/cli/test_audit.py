@@ -1,0 +1,203 @@
+"""`sitesym audit`: the demo, the formats, the exit codes, the projected tensors."""
+
+from __future__ import annotations
+
+import csv
+import io
+import json
+from pathlib import Path
+from typing import Any
+
+import pytest
+from click.testing import CliRunner, Result
+
+from sitesym.cli.main import main
+
+STRUCTURES = Path(__file__).parents[2] / "structures"
+DEMO = STRUCTURES / "measurements" / "tensors.yaml"
+COMPONENTS = STRUCTURES / "measurements" / "components.csv"
+#: Fields that a record of the document has, whatever happened to it.
+CONTRACT = {
+    "id",
+    "verdict",
+    "quantity",
+    "group",
+    "stated",
+    "best",
+    "rivals",
+    "index_symmetry",
+    "forbidden",
+    "relations",
+    "equivalent_axes",
+    "tensor_symmetry",
+    "stability",
+    "error",
+}
+CLEAN = {
+    "id": "a",
+    "crystal": "m-3m",
+    "quantity": "permittivity",
+    "unit": "1",
+    "axes": "file",
+    "values": [[9.8, 0, 0], [0, 9.8, 0], [0, 0, 9.8]],
+}
+
+
+def invoke(*arguments: object) -> Result:
+    return CliRunner().invoke(main, ["audit", *map(str, arguments)])
+
+
+def strict(text: str) -> Any:
+    """JSON without NaN or infinity."""
+
+    def refuse(name: str) -> None:
+        raise AssertionError(name)
+
+    return json.loads(text, parse_constant=refuse)
+
+
+def written(folder: Path, *records: object) -> Path:
+    path = folder / "records.jsonl"
+    path.write_text("\n".join(json.dumps(record) for record in records), encoding="utf-8")
+    return path
+
+
+@pytest.fixture(scope="module")
+def demo() -> dict[str, Any]:
+    """The demo's document."""
+    result = invoke(DEMO, COMPONENTS, "--format", "json")
+    assert result.exit_code == 1
+    document: dict[str, Any] = strict(result.output)
+    return document
+
+
+def by_id(document: dict[str, Any]) -> dict[str, dict[str, Any]]:
+    return {record["id"]: record for record in document["records"]}
+
+
+def test_the_demo_gives_the_verdicts_its_remarks_announce(demo: dict[str, Any]) -> None:
+    assert {name: record["verdict"] for name, record in by_id(demo).items()} == {
+        "niobate-e": "consistent",
+        "quartz-d": "consistent-otherwise",
+        "titanate-d": "consistent-otherwise",
+        "oxide-e": "violates",
+        "rutile-c": "consistent",
+        "rutile-s": "consistent",
+        "spinel-c": "consistent",
+        "niobate-eps": "consistent",
+    }
+
+
+def test_the_demo_names_what_is_wrong(demo: dict[str, Any]) -> None:
+    records = by_id(demo)
+    assert records["quartz-d"]["best"]["axes"].startswith("ieee, turned by")
+    assert records["titanate-d"]["best"]["order"] == "11 22 33 12 23 13"
+    slip = records["oxide-e"]["best"]["slip"]
+    assert (slip["sort"], slip["entries"][0] in ("31", "32")) == ("sign", True)
+    assert records["spinel-c"]["stability"]["answer"] == "unstable"
+    assert "kbar" in records["spinel-c"]["warnings"][0]
+    assert records["niobate-eps"]["stated"]["dof"] == 3
+    assert [check["holds"] for check in demo["cross_checks"]] == [True]
+
+
+def test_every_record_has_the_fields_of_the_contract(demo: dict[str, Any]) -> None:
+    assert demo["schema"] == "sitesym.audit/1"
+    for record in demo["records"]:
+        assert set(record) >= CONTRACT
+        assert set(record["stated"]) >= {"relative_residual", "chi2", "dof", "p_value"}
+        assert set(record["best"]) >= {"axes", "rotation", "order", "factor", "relative_residual"}
+
+
+def test_the_summary_counts_what_the_stated_axes_alone_would_have_said(demo: dict[str, Any]) -> None:
+    summary = demo["summary"]
+    assert (summary["records"], summary["verdicts"]["violates"], summary["errors"]) == (8, 1, 0)
+    assert summary["violating_in_stated_axes_alone"] == 3
+
+
+def test_the_first_line_of_the_text_is_the_verdict_and_the_second_what_to_do(tmp_path: Path) -> None:
+    first, second = invoke(written(tmp_path, CLEAN)).output.splitlines()[:2]
+    assert first.startswith("a: consistent: permittivity in class m-3m")
+    assert second.startswith("  do: ")
+
+
+def test_an_error_is_told_with_its_place_and_next_step(tmp_path: Path) -> None:
+    result = invoke(written(tmp_path, CLEAN, CLEAN | {"id": "b", "quantity": "permitivity"}))
+    assert result.exit_code == 0
+    assert "b: error:" in result.output
+    assert "line 2" in result.output
+    assert "near: permittivity" in " ".join(result.output.split())
+    assert "1 with errors" in " ".join(result.output.split())
+
+
+def test_an_error_has_the_same_fields_in_json(tmp_path: Path) -> None:
+    result = invoke(written(tmp_path, CLEAN | {"values": [[1]]}), "--format", "json")
+    (record,) = strict(result.output)["records"]
+    assert set(record) >= CONTRACT
+    assert record["verdict"] is None
+    assert record["error"]["code"] == "tensor-input"
+    assert result.exit_code == 3
+
+
+@pytest.mark.parametrize("content", ["", "{", '{"id": "x"}', "[]"])
+def test_exit_is_3_when_nothing_could_be_read(tmp_path: Path, content: str) -> None:
+    path = tmp_path / "a.json"
+    path.write_text(content, encoding="utf-8")
+    assert invoke(path).exit_code == 3
+
+
+def test_exit_is_3_for_a_missing_file_and_2_for_a_missing_argument(tmp_path: Path) -> None:
+    assert invoke(tmp_path / "nowhere.json").exit_code == 3
+    assert invoke().exit_code == 2
+    assert invoke(written(tmp_path, CLEAN), "--noise", "2").exit_code == 2
+
+
+def test_exit_is_1_when_one_of_many_violates(tmp_path: Path) -> None:
+    off = CLEAN | {"id": "b", "values": [[9.8, 0, 0], [0, 9.8, 0], [0, 0, 98]]}
+    assert invoke(written(tmp_path, CLEAN, off)).exit_code == 1
+    assert invoke(written(tmp_path, CLEAN)).exit_code == 0
+
+
+def test_csv_has_one_row_a_record_with_the_same_verdicts(demo: dict[str, Any]) -> None:
+    rows = list(csv.DictReader(io.StringIO(invoke(DEMO, COMPONENTS, "--format", "csv").output)))
+    assert [(row["id"], row["verdict"]) for row in rows] == [
+        (record["id"], record["verdict"]) for record in demo["records"]
+    ]
+    assert {row["id"]: row["best_slip"] for row in rows}["oxide-e"].startswith("sign ")
+
+
+@pytest.mark.parametrize("format_name", ["markdown", "latex"])
+def test_tables_name_every_record(format_name: str, demo: dict[str, Any]) -> None:
+    text = invoke(DEMO, COMPONENTS, "--format", format_name).output
+    assert all(record["id"] in text for record in demo["records"])
+
+
+def test_projecting_writes_before_after_and_difference_beside_the_report(tmp_path: Path) -> None:
+    target = tmp_path / "nearest.json"
+    bent = CLEAN | {"values": [[9.8, 0.01, 0], [0.01, 9.8, 0], [0, 0, 9.86]], "sigma": 0.05}
+    result = invoke(written(tmp_path, bent, {"id": "b"}), "--project", target)
+    assert result.exit_code == 0
+    first, second = strict(target.read_text(encoding="utf-8"))["records"]
+    (value,) = first["independent"]
+    assert value["value"] == pytest.approx((9.8 + 9.8 + 9.86) / 3)
+    assert value["uncertainty"] == pytest.approx(0.05 / 3**0.5)
+    assert first["before"] == bent["values"]
+    assert first["difference"][0][1] == pytest.approx(0.01)
+    assert second["problem"]
+
+
+def test_the_crystal_option_serves_records_without_one(tmp_path: Path) -> None:
+    bare = {name: value for name, value in CLEAN.items() if name != "crystal"}
+    path = written(tmp_path, bare)
+    assert invoke(path).exit_code == 3
+    result = invoke(path, "--crystal", STRUCTURES / "rocksalt_NaCl.cif", "--format", "json")
+    (record,) = strict(result.output)["records"]
+    assert (record["group"], record["crystal"]["formula"]) == ("m-3m", "NaCl")
+
+
+def test_the_tolerance_decides_about_the_crystal_and_stands_in_the_document(tmp_path: Path) -> None:
+    path = written(tmp_path, CLEAN | {"crystal": str(STRUCTURES / "barium_titanate_BaTiO3.vasp")})
+    tight, wide = (
+        strict(invoke(path, "--tolerance", value, "--format", "json").output) for value in ("0.01", "0.2")
+    )
+    assert [document["tolerance_angstrom"] for document in (tight, wide)] == [0.01, 0.2]
+    assert [document["records"][0]["group"] for document in (tight, wide)] == ["4mm", "m-3m"]
