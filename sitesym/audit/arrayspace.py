@@ -107,6 +107,8 @@ class ArraySpace:
     def rotated(self, rotations: FloatArray, coordinates: FloatArray) -> FloatArray:
         """Coordinates (n, m) after each of the proper rotations (r, 3, 3), shape (r, n, m)."""
         m = coordinates.shape[1]
+        if not m:
+            return np.zeros((len(rotations), self.size, 0))
         by_length = {3: rotations, 6: pair_rotations(rotations)}
         result = coordinates[None]
         # Each pass turns the leading axis and moves it behind the others.

@@ -102,7 +102,7 @@ def violating() -> dict[str, Any]:
 
 
 @pytest.fixture
-def broken() -> dict[str, Any]:
+def unreadable() -> dict[str, Any]:
     """A record that could not be read."""
     error = {
         "code": "tensor-input",
@@ -111,21 +111,13 @@ def broken() -> dict[str, Any]:
         "rule": "a number",
         "next_step": "correct it",
     }
-    return {
-        "id": "x%",
-        "verdict": None,
-        "quantity": None,
-        "group": None,
-        "error": error,
-        "place": "line 2",
-    } | (
-        evidence(None)
-        | {"stability": None, "crystal": None, "measurement": None, "warnings": [], "remarks": []}
-    )
+    empty = dict.fromkeys(("verdict", "quantity", "group", "stability", "crystal", "measurement"))
+    told = {"id": "x%", "error": error, "place": "line 2", "warnings": [], "remarks": []}
+    return evidence(None) | empty | told
 
 
 @pytest.fixture
-def document(violating: dict[str, Any], broken: dict[str, Any]) -> dict[str, Any]:
+def document(violating: dict[str, Any], unreadable: dict[str, Any]) -> dict[str, Any]:
     check = {
         "relation": "s = 1/c",
         "records": ["s", "c"],
@@ -138,7 +130,7 @@ def document(violating: dict[str, Any], broken: dict[str, Any]) -> dict[str, Any
     names = ("consistent", "consistent-otherwise", "violates", "cannot-tell", "no-constraint")
     return {
         "schema": "sitesym.audit/1",
-        "records": [violating, broken],
+        "records": [violating, unreadable],
         "summary": {
             "records": 2,
             "verdicts": {name: int(name == "violates") for name in names},
@@ -246,12 +238,12 @@ def test_slips_are_said_in_words(slip: dict[str, Any], words: str) -> None:
 
 def test_a_free_rotation_gives_angle_axis_and_the_nearest_directions() -> None:
     turn = {
-        "angle_degrees": 12.345,
+        "angle_degrees": 12.5,
         "axis": [0.0, 0.0, 1.0],
         "nearest": [{"direction": "[110]", "degrees": 2.0}],
     }
     text = reading_text(reading(turn=turn, equal_to=["file", "lattice", "given"]))
-    assert "turned by 12.35 degrees about ( 0.0000  0.0000  1.0000)" in text.replace("12.34 ", "12.35 ")
+    assert "turned by 12.50 degrees about ( 0.0000  0.0000  1.0000)" in text
     assert "x 2 degrees from [110]" in text
     assert "file; lattice and 1 more" in text
 
