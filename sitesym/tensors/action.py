@@ -9,12 +9,13 @@ with it their forms.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cached_property, lru_cache
 
 import numpy as np
 
 from sitesym.arrays import FloatArray
 from sitesym.groups import PointGroup
+from sitesym.tensors.jahn import HIGHEST_RANK
 from sitesym.tolerances import SAME_MATRIX
 
 #: Decimals that are kept, so that actions equal up to rounding have equal keys.
@@ -39,9 +40,11 @@ class Action:
         """Matrices (k, 3, 3) and signs (k,) of the generators."""
         return np.frombuffer(self.generator_matrices).reshape(-1, 3, 3), np.frombuffer(self.generator_signs)
 
-    def traces_of_powers(self, highest: int) -> FloatArray:
-        """Trace of P^k for k from 0 to ``highest``, shape (highest + 1, angles): 1 + 2 cos(k angle)."""
-        traces: FloatArray = 1.0 + 2.0 * np.cos(np.outer(np.arange(highest + 1), np.frombuffer(self.angles)))
+    @cached_property
+    def traces_of_powers(self) -> FloatArray:
+        """Trace of P^k for k from 0 to the highest rank, shape (ranks, angles): 1 + 2 cos(k angle)."""
+        powers = np.arange(HIGHEST_RANK + 1)
+        traces: FloatArray = 1.0 + 2.0 * np.cos(np.outer(powers, np.frombuffer(self.angles)))
         return traces
 
     def mean(self, values: FloatArray) -> float:

@@ -10,7 +10,7 @@ import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray
 from sitesym.tensors.action import Action
-from sitesym.tensors.generators import Image, images
+from sitesym.tensors.generators import Images, images
 from sitesym.tensors.kinds import TensorKind
 from sitesym.tensors.layout import layout_of
 from sitesym.tensors.root3 import Recognised, Surd, recognise
@@ -36,12 +36,11 @@ class Terms:
 def exact_values(notation: TensorKind, terms: Terms, action: Action) -> list[Surd] | None:
     """The exact number behind each of ``terms.values``, or None unless all satisfy every generator."""
     generators = images(notation.symmetry, action.generator_matrices)
-    numbers = recognise(terms.values) if all(image.exact for image in generators) else None
+    numbers = recognise(terms.values) if generators.exact else None
     if numbers is None:
         return None
     vectors = _integer_vectors(notation, numbers, terms)
-    signs = action.generators[1].tolist()
-    satisfied = all(_satisfies(g, sign, vectors) for g, sign in zip(generators, signs, strict=True))
+    satisfied = _satisfies(generators, action.generators[1], vectors)
     return numbers.surds() if satisfied and _trace_vanishes(notation, vectors) else None
 
 
@@ -60,16 +59,17 @@ def _integer_vectors(notation: TensorKind, numbers: Recognised, terms: Terms) ->
     return vectors
 
 
-def _satisfies(image: Image, sign: float, vectors: FloatArray) -> bool:
-    """Whether sign D(g) v = v for all columns, in integer arithmetic."""
-    if 4.0 * image.largest_row_sum * np.abs(vectors).max(initial=0.0) > _LARGEST_EXACT:
+def _satisfies(generators: Images, signs: FloatArray, vectors: FloatArray) -> bool:
+    """Whether sign D(g) v = v for all generators and columns, in integer arithmetic."""
+    if 4.0 * generators.largest_row_sum * np.abs(vectors).max(initial=0.0) > _LARGEST_EXACT:
         return False
-    parts, (whole, root) = image.parts, vectors
-    if len(parts) == 1:
-        moved: FloatArray = parts[0] @ vectors
-    else:
-        moved = np.stack([parts[0] @ whole + 3.0 * (parts[1] @ root), parts[0] @ root + parts[1] @ whole])
-    return np.array_equal(moved, sign * image.scale * vectors)
+    a, (whole, root) = generators.parts[0], vectors
+    moved: FloatArray = np.stack([a @ whole, a @ root])
+    if len(generators.parts) == 2:
+        b = generators.parts[1]
+        moved += np.stack([3.0 * (b @ root), b @ whole])
+    expected = vectors[:, None] * (signs[:, None, None] * generators.scale)
+    return np.array_equal(moved, expected)
 
 
 def _trace_vanishes(notation: TensorKind, vectors: FloatArray) -> bool:

@@ -43,8 +43,8 @@ class IndexSymmetry(ABC):
         """
 
     @abstractmethod
-    def represent(self, matrix: FloatArray) -> FloatArray:
-        """Action on the components of a matrix (1 or 2, 3, 3): T'_c = sum_k D_ck T_k, shape (1 or 2, N, N).
+    def represent(self, matrices: FloatArray) -> FloatArray:
+        """Action on the components of matrices (1 or 2, k, 3, 3): T'_c = sum_k D_ck T_k, (1 or 2, k, N, N).
 
         The leading axis is that of `sitesym.tensors.root3`.
         """
@@ -87,8 +87,8 @@ class Vector(IndexSymmetry):
     def located(self) -> tuple[IntArray, IntArray]:
         return np.arange(3), np.ones(3, dtype=np.int64)
 
-    def represent(self, matrix: FloatArray) -> FloatArray:
-        return matrix
+    def represent(self, matrices: FloatArray) -> FloatArray:
+        return matrices
 
     def character(self, traces: FloatArray, power: int = 1) -> FloatArray:
         row: FloatArray = traces[power]
@@ -118,13 +118,15 @@ class Product(IndexSymmetry):
             sign = (sign[:, None] * own_sign).ravel()
         return component, sign
 
-    def represent(self, matrix: FloatArray) -> FloatArray:
-        total = np.zeros((len(matrix), 1, 1))
+    def represent(self, matrices: FloatArray) -> FloatArray:
+        total = np.zeros((*matrices.shape[:2], 1, 1))
         total[0] = 1.0
         for factor in self.factors:
-            own = factor.represent(matrix)
-            outer = multiply(total[:, :, None, :, None], own[:, None, :, None, :])
-            total = outer.reshape(len(matrix), total.shape[1] * own.shape[1], -1)
+            own = factor.represent(matrices)
+            outer = multiply(total[:, :, :, None, :, None], own[:, :, None, :, None, :])
+            total = outer.reshape(
+                *matrices.shape[:2], total.shape[2] * own.shape[2], total.shape[3] * own.shape[3]
+            )
         return total
 
     def character(self, traces: FloatArray, power: int = 1) -> FloatArray:
@@ -188,16 +190,16 @@ class Power(IndexSymmetry):
         starts = np.searchsorted(component[kept], np.arange(len(self.choices)))
         return kept, sign[kept], starts
 
-    def represent(self, matrix: FloatArray) -> FloatArray:
-        own = self.base.represent(matrix)
+    def represent(self, matrices: FloatArray) -> FloatArray:
+        own = self.base.represent(matrices)
         rows = np.array(self.choices)
-        total = own[:, rows[:, 0], :]
+        total = own[:, :, rows[:, 0], :]
         for factor in range(1, self.count):
-            outer = multiply(total[:, :, :, None], own[:, rows[:, factor], None, :])
-            total = outer.reshape(len(matrix), len(rows), -1)
+            outer = multiply(total[..., None], own[:, :, rows[:, factor], None, :])
+            total = outer.reshape(*outer.shape[:3], outer.shape[3] * outer.shape[4])
         kept, sign, starts = self._column_sums
-        signed = total[:, :, kept] if self.symmetric else total[:, :, kept] * sign
-        summed: FloatArray = np.add.reduceat(signed, starts, axis=2)
+        signed = total[..., kept] if self.symmetric else total[..., kept] * sign
+        summed: FloatArray = np.add.reduceat(signed, starts, axis=3)
         return summed
 
     def character(self, traces: FloatArray, power: int = 1) -> FloatArray:

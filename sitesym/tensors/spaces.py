@@ -65,7 +65,7 @@ class TensorSpace:
     def representation(self, group: PointGroup) -> FloatArray:
         """Orthogonal matrices of the group in `basis`, shape (n, dimension, dimension)."""
         scale = np.sqrt(self.symmetry.multiplicities)
-        matrices = np.array([self.symmetry.represent(rotation[None])[0] for rotation in group.rotations_cart])
+        matrices: FloatArray = self.symmetry.represent(group.rotations_cart[None])[0]
         matrices = matrices * (scale[:, None] / scale[None, :]) * self.signs(group)[:, None, None]
         if self.traceless:
             kept = _without(np.eye(len(scale)), self.trace_vector / scale)
@@ -114,8 +114,7 @@ class TensorSpace:
 
 @lru_cache(maxsize=8192)
 def _invariant_count(space: TensorSpace, action: Action) -> int:
-    traces = action.traces_of_powers(max(space.symmetry.rank, 1))
-    return round(action.mean(space.symmetry.character(traces) - int(space.traceless)))
+    return round(action.mean(space.symmetry.character(action.traces_of_powers) - int(space.traceless)))
 
 
 def independent_count(kind: TensorKind, group: PointGroup) -> int:
