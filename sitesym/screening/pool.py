@@ -1,0 +1,135 @@
+"""Warm worker processes that are replaced when they die, fed with small batches, never far ahead.
+
+A worker answers its items in order, so the first unanswered one is the one that ended it. Only that item
+pays: after a crash it is tried once more, then it is a row with a status; the others are given out again.
+"""
+
+from __future__ import annotations
+
+from collections import deque
+from collections.abc import Iterator
+from multiprocessing.connection import wait
+from types import TracebackType
+from typing import Final
+
+from sitesym.errors import CrashError
+from sitesym.screening.process import Job, WorkerProcess
+from sitesym.screening.row import failed_row
+from sitesym.screening.work import content_hash
+from sitesym.screening.worker import Answer, Task
+
+#: A batch ends with the item that reaches one of these: atoms, items.
+BATCH_ATOMS: Final = 200
+BATCH_ITEMS: Final = 16
+#: A batch in memory beyond this is given only to a worker that waits for it (bytes): pipes hold little.
+_PREFETCHED_BYTES: Final = 30_000
+#: How many items the newest one may be ahead of the oldest that is not answered.
+WINDOW: Final = 2000
+
+
+class Pool:
+    """``workers`` processes for one task, as a context manager: at its end they are ended."""
+
+    def __init__(self, task: Task, workers: int) -> None:
+        self.task = task
+        self.stopping = False
+        self._crew = [WorkerProcess(task) for _ in range(workers)]
+        self._again: deque[list[Job]] = deque()
+        self._next: list[Job] = []
+        self._jobs: Iterator[Job] = iter(())
+        self._newest = 0
+
+    def __enter__(self) -> Pool:
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        for worker in self._crew:
+            worker.end()
+
+    def stop(self) -> None:
+        """Give out no more jobs; those given out are finished."""
+        self.stopping = True
+
+    def answers(self, jobs: Iterator[Job]) -> Iterator[tuple[Job, Answer]]:
+        """Each job with its answer, as they come; jobs are taken from the iterator when they are needed.
+
+        Raises ScreeningError when worker processes do not start.
+        """
+        self._jobs = jobs
+        self._feed()
+        while any(worker.jobs for worker in self._crew):
+            listening = {worker.connection.fileno(): worker for worker in self._crew}
+            for descriptor in wait(list(listening)):
+                answered = self._listen(listening[descriptor])  # type: ignore[index]
+                if answered is not None:
+                    yield answered
+            self._feed()
+
+    def _listen(self, worker: WorkerProcess) -> tuple[Job, Answer] | None:
+        try:
+            message = worker.listen()
+        except EOFError:
+            return self._bury(worker)
+        if isinstance(message, str):
+            worker.ready = True
+            return None
+        job = worker.jobs.popleft()
+        if message.last:
+            self._replace(worker)
+        return job, message
+
+    def _bury(self, worker: WorkerProcess) -> tuple[Job, Answer] | None:
+        """Replace a dead worker; the row of the item that ended it, unless that one is tried again."""
+        error = worker.cause_of_death()
+        if not worker.ready or not worker.jobs:
+            raise error
+        job = worker.jobs.popleft()
+        job.tries += 1
+        self._replace(worker)
+        if isinstance(error, CrashError) and job.tries < 2:
+            self._again.append([job])
+            return None
+        row = failed_row(job.item, "", error, self.task.settings)
+        return job, Answer((row,), content_hash(job.item) if self.task.hashed else "")
+
+    def _replace(self, worker: WorkerProcess) -> None:
+        if worker.jobs:
+            self._again.appendleft(list(worker.jobs))
+        worker.end()
+        self._crew[self._crew.index(worker)] = WorkerProcess(self.task)
+
+    def _feed(self) -> None:
+        """Give every worker what it lacks, the one with the fewest jobs first."""
+        for worker in sorted(self._crew, key=lambda worker: len(worker.jobs)):
+            while (batch := self._batch_for(worker)) is not None:
+                worker.give(batch)
+
+    def _batch_for(self, worker: WorkerProcess) -> list[Job] | None:
+        """The next batch if the worker should have it now: less than one is before it."""
+        if self.stopping or sum(job.item.atoms_hint for job in worker.jobs) >= BATCH_ATOMS:
+            return None
+        if not self._next:
+            self._next = self._again.popleft() if self._again else self._fresh()
+        heavy = sum(len(job.item.content) for job in self._next) > _PREFETCHED_BYTES
+        if not self._next or (heavy and worker.jobs):
+            return None
+        batch, self._next = self._next, []
+        return batch
+
+    def _fresh(self) -> list[Job]:
+        """The next jobs of the stream, none while the newest is far ahead of one that is not answered."""
+        waiting = min((job.number for worker in self._crew for job in worker.jobs), default=None)
+        batch: list[Job] = []
+        atoms = 0
+        while atoms < BATCH_ATOMS and len(batch) < BATCH_ITEMS:
+            if waiting is not None and self._newest - waiting >= WINDOW:
+                break
+            job = next(self._jobs, None)
+            if job is None:
+                break
+            self._newest = job.number
+            batch.append(job)
+            atoms += job.item.atoms_hint
+        return batch

@@ -1,0 +1,58 @@
+"""What a screening run was asked to do, with the versions it was done with; both decide every row."""
+
+from __future__ import annotations
+
+import json
+from dataclasses import dataclass
+from hashlib import blake2b
+from importlib.metadata import PackageNotFoundError, version
+from typing import Any, Final
+
+from sitesym import __version__
+from sitesym.screening.columns import DEFAULT_PROPERTIES, Column, columns_for
+from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
+
+#: Libraries whose version may change a row.
+LIBRARIES: Final = ("spglib", "moyopy", "gemmi", "ase", "numpy")
+
+
+@dataclass(frozen=True)
+class Settings:
+    """``finder``: spglib, moyo or both. ``ladder``: whether to climb the tolerance ladder and to measure the
+    distance from inversion. ``properties``: kinds of tensors whose independent components are counted."""
+
+    tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM
+    finder: str = "spglib"
+    ladder: bool = True
+    properties: tuple[str, ...] = DEFAULT_PROPERTIES
+
+    @property
+    def columns(self) -> tuple[Column, ...]:
+        """The columns of a row, in order."""
+        return columns_for(self.properties)
+
+    def document(self) -> dict[str, Any]:
+        """Settings and versions as strict JSON."""
+        return {
+            "tolerance_angstrom": self.tolerance_angstrom,
+            "finder": self.finder,
+            "ladder": self.ladder,
+            "properties": list(self.properties),
+            "versions": versions(),
+        }
+
+    def fingerprint(self) -> str:
+        """32 hexadecimal digits that differ where settings or versions do."""
+        text = json.dumps(self.document(), sort_keys=True)
+        return blake2b(text.encode(), digest_size=16).hexdigest()
+
+
+def versions() -> dict[str, str]:
+    """Version of sitesym and of each library that is installed."""
+    found = {"sitesym": __version__}
+    for name in LIBRARIES:
+        try:
+            found[name] = version(name)
+        except PackageNotFoundError:
+            continue
+    return found

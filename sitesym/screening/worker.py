@@ -1,0 +1,191 @@
+"""What a worker process does: receive units of work, answer each with rows, one after the other.
+
+The process is warm: libraries are loaded once. A unit that takes too long ends the process by an alarm signal
+whose action is the system's own, so that code which never returns to Python is ended too; a unit that asks
+for too much memory fails to get it. Whatever native code writes to standard error while a unit is worked on
+goes to its rows.
+"""
+
+from __future__ import annotations
+
+import os
+import signal
+import warnings
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass
+from importlib import import_module
+from multiprocessing.connection import Connection
+from time import perf_counter
+from typing import Final, TypeAlias
+
+from sitesym.errors import SitesymError, TooMuchMemoryError
+from sitesym.screening.columns import Row
+from sitesym.screening.contents import Structures
+from sitesym.screening.row import crystal_row, failed_row, joined
+from sitesym.screening.settings import Settings
+from sitesym.screening.sources.texts import storable
+from sitesym.screening.work import WorkItem, content_hash
+
+#: How much of what native code wrote is kept for a row (bytes).
+MOST_WORDS: Final = 600
+
+Reader: TypeAlias = Callable[[WorkItem], Structures]
+
+
+@dataclass(frozen=True)
+class Task:
+    """What a worker is told when it starts.
+
+    ``limit_seconds`` for reading an item and for each structure in it; ``limit_megabytes`` of memory beyond
+    what the warm process has. ``hashed``: whether answers carry the hash of the content. ``reader``: module
+    and function, separated by a colon, that gives the structures of an item.
+    """
+
+    settings: Settings
+    limit_seconds: float
+    limit_megabytes: float
+    hashed: bool = False
+    reader: str = "sitesym.screening.contents:read_item"
+
+
+@dataclass(frozen=True)
+class Answer:
+    """The rows of an item and the hash of its content; after a ``last`` answer the worker ends itself."""
+
+    rows: tuple[Row, ...]
+    content_hash: str = ""
+    last: bool = False
+
+
+def main(descriptor: int) -> None:
+    """Work for the other end of a connection until it says None, or is gone."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
+    signal.signal(signal.SIGALRM, signal.SIG_DFL)
+    # Each warning is shown each time: what an item's rows say must not depend on the items before it.
+    warnings.simplefilter("always")
+    warnings.simplefilter("ignore", DeprecationWarning)
+    warnings.simplefilter("ignore", FutureWarning)
+    with Connection(descriptor) as connection:
+        try:
+            work(connection)
+        except (EOFError, BrokenPipeError, ConnectionResetError):
+            return
+
+
+def work(connection: Connection) -> None:
+    """Receive a `Task`, then lists of items; send "ready", then one `Answer` for each item, in order."""
+    task: Task = connection.recv()
+    module, _, function = task.reader.partition(":")
+    reader: Reader = getattr(import_module(module), function)
+    _load_libraries(task.settings)
+    _limit_memory(task.limit_megabytes)
+    connection.send("ready")
+    while (items := connection.recv()) is not None:
+        for item in items:
+            answer = answered(item, task, reader)
+            connection.send(answer)
+            if answer.last:
+                return
+
+
+def answered(item: WorkItem, task: Task, reader: Reader) -> Answer:
+    """Rows of an item; whatever goes wrong is a row."""
+    digest, rows = "", list[Row]()
+    try:
+        with _alarm(task.limit_seconds):
+            digest = content_hash(item) if task.hashed else ""
+        rows.extend(_rows(item, task, reader))
+        return Answer(tuple(rows), digest)
+    except SitesymError as error:
+        rows = [failed_row(item, "", error, task.settings)]
+    except MemoryError:
+        # What a refused allocation has left behind in libraries is unknown: the process is not used again.
+        rows = [failed_row(item, "", too_much_memory(task.limit_megabytes), task.settings)]
+        return Answer(tuple(rows), digest, last=True)
+    except Exception as error:  # noqa: BLE001  the worker boundary: one item must not end a run
+        rows = [failed_row(item, "", _unforeseen(error), task.settings)]
+    return Answer(tuple(rows), digest)
+
+
+def _rows(item: WorkItem, task: Task, reader: Reader) -> Iterator[Row]:
+    """A row for each structure of an item; limits and times are those of one structure."""
+    structures = iter(reader(item))
+    while True:
+        start = perf_counter()
+        with _alarm(task.limit_seconds):
+            named = next(structures, None)
+            if named is None:
+                return
+            name, crystal = named
+            try:
+                if isinstance(crystal, SitesymError):
+                    raise crystal
+                row = crystal_row(item, name, crystal, task.settings)
+            except SitesymError as error:
+                row = failed_row(item, name, error, task.settings)
+        row["remarks"] = joined((str(row["remarks"] or ""), _words()))
+        row["seconds"] = round(perf_counter() - start, 6)
+        yield row
+
+
+@contextmanager
+def _alarm(seconds: float) -> Iterator[None]:
+    """End the process, Python or not, when the block takes longer."""
+    signal.setitimer(signal.ITIMER_REAL, seconds)
+    try:
+        yield
+    finally:
+        signal.setitimer(signal.ITIMER_REAL, 0.0)
+
+
+def _words() -> str:
+    """What was written to standard error since the last call; it is a file that only this process writes."""
+    if os.fstat(2).st_size == 0:
+        return ""
+    words = os.pread(2, MOST_WORDS, 0)
+    os.ftruncate(2, 0)
+    text = " ".join(words.decode("utf-8", errors="replace").split())
+    return f"standard error: {text}" if text else ""
+
+
+def _load_libraries(settings: Settings) -> None:
+    """Import now what the first item would, so that its time is its own."""
+    import_module("scipy.spatial")
+    if settings.finder != "spglib" or settings.ladder:
+        import_module("moyopy")
+
+
+def _limit_memory(megabytes: float) -> None:
+    """Refuse memory beyond what the process has now plus so much; only where the system tells what it has."""
+    import resource
+
+    try:
+        with open("/proc/self/statm", encoding="ascii") as stream:
+            pages = int(stream.read().split()[0])
+    except OSError:
+        return
+    limit = pages * resource.getpagesize() + int(megabytes * 1e6)
+    _, hard = resource.getrlimit(resource.RLIMIT_AS)
+    if hard == resource.RLIM_INFINITY or limit < hard:
+        resource.setrlimit(resource.RLIMIT_AS, (limit, hard))
+
+
+def too_much_memory(megabytes: float, said: str = "") -> TooMuchMemoryError:
+    """The error of a structure that was refused memory; ``said``: the words of the code that asked for it."""
+    return TooMuchMemoryError(
+        "the structure takes too much memory",
+        f"more than {megabytes:g} megabytes{': ' if said else ''}{said}",
+        "memory for one structure is limited",
+        "raise --limit-memory",
+    )
+
+
+def _unforeseen(error: Exception) -> SitesymError:
+    """An error nobody foresaw, as a row can hold it."""
+    return SitesymError(
+        "unexpected failure of the program",
+        storable(f"{type(error).__name__}: {error}"),
+        "errors of a file are foreseen",
+        "report it with the file",
+    )
