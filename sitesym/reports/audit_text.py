@@ -59,12 +59,20 @@ def headline(one: Entry) -> Iterator[str]:
         return
     verdict, *action = one["message"]
     yield paragraph(f"{name}: {verdict}")
-    yield paragraph(f"do: {' '.join(action)}", indent=2)
+    unstable = _stability_answer(one)
+    if unstable:
+        action.append(f"; elastically {unstable}: see the conditions below before using it")
+    yield paragraph(f"do: {''.join(action)}", indent=2)
+
+
+def _stability_answer(one: Entry) -> str:
+    """'unstable' or 'unreliable'; empty where nothing speaks against stability."""
+    answer = "" if one["stability"] is None else str(one["stability"]["answer"])
+    return "" if answer == "stable" else answer
 
 
 def _is_open(one: Entry) -> bool:
-    unstable = one["stability"] is not None and one["stability"]["answer"] != "stable"
-    return one["verdict"] not in _SETTLED or unstable
+    return one["verdict"] not in _SETTLED or bool(_stability_answer(one))
 
 
 def _evidence(one: Entry) -> Iterator[str]:
@@ -76,8 +84,10 @@ def _evidence(one: Entry) -> Iterator[str]:
     yield from _deviations("forbidden", one["forbidden"])
     yield from _deviations("relations", one["relations"])
     if one["best"] is not None:
-        yield _line("best reading", reading_text(one["best"]))
-        yield _line("its axes", _rows(one["best"]["rotation"]))
+        as_stated = one["verdict"] == "consistent" and one["stated"] is not None
+        if not as_stated:
+            yield _line("best reading", reading_text(one["best"]))
+        yield _line("axes" if as_stated else "its axes", _rows(one["best"]["rotation"]))
     for rival in one["rivals"][:MOST_ITEMS]:
         yield _line("rival", reading_text(rival))
     if one["equivalent_axes"]:
