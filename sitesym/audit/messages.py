@@ -8,6 +8,9 @@ from sitesym.audit.result import IndexFinding, Reading, Slip
 from sitesym.audit.verdicts import Finding
 from sitesym.groups import PointGroup
 
+#: Relative residuals below this are rounding of the computer's numbers.
+_ROUNDING = 1e-12
+
 
 def message(
     measurement: Measurement, group: PointGroup, noise: float, index: IndexFinding, finding: Finding
@@ -122,5 +125,6 @@ def _residual(reading: Reading | None) -> str:
     if reading is None:
         return "not stated"
     residual = reading.residual
-    text = f"residual {100 * residual.relative:.3g} %"
+    relative = residual.relative if residual.relative > _ROUNDING else 0.0
+    text = f"residual {100 * relative:.3g} %"
     return text if residual.p_value is None else f"{text}, p = {residual.p_value:.2g}"

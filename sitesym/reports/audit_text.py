@@ -59,10 +59,16 @@ def headline(one: Entry) -> Iterator[str]:
         return
     verdict, *action = one["message"]
     yield paragraph(f"{name}: {verdict}")
-    unstable = _stability_answer(one)
-    if unstable:
-        action.append(f"; elastically {unstable}: see the conditions below before using it")
-    yield paragraph(f"do: {''.join(action)}", indent=2)
+    yield paragraph(f"do: {_action(one, action)}", indent=2)
+
+
+def _action(one: Entry, action: Sequence[str]) -> str:
+    """What to do about the symmetry, and about the stability where that speaks up."""
+    told, answer = " ".join(action), _stability_answer(one)
+    if not answer:
+        return told
+    unstable = f"elastically {answer}: see the conditions below before using it"
+    return f"{unstable}; symmetry asks for nothing" if one["verdict"] in _SETTLED else f"{told}; {unstable}"
 
 
 def _stability_answer(one: Entry) -> str:

@@ -196,7 +196,7 @@ def test_an_unstable_crystal_is_shown_even_where_the_tensor_obeys(
     entry = stability_entry(elastic_stability(kind("elastic-stiffness"), stiffness, group))
     good = violating | {"verdict": "consistent", "stability": entry, "quantity": "elastic-stiffness"}
     text = " ".join(render(document | {"records": [good, good]}, "text").split())
-    assert "do: look the entry up; elastically unstable: see the conditions below" in text
+    assert "do: elastically unstable: see the conditions below before using it; symmetry asks" in text
     assert "elastic unstable" in text
     assert "Eg (2x) -1 c11 - c12 > 0 -1 no" in text
 
