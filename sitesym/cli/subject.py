@@ -100,15 +100,15 @@ def subject_of(
 def symmetry_of_file(
     file: str, tolerance_angstrom: float, finder: str, ladder: bool, reading: ReadingChoices | None = None
 ) -> CrystalSymmetry:
-    """The symmetry of the one crystal of a file; what the finder prints becomes remarks of the crystal.
+    """The symmetry of the one crystal of a file; what the finder prints is kept as its messages.
 
     Raises the errors of reading and of symmetry finding.
     """
     crystal = read_crystal(file, **(reading or {}))
     with native_output_kept() as printed:
         symmetry = examined_symmetry(crystal, tolerance_angstrom, finder, ladder)
-    said = dict.fromkeys((*printed, *symmetry.found.messages))
-    return replace(symmetry, crystal=crystal.with_remarks(*(f"the finder says: {line}" for line in said)))
+    found = replace(symmetry.found, messages=(*printed, *symmetry.found.messages))
+    return replace(symmetry, found=found)
 
 
 def read_matrix(text: str) -> FloatArray:

@@ -10,6 +10,8 @@ AVERAGE_STRUCTURE = "average structure: mixed or partly filled sites count as sp
 
 # Operations are counted in whole multiples; half way to the next lower or higher one.
 _MORE = 1.5
+#: A tolerance below this part of the one asked for was lowered by the finder; the rest is rounding.
+_LOWERED = 0.999
 
 
 def symmetry_remarks(symmetry: CrystalSymmetry) -> tuple[str, ...]:
@@ -20,7 +22,16 @@ def symmetry_remarks(symmetry: CrystalSymmetry) -> tuple[str, ...]:
         remarks.append(AVERAGE_STRUCTURE)
     if crystal.distinguish:
         remarks.append(f"atoms are told apart by element, occupancy, {', '.join(crystal.distinguish)}")
-    return (*remarks, *_declared_remarks(symmetry))
+    return (*remarks, *finder_remarks(symmetry), *_declared_remarks(symmetry))
+
+
+def finder_remarks(symmetry: CrystalSymmetry) -> tuple[str, ...]:
+    """What the finder had to say, and that it lowered the tolerance where it did."""
+    remarks = [f"the finder says: {message}" for message in dict.fromkeys(symmetry.found.messages)]
+    used = symmetry.found.tolerance_used_angstrom
+    if used < _LOWERED * symmetry.tolerance_angstrom:
+        remarks.append(f"the finder lowered the tolerance by itself to {used:g} angstrom")
+    return tuple(remarks)
 
 
 def _declared_remarks(symmetry: CrystalSymmetry) -> tuple[str, ...]:

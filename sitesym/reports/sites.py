@@ -51,6 +51,7 @@ def crystal_entry(symmetry: CrystalSymmetry) -> dict[str, Any]:
         "point_group": symmetry.point_group.symbol,
         "point_group_oriented": symmetry.point_group.oriented,
         "tolerance_angstrom": float(symmetry.tolerance_angstrom),
+        "tolerance_used_angstrom": float(symmetry.found.tolerance_used_angstrom),
         "finder": symmetry.found.finder,
         "frame": crystal.frame_note,
         "lattice": crystal.lattice.tolist(),

@@ -15,6 +15,7 @@ from sitesym.crystals.finders import DEFAULT_FINDER
 from sitesym.crystals.native_output import native_output_kept
 from sitesym.crystals.reading import read_crystals
 from sitesym.crystals.reliability import examined_symmetry
+from sitesym.crystals.remarks import finder_remarks
 from sitesym.crystals.symmetry import CrystalSymmetry
 from sitesym.errors import SitesymError
 from sitesym.groups import PointGroup
@@ -99,10 +100,8 @@ class Screener:
         try:
             with native_output_kept() as printed:
                 symmetry = examined_symmetry(crystal, self.tolerance_angstrom, self.finder, self.ladder)
-            said = dict.fromkeys((*printed, *symmetry.found.messages))
-            symmetry = replace(
-                symmetry, crystal=crystal.with_remarks(*(f"the finder says: {line}" for line in said))
-            )
+            found = replace(symmetry.found, messages=(*printed, *symmetry.found.messages))
+            symmetry = replace(symmetry, found=found)
             return self._blank(identity, source) | self._answers(symmetry) | {"status": "ok"}
         except SitesymError as error:
             return self._failed(identity, source, error)
@@ -119,7 +118,11 @@ class Screener:
 
     def _answers(self, symmetry: CrystalSymmetry) -> Row:
         group, counts = symmetry.point_group, self.counts(symmetry.point_group)
-        remarks = [*symmetry.crystal.remarks, *reliability_remarks(symmetry.reliability)]
+        remarks = [
+            *symmetry.crystal.remarks,
+            *finder_remarks(symmetry),
+            *reliability_remarks(symmetry.reliability),
+        ]
         facts: Row = {
             "formula": symmetry.crystal.formula,
             "atoms": len(symmetry.crystal),
