@@ -27,8 +27,9 @@ def test_shown_output_is_what_the_command_prints(
     assert re.fullmatch(r"(?:.*\n)*?".join(parts), printed), printed
 
 
-def test_the_readme_shows_four_commands() -> None:
-    assert sorted(command.split()[0] for command, _ in CONSOLE) == ["allowed", "irreps", "screen", "sites"]
+def test_the_readme_shows_five_commands() -> None:
+    shown = sorted(command.split()[0] for command, _ in CONSOLE)
+    assert shown == ["allowed", "audit", "irreps", "screen", "sites"]
 
 
 @pytest.mark.parametrize("source", PYTHON)
