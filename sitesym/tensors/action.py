@@ -9,13 +9,12 @@ with it their forms.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import cached_property, lru_cache
+from functools import lru_cache
 
 import numpy as np
 
 from sitesym.arrays import FloatArray
 from sitesym.groups import PointGroup
-from sitesym.tensors.jahn import HIGHEST_RANK
 from sitesym.tolerances import SAME_MATRIX
 
 #: Decimals that are kept, so that actions equal up to rounding have equal keys.
@@ -39,13 +38,6 @@ class Action:
     def generators(self) -> tuple[FloatArray, FloatArray]:
         """Matrices (k, 3, 3) and signs (k,) of the generators."""
         return np.frombuffer(self.generator_matrices).reshape(-1, 3, 3), np.frombuffer(self.generator_signs)
-
-    @cached_property
-    def traces_of_powers(self) -> FloatArray:
-        """Trace of P^k for k from 0 to the highest rank, shape (ranks, angles): 1 + 2 cos(k angle)."""
-        powers = np.arange(HIGHEST_RANK + 1)
-        traces: FloatArray = 1.0 + 2.0 * np.cos(np.outer(powers, np.frombuffer(self.angles)))
-        return traces
 
     def mean(self, values: FloatArray) -> float:
         """Mean over the group of the sign times a function of the angle, shape (angles,)."""

@@ -22,13 +22,12 @@ _LARGEST_EXACT = 2.0**50
 
 @dataclass(frozen=True, eq=False)
 class Terms:
-    """The non-zero coefficients of a form: ``values[which[t]]`` stands at written component ``rows[t]`` and
-    independent component ``columns[t]`` of ``count``. The values are distinct.
+    """The non-zero coefficients of a form without factors: ``values[t]`` stands at written component
+    ``rows[t]`` and independent component ``columns[t]`` of ``count``.
     """
 
     rows: IntArray
     columns: IntArray
-    which: IntArray
     values: FloatArray
     count: int
 
@@ -50,12 +49,9 @@ def _integer_vectors(notation: TensorKind, numbers: Recognised, terms: Terms) ->
     Integers a, b of a + b sqrt(3), shape (2, N, count).
     """
     layout = layout_of(notation)
-    denominator = int(np.lcm.reduce(numbers.denominators)) * int(
-        np.lcm.reduce(np.abs(layout.units).astype(int))
-    )
     vectors = np.zeros((2, notation.symmetry.dimension, terms.count))
-    numerators = numbers.over(denominator)[:, terms.which] / layout.units[terms.rows]
-    vectors[:, layout.component[terms.rows], terms.columns] = numerators
+    places = layout.component[terms.rows]
+    vectors[:, places, terms.columns] = numbers.over_common_denominator() * layout.signs[terms.rows]
     return vectors
 
 
@@ -63,13 +59,16 @@ def _satisfies(generators: Images, signs: FloatArray, vectors: FloatArray) -> bo
     """Whether sign D(g) v = v for all generators and columns, in integer arithmetic."""
     if 4.0 * generators.largest_row_sum * np.abs(vectors).max(initial=0.0) > _LARGEST_EXACT:
         return False
-    a, (whole, root) = generators.parts[0], vectors
-    moved: FloatArray = np.stack([a @ whole, a @ root])
-    if len(generators.parts) == 2:
-        b = generators.parts[1]
-        moved += np.stack([3.0 * (b @ root), b @ whole])
-    expected = vectors[:, None] * (signs[:, None, None] * generators.scale)
-    return np.array_equal(moved, expected)
+    scales = signs[:, None, None] * generators.scale
+    whole, root = vectors
+    parts = generators.parts
+    if len(parts) == 1:
+        return all(
+            np.array_equal(parts[0] @ v, scales * v) for v in ((whole, root) if root.any() else (whole,))
+        )
+    moved_whole = parts[0] @ whole + 3.0 * (parts[1] @ root)
+    moved_root = parts[0] @ root + parts[1] @ whole
+    return np.array_equal(moved_whole, scales * whole) and np.array_equal(moved_root, scales * root)
 
 
 def _trace_vanishes(notation: TensorKind, vectors: FloatArray) -> bool:

@@ -10,6 +10,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from fractions import Fraction
 from functools import lru_cache
 from types import MappingProxyType
 from typing import TypeAlias
@@ -33,8 +34,9 @@ from sitesym.tolerances import PIVOT
 #: Exact where the axes are standard ones, a float otherwise.
 Coefficient: TypeAlias = Surd | float
 
-#: Decimals in which coefficients that mean one number agree.
+#: Decimals of a float coefficient.
 _DIGITS = 11
+_NO_COMPONENTS: Mapping[str, Mapping[str, Coefficient]] = MappingProxyType({})
 
 
 @dataclass(frozen=True, eq=False)
@@ -80,7 +82,11 @@ def allowed_form(kind: TensorKind, group: PointGroup) -> AllowedForm:
     """
     space = TensorSpace.of(kind)
     expected = space.invariant_count(group)
-    form = _form(kind.notation, space.action(group)) if expected else _nothing(kind)
+    if not expected:
+        return AllowedForm(
+            kind, (), _NO_COMPONENTS, _no_coefficients(len(contraction(kind).keys)), exact=True
+        )
+    form = _with_factors(kind.notation, space.action(group))
     if form.independent_count != expected:
         raise SymmetryError(
             f"two routes to the number of independent components of {kind.name} disagree",
@@ -91,29 +97,52 @@ def allowed_form(kind: TensorKind, group: PointGroup) -> AllowedForm:
     return AllowedForm(kind, form.independent, form.components, form.coefficients, form.exact)
 
 
-def _nothing(kind: TensorKind) -> AllowedForm:
-    """The form of a tensor that must vanish."""
+@lru_cache(maxsize=64)
+def _no_coefficients(count: int) -> FloatArray:
+    return frozen(np.zeros((count, 0)))
+
+
+@lru_cache(maxsize=1024)
+def _with_factors(notation: TensorKind, action: Action) -> AllowedForm:
+    """The form of a bare notation: that of tensor components, times the factors of the contracted ones."""
+    form = _form(notation.without_factors, action)
+    if not notation.pair_factors:
+        return form
+    names = contraction(notation)
+    factor_of = dict(zip(names.keys, names.factors.tolist(), strict=True))
+    factors = np.array([factor_of[name] for name in form.independent])
+    components = {
+        key: MappingProxyType({name: _times(v, factor_of[key], factor_of[name]) for name, v in terms.items()})
+        for key, terms in form.components.items()
+    }
+    coefficients = form.coefficients * (names.factors[:, None] / factors)
     return AllowedForm(
-        kind, (), MappingProxyType({}), frozen(np.zeros((len(contraction(kind).keys), 0))), exact=True
+        notation, form.independent, MappingProxyType(components), frozen(coefficients), form.exact
     )
+
+
+def _times(value: Coefficient, factor: int, divisor: int) -> Coefficient:
+    if factor == divisor:
+        return value
+    return value.times(Fraction(factor, divisor)) if isinstance(value, Surd) else value * factor / divisor
 
 
 @lru_cache(maxsize=1024)
 def _form(notation: TensorKind, action: Action) -> AllowedForm:
-    """The form of a bare notation under an action that leaves something of it."""
+    """The form of a notation without factors under an action that leaves something of it."""
     independent, written = _relations(notation, action)
     rows, columns = np.nonzero(np.abs(written) > PIVOT)
-    values, which = np.unique(np.round(written[rows, columns], _DIGITS), return_inverse=True)
-    exact = exact_values(notation, Terms(rows, columns, which, values, len(independent)), action)
-    numbers: Sequence[Coefficient] = values.tolist() if exact is None else exact
+    terms = Terms(rows, columns, written[rows, columns], len(independent))
+    exact = exact_values(notation, terms, action)
+    numbers: Sequence[Coefficient] = np.round(terms.values, _DIGITS).tolist() if exact is None else exact
     coefficients = np.zeros_like(written)
-    coefficients[rows, columns] = np.array([float(number) for number in numbers])[which]
+    coefficients[rows, columns] = [float(number) for number in numbers]
     keys = contraction(notation).keys
-    terms: dict[str, dict[str, Coefficient]] = {}
-    for row, column, place in zip(rows.tolist(), columns.tolist(), which.tolist(), strict=True):
-        terms.setdefault(keys[row], {})[independent[column]] = numbers[place]
-    components = MappingProxyType({key: MappingProxyType(terms[key]) for key in sorted(terms)})
-    return AllowedForm(notation, independent, components, frozen(coefficients), exact is not None)
+    components: dict[str, dict[str, Coefficient]] = {}
+    for row, column, number in zip(rows.tolist(), columns.tolist(), numbers, strict=True):
+        components.setdefault(keys[row], {})[independent[column]] = number
+    ordered = MappingProxyType({key: MappingProxyType(components[key]) for key in sorted(components)})
+    return AllowedForm(notation, independent, ordered, frozen(coefficients), exact is not None)
 
 
 def _relations(notation: TensorKind, action: Action) -> tuple[tuple[str, ...], FloatArray]:

@@ -13,7 +13,7 @@ from functools import lru_cache
 from sitesym.errors import TensorInputError
 from sitesym.tensors.indexsymmetry import IndexSymmetry, Power, Product, Vector
 
-HIGHEST_RANK = 8
+_HIGHEST_RANK = 8
 _MOST_COMPONENTS = 1000
 _SUPERSCRIPTS = str.maketrans("⁰¹²³⁴⁵⁶⁷⁸⁹", "0123456789")
 
@@ -47,8 +47,8 @@ def read_jahn(text: str) -> Jahn:
     symmetry, rest = _sequence(text, plain[len(prefix) :])
     if rest:
         raise _not_understood(text, f"nothing begins with {rest[0]!r} here")
-    if symmetry.rank > HIGHEST_RANK:
-        raise _not_understood(text, f"rank {symmetry.rank} is above the highest rank {HIGHEST_RANK}")
+    if symmetry.rank > _HIGHEST_RANK:
+        raise _not_understood(text, f"rank {symmetry.rank} is above the highest rank {_HIGHEST_RANK}")
     if symmetry.dimension > _MOST_COMPONENTS:
         raise _not_understood(text, f"{symmetry.dimension} components are more than {_MOST_COMPONENTS}")
     return Jahn(plain, "e" in prefix, "a" in prefix, symmetry)
@@ -84,8 +84,8 @@ def _exponent(text: str, rest: str) -> tuple[int, str]:
     digits = re.match(r"\d+", rest)
     if digits is None:
         return 1, rest
-    if digits.group() not in map(str, range(1, HIGHEST_RANK + 1)):
-        raise _not_understood(text, f"an exponent is a number from 1 to {HIGHEST_RANK}")
+    if digits.group() not in map(str, range(1, _HIGHEST_RANK + 1)):
+        raise _not_understood(text, f"an exponent is a number from 1 to {_HIGHEST_RANK}")
     return int(digits.group()), rest[digits.end() :]
 
 

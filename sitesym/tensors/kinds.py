@@ -73,7 +73,13 @@ class TensorKind:
         """The bare notation of the kind: kinds that differ in their physics only share it, and so their
         forms.
         """
-        return TensorKind("", "", self.jahn, "", "", self.pair_factors, self.written_as, self.traceless)
+        factors = self.pair_factors if set(self.pair_factors) - {1} else ()
+        return TensorKind("", "", self.jahn, "", "", factors, self.written_as, self.traceless)
+
+    @cached_property
+    def without_factors(self) -> TensorKind:
+        """The notation in which contracted components are those of the tensor."""
+        return TensorKind("", "", self.jahn, "", "", (), self.written_as, self.traceless)
 
     @cached_property
     def factor_rule(self) -> str:

@@ -17,19 +17,18 @@ class Layout:
     """W written components against N components of the index symmetry; both differ where a tensor is
     written in a coarser notation than it obeys.
 
-    ``component`` (W,): the component that stands at each written one. ``units`` (W,): written value over
-    tensor component (factor of the contracted notation times the sign of antisymmetry). ``named`` (N,): the
-    written component that names each component. ``elimination`` (N,): components in the order in which they
-    are expressed by others, the one preferred as independent last. ``scales`` (W,): written value over
-    orthonormal component. ``named_rank`` (N,): order of the names.
+    ``component`` (W,): the component that stands at each written one. ``signs`` (W,): with which sign.
+    ``scales`` (W,): written value, without factors, over orthonormal component. ``named`` (N,): the written
+    component that names each component. ``named_rank`` (N,): order of the names. ``elimination`` (N,):
+    components in the order in which they are expressed by others, the one preferred as independent last.
     """
 
     component: IntArray
-    units: FloatArray
-    named: IntArray
-    elimination: IntArray
+    signs: IntArray
     scales: FloatArray
+    named: IntArray
     named_rank: IntArray
+    elimination: IntArray
 
 
 @lru_cache(maxsize=128)
@@ -42,12 +41,11 @@ def layout_of(notation: TensorKind) -> Layout:
     preferred = np.array(names.preference)
     _, first = np.unique(component[preferred], return_index=True)
     named = preferred[first]
-    units: FloatArray = np.multiply(names.factors, signs[places], dtype=np.float64)
     return Layout(
         component=component,
-        units=units,
+        signs=signs[places],
+        scales=signs[places] / np.sqrt(notation.symmetry.multiplicities)[component],
         named=named,
-        elimination=np.argsort(first)[::-1],
-        scales=units / np.sqrt(notation.symmetry.multiplicities)[component],
         named_rank=np.argsort(np.argsort([names.keys[written] for written in named])),
+        elimination=np.argsort(first)[::-1],
     )

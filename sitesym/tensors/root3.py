@@ -43,6 +43,10 @@ class Surd:
             text += f"/{self.root.denominator}"
         return text if not self.rational else f"{self.rational} + {text}".replace("+ -", "- ")
 
+    def times(self, factor: Fraction) -> Surd:
+        """The number times a rational one."""
+        return Surd(self.rational * factor, self.root * factor)
+
 
 @dataclass(frozen=True, eq=False)
 class Recognised:
@@ -59,12 +63,10 @@ class Recognised:
         columns = (self.numerators.tolist(), self.denominators.tolist(), self.rooted.tolist())
         return [_surd(*number) for number in zip(*columns, strict=True)]
 
-    def over(self, denominator: int) -> FloatArray:
-        """Integers a, b of (a + b sqrt(3)) / denominator, a common one, shape (2, n)."""
-        whole = self.numerators * (denominator // self.denominators)
-        return np.where(self.rooted, [np.zeros_like(whole), whole], [whole, np.zeros_like(whole)]).astype(
-            np.float64
-        )
+    def over_common_denominator(self) -> FloatArray:
+        """Integers a, b of numbers (a + b sqrt(3)) / c with one c for all, shape (2, n)."""
+        whole = self.numerators * (np.lcm.reduce(self.denominators) // self.denominators)
+        return np.stack([whole * ~self.rooted, whole * self.rooted]).astype(np.float64)
 
 
 def multiply(left: FloatArray, right: FloatArray) -> FloatArray:

@@ -12,7 +12,7 @@ from functools import cached_property, lru_cache
 
 import numpy as np
 
-from sitesym.arrays import ComplexArray, FloatArray
+from sitesym.arrays import ComplexArray, FloatArray, frozen
 from sitesym.groups import CharacterTable, PointGroup
 from sitesym.tensors.action import Action, action_of
 from sitesym.tensors.indexsymmetry import IndexSymmetry
@@ -114,7 +114,14 @@ class TensorSpace:
 
 @lru_cache(maxsize=8192)
 def _invariant_count(space: TensorSpace, action: Action) -> int:
-    return round(action.mean(space.symmetry.character(action.traces_of_powers) - int(space.traceless)))
+    return round(action.mean(_character_of_rotations(space.symmetry, action.angles) - int(space.traceless)))
+
+
+@lru_cache(maxsize=1024)
+def _character_of_rotations(symmetry: IndexSymmetry, angles: bytes) -> FloatArray:
+    """Trace of proper rotations by the angles ``Action.angles`` on the components, shape (angles,)."""
+    powers = np.arange(max(symmetry.rank, 1) + 1)
+    return frozen(symmetry.character(1.0 + 2.0 * np.cos(np.outer(powers, np.frombuffer(angles)))))
 
 
 def independent_count(kind: TensorKind, group: PointGroup) -> int:
