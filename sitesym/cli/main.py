@@ -23,6 +23,7 @@ COMMANDS: Final = {
     "irreps": "Irreducible representations and their characters.",
     "audit": "Measured tensors against the symmetry of their crystals.",
     "screen": "A folder of structures: one row of verdicts each.",
+    "table": "Rows of a store of screening results, chosen and sorted.",
     "conventions": "The axes, orders, factors and words the output uses.",
 }
 

@@ -1,0 +1,104 @@
+"""`sitesym table`: rows of a store of screening results, chosen and sorted, in one of several formats."""
+
+from __future__ import annotations
+
+import sys
+from collections.abc import Iterable
+
+import click
+
+from sitesym.cli.options import split_names
+from sitesym.errors import UsageError
+from sitesym.reports.table import TABLE_FORMATS, default_columns, table_lines
+from sitesym.reports.table_parquet import write_parquet
+from sitesym.screening.query import Query
+from sitesym.screening.table import Table
+
+
+@click.command("table")
+@click.argument("store")
+@click.option("--where", multiple=True, metavar="'COLUMN OP VALUE'", help="Condition; repeated: all hold.")
+@click.option(
+    "--sort", multiple=True, metavar="COLUMN[:desc]", help="Order; repeated: the first counts first."
+)
+@click.option(
+    "--columns", multiple=True, metavar="NAMES", help="Columns wanted, separated by commas, or all."
+)
+@click.option("--limit", type=click.IntRange(min=0), metavar="N", help="At most so many rows.")
+@click.option(
+    "--format",
+    "format_name",
+    type=click.Choice(TABLE_FORMATS),
+    default="text",
+    show_default=True,
+    help="Format.",
+)
+@click.option("--output", metavar="PATH", help="Write to this file and not to the terminal.")
+@click.option(
+    "--spreadsheet-safe/--plain-cells",
+    default=True,
+    show_default=True,
+    help="In CSV, an apostrophe before outside text that a spreadsheet would run; or every text as it is.",
+)
+def command(
+    store: str,
+    where: tuple[str, ...],
+    sort: tuple[str, ...],
+    columns: tuple[str, ...],
+    limit: int | None,
+    format_name: str,
+    output: str | None,
+    spreadsheet_safe: bool,
+) -> None:
+    """Rows of the STORE of a screening (screen --store). It may be read while a run writes to it.
+
+    A condition is a column, an operator and a value: 'atoms <= 20', 'point_group = -1', 'polar = yes',
+    'id ~ oxide' (contains), 'error_code = none' (missing). Operators: = != < <= > >= ~. A missing value meets
+    no condition but '= none'. Text and Markdown show some columns unless --columns names them; --columns all
+    shows all, as the other formats do.
+
+    CSV: text that comes from outside (id, source, frame, declared_space_group, remarks, error_message) and
+    begins with = + - @, a tab, a carriage return or an apostrophe gets an apostrophe in front; without its
+    first apostrophe such a cell is what it was. Numbers and symbols such as the point group -1 are never
+    changed. For pandas, use read_csv(PATH, **sitesym.reports.table_csv.pandas_options(columns)), or
+    dtype=str, keep_default_na=False: a column of point groups may hold -1 only, and NaN is a formula.
+    """
+    table = Table.of(store)
+    named = split_names(columns)
+    names = [] if named == ["all"] else named or default_columns(table.columns, format_name)
+    query = table.query(where, sort, names, limit)
+    try:
+        if format_name == "parquet":
+            _write_parquet(table, query, output)
+        else:
+            lines = table_lines(
+                table.rows(query), query.columns, format_name, spreadsheet_safe=spreadsheet_safe
+            )
+            _write(lines, output)
+    except OSError as error:
+        if output is None:
+            raise
+        raise UsageError(
+            "the output cannot be written",
+            error.strerror or str(error),
+            "a path that can be written",
+            "correct --output",
+            output,
+        ) from error
+
+
+def _write(lines: Iterable[str], output: str | None) -> None:
+    """Write pieces of text as they come; line ends stay as they are."""
+    if output is None:
+        sys.stdout.writelines(lines)
+        return
+    with open(output, "w", encoding="utf-8", newline="") as stream:
+        stream.writelines(lines)
+
+
+def _write_parquet(table: Table, query: Query, output: str | None) -> None:
+    if output is None:
+        raise UsageError(
+            "Parquet is not for a terminal", "no --output", "a Parquet file is binary", "add --output PATH"
+        )
+    write_parquet(table.rows(query), query.columns, output)
