@@ -18,6 +18,7 @@ from sitesym.audit.result import AuditResult
 from sitesym.audit.stability import ELASTIC_KINDS, Stability, elastic_stability
 from sitesym.audit.units import unit_warnings
 from sitesym.errors import SitesymError, TensorInputError, UsageError
+from sitesym.groups import standard_rotation
 
 
 @dataclass(frozen=True, eq=False)
@@ -129,7 +130,8 @@ def _stability(result: AuditResult, read: ReadMatrix | None) -> Stability | None
     kind = result.measurement.kind
     if read is None or kind.name not in ELASTIC_KINDS:
         return None
-    return elastic_stability(kind, read.matrix, read.group, result.noise, read.sigma)
+    to_standard = standard_rotation(result.group) @ read.rotation.T
+    return elastic_stability(kind, read.matrix, read.group, result.noise, read.sigma, to_standard)
 
 
 def _related(audited: Iterable[AuditedRecord]) -> Iterator[RelatedRecord]:

@@ -78,11 +78,13 @@ def elastic_stability(
     group: PointGroup,
     relative_noise: float = 0.0,
     sigma: FloatArray | None = None,
+    to_standard: FloatArray | None = None,
 ) -> Stability:
     """Stability of a stiffness or compliance, a (6, 6) contracted matrix in the axes of the group.
 
-    ``relative_noise``: of the norm of the tensor; ``sigma`` (6, 6): standard deviation of each entry. Raises
-    TensorInputError for another kind of tensor, or a matrix of another shape.
+    ``relative_noise``: of the norm of the tensor; ``sigma`` (6, 6): standard deviation of each entry.
+    ``to_standard`` (3, 3): leads from the axes of the group to its standard orientation, where that is known
+    already. Raises TensorInputError for another kind of tensor, or a matrix of another shape.
     """
     if tensor_kind.name not in ELASTIC_KINDS:
         raise TensorInputError(
@@ -103,7 +105,7 @@ def elastic_stability(
     }
     answer, reasons = _judged(kelvin, float(eigenvalues[0]), causes)
     stiffness = symmetric if tensor_kind.name == "elastic-stiffness" else _inverse(symmetric)
-    rotation = standard_rotation(group)
+    rotation = standard_rotation(group) if to_standard is None else to_standard
     return Stability(
         answer,
         reasons,

@@ -213,3 +213,18 @@ def test_a_condition_value_is_the_minor_of_its_text() -> None:
     found = {c.text: c.value(values) for b in strain_blocks(group) for c in b.conditions}
     assert found["(c11 - c12) c44 - 2 c14^2 > 0"] == pytest.approx(92.0 * 34.0 - 2 * 400.0)
     assert found["(c11 + c12) c33 - 2 c13^2 > 0"] == pytest.approx(208.0 * 85.0 - 2 * 53.0**2)
+
+
+def test_a_rotation_to_the_standard_orientation_that_is_known_gives_the_same_answer() -> None:
+    rng = np.random.default_rng(6)
+    turn, _ = np.linalg.qr(rng.normal(size=(3, 3)))
+    turn *= np.sign(np.linalg.det(turn))
+    group = standard("-3m")
+    matrix = random_stiffness(group, rng, shift=4.0)
+    turned_matrix = to_matrix(STIFFNESS, turned(to_full(STIFFNESS, matrix), turn))
+    known = elastic_stability(STIFFNESS, turned_matrix, group.rotated(turn), to_standard=turn.T)
+    values = {c.text: c.value for block in known.blocks for c in block.conditions}
+    assert values["c11 - c12 > 0"] == pytest.approx(matrix[0, 0] - matrix[0, 1])
+    assert values["(c11 - c12) c44 - 2 c14^2 > 0"] == pytest.approx(
+        (matrix[0, 0] - matrix[0, 1]) * matrix[3, 3] - 2 * matrix[0, 3] ** 2
+    )
