@@ -9,7 +9,7 @@ import zlib
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from sitesym.errors import EmptyStructureError, ReadingError, UnknownFormatError
+from sitesym.errors import CountMismatchError, EmptyStructureError, ReadingError, UnknownFormatError
 
 if TYPE_CHECKING:
     from ase import Atoms
@@ -49,6 +49,8 @@ def read_frames(path: Path, ase_format: str, index: int | None) -> tuple[list[At
     from ase.io import ParseError
     from ase.io.formats import UnknownFileTypeError
 
+    if ase_format == "extxyz":
+        _check_counts(path)
     options = _OPTIONS.get(ase_format, {})
     with warnings.catch_warnings(record=True) as caught:
         warnings.simplefilter("always")
@@ -88,6 +90,27 @@ def detected_format(path: Path) -> str:
             "the name or the content tells the format",
             "rename the file (.cif, .vasp, .extxyz, ...) or name its format",
         ) from error
+
+
+def _check_counts(path: Path) -> None:
+    """Each frame of an extxyz file has as many lines as it says: ASE would read on for ever."""
+    lines = path.read_text(encoding="utf-8", errors="replace").splitlines()
+    place = 0
+    while place < len(lines) and lines[place].strip():
+        word = lines[place].strip()
+        # What is no number is left to ASE, which names the fault.
+        if not word.isdecimal():
+            return
+        place += 2 + int(word)
+        if place > len(lines):
+            raise CountMismatchError(
+                "a frame ends before its atoms",
+                f"{word} atoms announced, {len(lines) - place + int(word)} lines follow",
+                "one line for each atom",
+                "complete the frame, or correct the number",
+            )
+        while place < len(lines) and lines[place].lstrip().startswith("VEC"):
+            place += 1
 
 
 def _unreadable(ase_format: str, error: Exception) -> ReadingError:

@@ -104,7 +104,7 @@ def _parsed(triplet: str) -> gemmi.Op:
 
     try:
         return gemmi.Op(triplet)
-    except RuntimeError as error:
+    except (RuntimeError, ValueError) as error:
         raise _unreadable(triplet) from error
 
 

@@ -15,7 +15,8 @@ import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.crystals.operations import check_closed, operation_codes
-from sitesym.errors import SpaceGroupStatementError
+from sitesym.crystals.spglib_finder import full_symbols, number_of_operations
+from sitesym.errors import SpaceGroupStatementError, SymmetryNotFoundError
 
 if TYPE_CHECKING:
     import gemmi
@@ -61,7 +62,7 @@ def setting_of_triplets(triplets: tuple[str, ...]) -> Setting:
     for triplet in triplets:
         try:
             operation = gemmi.Op(triplet).wrap()
-        except RuntimeError as error:
+        except (RuntimeError, ValueError) as error:
             raise _unreadable_operation(triplet) from error
         if any(entry % operation.DEN for row in operation.rot for entry in row):
             raise _unreadable_operation(triplet)
@@ -134,13 +135,10 @@ def type_number(setting: Setting, lattice: FloatArray) -> int:
     it is not found. ``lattice``: rows in angstrom."""
     if setting.number:
         return setting.number
-    import spglib
-
     try:
-        kind = spglib.get_spacegroup_type_from_symmetry(setting.rotations, setting.translations, lattice)
-    except spglib.SpglibError:
+        return number_of_operations(setting.rotations, setting.translations, lattice)
+    except SymmetryNotFoundError:
         return 0
-    return int(kind.number) if kind is not None else 0
 
 
 def is_unique_axis_b(setting: Setting) -> bool:
@@ -205,21 +203,9 @@ def _stands_for(letters: str, group: gemmi.SpaceGroup) -> bool:
 def _by_full_symbol(stem: str) -> list[gemmi.SpaceGroup]:
     import gemmi
 
-    halls = _full_symbols().get(_letters(stem), [])
+    letters = _letters(stem)
+    halls = {hall for full, hall in full_symbols() if _letters(full) == letters}
     return [group for group in gemmi.spacegroup_table() if group.hall in halls]
-
-
-@lru_cache(maxsize=1)
-def _full_symbols() -> dict[str, list[str]]:
-    """Full H-M symbol, such as F 4_1/d -3 2/m, to the Hall symbols of its settings."""
-    import spglib
-
-    found: dict[str, list[str]] = {}
-    for hall_number in range(1, 531):
-        kind = spglib.get_spacegroup_type(hall_number)
-        if kind is not None:
-            found.setdefault(_letters(kind.international_full), []).append(str(kind.hall_symbol))
-    return found
 
 
 def _letters(symbol: str) -> str:

@@ -70,11 +70,11 @@ def _scale_factors(line: str) -> FloatArray:
     tokens = line.split()
     count = 3 if len(tokens) >= 3 and all(map(_is_number, tokens[:3])) else 1
     scales: FloatArray = _numbers([line], count, "scale factor")[0]
-    if not scales.all() or (count == 3 and scales.min() < 0.0):
+    if not (np.isfinite(scales).all() and scales.all()) or (count == 3 and scales.min() < 0.0):
         raise SingularCellError(
             "the scale factor leaves no cell",
             line.strip(),
-            "one number other than zero, or three above zero",
+            "one finite number other than zero, or three above zero",
             "correct line 2",
         )
     return scales

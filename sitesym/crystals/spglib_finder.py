@@ -101,6 +101,13 @@ def number_of_operations(rotations: IntArray, translations: FloatArray, lattice:
     return int(kind.number)
 
 
+@lru_cache(maxsize=1)
+def full_symbols() -> tuple[tuple[str, str], ...]:
+    """Full Hermann-Mauguin symbol, such as F 4_1/d -3 2/m, and Hall symbol of each of the 530 settings."""
+    kinds = (_spglib().get_spacegroup_type(hall_number) for hall_number in range(1, 531))
+    return tuple((str(kind.international_full), str(kind.hall_symbol)) for kind in kinds)
+
+
 def niggli_lattice(lattice: FloatArray) -> FloatArray:
     """Niggli-reduced cell vectors (rows) of the same lattice. Raises SymmetryNotFoundError when it fails."""
     spglib = _spglib()
