@@ -6,6 +6,7 @@ import os
 import tempfile
 from dataclasses import dataclass, replace
 from pathlib import Path
+from textwrap import shorten
 from typing import Final, TypeAlias
 
 from sitesym.crystals import Crystal, CrystalSymmetry, find_symmetry, read_crystal
@@ -34,7 +35,15 @@ class CrystalReference:
     @property
     def is_structure(self) -> bool:
         """Whether it is the structure of one crystal, and not a symbol that many share."""
-        return self.is_structure_text or self.path.is_file()
+        return self.is_structure_text or self.is_file
+
+    @property
+    def is_file(self) -> bool:
+        """Whether there is such a file; a text that can be no path is none."""
+        try:
+            return self.path.is_file()
+        except (OSError, ValueError):
+            return False
 
     @property
     def path(self) -> Path:
@@ -68,14 +77,14 @@ class CrystalShelf:
     def _read(self, reference: CrystalReference) -> Host:
         if reference.is_structure_text:
             return find_symmetry(crystal_from_text(reference.text), self.tolerance_angstrom)
-        if reference.path.is_file():
+        if reference.is_file:
             return find_symmetry(read_crystal(reference.path), self.tolerance_angstrom)
         try:
             return PointGroup.from_symbol(reference.text)
         except SitesymError as error:
             raise TensorInputError(
                 "the crystal of the record is not found",
-                repr(reference.text),
+                repr(shorten(reference.text, 80)),
                 f"a path from {reference.folder or '.'}, the text of a POSCAR or CIF, a point-group symbol",
                 "correct the path or the symbol",
             ) from error

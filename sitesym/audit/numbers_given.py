@@ -17,6 +17,8 @@ from sitesym.tensors import TensorKind, contraction
 
 _COMPONENT: Final = re.compile(r"[A-Za-z]*[ _]*(?P<digits>[1-6]+)")
 _LONGEST_LIST: Final = 12
+#: Squares and products of numbers up to this stay finite.
+_LARGEST: Final = 1e100
 
 
 def array_given(value: Any, name: str) -> tuple[FloatArray, FloatArray]:
@@ -24,13 +26,21 @@ def array_given(value: Any, name: str) -> tuple[FloatArray, FloatArray]:
 
     ``value``: a number, nested lists of numbers or of texts of numbers, or a text: JSON, or rows separated
     by semicolons or line ends. Raises TensorInputError naming the entry that is no number, or rows of
-    unequal length.
+    unequal length, or a number too large to compute with.
     """
     nested = _from_text(value) if isinstance(value, str) else value
     shape = _shape(nested)
     printed = [_number(entry, place, shape, name) for place, entry in _entries(nested)]
     if len(printed) != int(np.prod(shape)):
         raise _uneven(name, shape)
+    immense = [number.text for number in printed if _LARGEST < abs(number) < np.inf]
+    if immense:
+        raise TensorInputError(
+            f"{name} holds a number that nothing measured is as large as",
+            immense[0],
+            f"numbers up to {_LARGEST:g}",
+            "correct the number or choose a larger unit",
+        )
     steps = rounding_steps([number.text for number in printed])
     return np.array([float(number) for number in printed]).reshape(shape), steps.reshape(shape)
 

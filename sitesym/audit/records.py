@@ -229,8 +229,12 @@ def _remarks(fields: Fields) -> Iterator[str]:
     if _word(fields, "remark"):
         yield _word(fields, "remark")
     used = {*FIELDS, "components"} | (set() if fields.get("crystal") else set(_STRUCTURE_FIELDS))
-    for name, value in fields.items():
-        if name not in used:
-            shown = " ".join(str(value).split())
-            cut = shown if len(shown) <= _LONGEST_REMARK else shown[:_LONGEST_REMARK] + "..."
-            yield f"field {name} not used: {cut}"
+    unused = [f"{name} {_shown(value)}" for name, value in fields.items() if name not in used]
+    if unused:
+        yield f"fields not used: {'; '.join(unused)}"
+
+
+def _shown(value: Any) -> str:
+    """A value on one line, cut where it is long."""
+    text = " ".join((value.text if isinstance(value, PrintedNumber) else str(value)).split())
+    return text if len(text) <= _LONGEST_REMARK else text[:_LONGEST_REMARK] + "..."

@@ -196,3 +196,9 @@ def test_a_call_that_does_not_say_enough_is_refused() -> None:
         sitesym.audit(D_32, "32", "piezoelectric-strain", order="1 2 3 4 5 6")
     with pytest.raises(TensorInputError, match="point-group symbol"):
         sitesym.audit(D_32, "no such crystal", "piezoelectric-strain")
+
+
+def test_a_tensor_that_some_turn_leaves_unchanged_is_searched_like_any_other() -> None:
+    # All entries alike: symmetric about [111], where a free rotation has nothing to change.
+    answer = sitesym.audit(np.ones((3, 6)), "32", "piezoelectric-strain", axes="ieee", order=ORDER, sigma=0.1)
+    assert answer.verdict == "violates"
