@@ -103,12 +103,12 @@ def cut(items: Sequence[str], most: int = MOST_ITEMS) -> str:
 
 
 def percent(value: float | None) -> str:
-    """A fraction with two digits; what is only rounding of the computer's numbers is zero.
+    """A fraction with three digits; what is only rounding of the computer's numbers is zero.
 
     >>> percent(0.01234), percent(2e-16), percent(None)
-    ('1.2 %', '0 %', '-')
+    ('1.23 %', '0 %', '-')
     """
-    return "-" if value is None else f"{100 * value if abs(value) > _ROUNDING else 0:.2g} %"
+    return "-" if value is None else f"{100 * value if abs(value) > _ROUNDING else 0:.3g} %"
 
 
 def short(value: float | None) -> str:
