@@ -197,14 +197,14 @@ def _as_set(rotations: IntArray) -> set[bytes]:
 def _fitting_setting(reading: Reading, lattice: FloatArray, remarks: list[str]) -> Setting:
     """The one setting that fits the cell; more than one, or none, is an error that lists them."""
     fitting = _check_cell(list(reading.settings), reading.text, lattice)
+    if len(fitting) == 1:
+        return fitting[0]
     along_b = [setting for setting in fitting if is_unique_axis_b(setting)]
-    if len(fitting) > 1 and reading.statement == "hm" and len(along_b) == 1:
+    if reading.statement == "hm" and len(along_b) == 1:
         remarks.append(
             f"{reading.text} names no unique axis: b, as in International Tables, gives {along_b[0].name}"
         )
         return along_b[0]
-    if len(fitting) == 1:
-        return fitting[0]
     raise SpaceGroupStatementError(
         "the space group is stated without its setting",
         f"{reading.text} may be {', '.join(setting.name for setting in fitting)}",

@@ -26,6 +26,8 @@ from sitesym.tolerances import MERGE_DISTANCE_ANGSTROM
 _GRID = 24 * 41666
 _GRID_OFFSET = 0.137
 _REPORTED_MOVE_ANGSTROM = 1e-6
+# Fractional coordinates closer than this are the same number.
+_ROUNDING = 1e-12
 
 
 @dataclass(frozen=True, eq=False)
@@ -95,10 +97,11 @@ def _onto_special_positions(
         difference -= np.rint(difference)
         cartesian = difference @ lattice
         near = np.einsum("snk,snk->sn", cartesian, cartesian) < MERGE_DISTANCE_ANGSTROM**2
-        positions = positions + (near[:, :, None] * difference).sum(axis=1) / near.sum(axis=1)[:, None]
+        shift = (near[:, :, None] * difference).sum(axis=1) / near.sum(axis=1)[:, None]
+        positions = positions + shift
         # The mean over part of a stabiliser comes nearer to the position; repeat until its images are all
-        # there.
-        if np.array_equal(near, fixing):
+        # there, which they are at once where nothing had to move.
+        if np.abs(shift).max() < _ROUNDING or np.array_equal(near, fixing):
             return positions, near
         fixing = near
 
@@ -116,10 +119,13 @@ def _orbits(
 ) -> tuple[list[FloatArray], list[list[int]]]:
     """Distinct images of each site in [0, 1), and the operation that makes each of them."""
     everything = _images(positions, operations)
-    codes = _grid_codes(everything)
+    codes = _grid_codes(everything).tolist()
     orbits, chosen = [], []
     for number, site in enumerate(sites):
-        first = np.sort(np.unique(codes[number], return_index=True)[1])
+        seen: dict[int, int] = {}
+        for place, code in enumerate(codes[number]):
+            seen.setdefault(code, place)
+        first = list(seen.values())
         fixed = int(fixing[number].sum())
         if len(first) * fixed != len(codes[number]):
             raise OverlappingAtomsError(
@@ -129,7 +135,7 @@ def _orbits(
                 f"give the exact coordinates of site {site.label}",
             )
         orbits.append(_in_cell(everything[number, first]))
-        chosen.append(first.tolist())
+        chosen.append(first)
     return orbits, chosen
 
 

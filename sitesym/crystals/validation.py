@@ -7,6 +7,8 @@ volume, atoms on top of each other. Occupancies are checked where a species is m
 from __future__ import annotations
 
 from collections.abc import Sequence
+from math import hypot, prod
+from operator import mul
 
 import numpy as np
 
@@ -39,9 +41,8 @@ def check_structure(lattice: FloatArray, positions_frac: FloatArray, labels: Seq
 
 def plane_spacings(lattice: FloatArray) -> FloatArray:
     """(3,) distances in angstrom between neighbouring (100), (010) and (001) lattice planes."""
-    inverse = np.asarray(np.linalg.inv(lattice), dtype=np.float64)
-    spacings: FloatArray = 1.0 / np.linalg.norm(inverse, axis=0)
-    return spacings
+    volume, areas = _volume_and_areas(lattice)
+    return np.array([volume / area for area in areas])
 
 
 def fractional(lattice: FloatArray, positions_cart: FloatArray) -> FloatArray:
@@ -50,6 +51,18 @@ def fractional(lattice: FloatArray, positions_cart: FloatArray) -> FloatArray:
     if not np.isfinite(lattice).all() or abs(np.linalg.det(lattice)) == 0.0:
         return positions_cart
     return np.asarray(np.linalg.solve(lattice.T, positions_cart.T).T, dtype=np.float64)
+
+
+def _volume_and_areas(lattice: FloatArray) -> tuple[float, list[float]]:
+    """Volume of the cell and areas of its faces across a, b, c; for nine numbers plain Python is fastest."""
+    a, b, c = lattice.tolist()
+    normals = [_cross(b, c), _cross(c, a), _cross(a, b)]
+    return abs(sum(map(mul, a, normals[0]))), [hypot(*normal) for normal in normals]
+
+
+def _cross(first: list[float], second: list[float]) -> tuple[float, float, float]:
+    (x, y, z), (u, v, w) = first, second
+    return y * w - z * v, z * u - x * w, x * v - y * u
 
 
 def close_pairs(
@@ -65,8 +78,10 @@ def close_pairs(
     wrapped: FloatArray = positions_frac - np.floor(positions_frac)
     wrapped[wrapped >= 1.0] = 0.0
     # A vector this long in angstrom is at most this long in fractional coordinates.
-    radius = within_angstrom * float(np.linalg.norm(np.linalg.inv(lattice), 2))
+    radius = within_angstrom * hypot(*(1.0 / plane_spacings(lattice)).tolist())
     pairs = cKDTree(wrapped, boxsize=1.0).query_pairs(radius, output_type="ndarray")
+    if len(pairs) == 0:
+        return pairs, np.zeros(0)
     difference = wrapped[pairs[:, 0]] - wrapped[pairs[:, 1]]
     distances = np.linalg.norm((difference - np.rint(difference)) @ lattice, axis=1)
     near = distances < within_angstrom
@@ -125,9 +140,10 @@ def _check_finite(rows: FloatArray, what: str, names: Sequence[str]) -> None:
 
 def check_cell(lattice: FloatArray) -> None:
     """The cell (rows, angstrom) has a volume and sensible lengths; else SingularCellError."""
-    edges = np.linalg.norm(lattice, axis=1)
-    text = f"edges {' '.join(f'{edge:.6g}' for edge in edges.tolist())} angstrom"
-    if edges.max() > LARGEST_CELL_EDGE_ANGSTROM:
+    edges = [hypot(*row) for row in lattice.tolist()]
+    volume, areas = _volume_and_areas(lattice)
+    text = f"edges {' '.join(f'{edge:.6g}' for edge in edges)} angstrom"
+    if max(edges) > LARGEST_CELL_EDGE_ANGSTROM:
         raise SingularCellError(
             "the cell is absurdly large",
             text,
@@ -135,12 +151,12 @@ def check_cell(lattice: FloatArray) -> None:
             "look at the unit of length",
         )
     # The product of the edges sets the scale on which a volume counts as zero.
-    if edges.min() == 0.0 or abs(np.linalg.det(lattice)) < 1e-9 * float(edges.prod()):
+    if min(edges) == 0.0 or volume < 1e-9 * prod(edges):
         raise SingularCellError(
             "the cell vectors span no volume", text, "a, b and c are not in one plane", "correct the cell"
         )
-    spacings = plane_spacings(lattice)
-    if spacings.min() <= 2.0 * SMALLEST_DISTANCE_ANGSTROM:
+    spacings = [volume / area for area in areas]
+    if min(spacings) <= 2.0 * SMALLEST_DISTANCE_ANGSTROM:
         raise SingularCellError(
             "the cell is too flat to hold atoms",
             f"{text}; lattice planes {' '.join(f'{spacing:.3g}' for spacing in spacings)} angstrom apart",
