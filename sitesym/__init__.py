@@ -28,7 +28,7 @@ if TYPE_CHECKING:
     )
     from sitesym.errors import SitesymError
     from sitesym.groups import CharacterTable, PointGroup, character_table, standard_rotation
-    from sitesym.screening import screen_folder
+    from sitesym.screening import screen
     from sitesym.tensors import (
         AllowedForm,
         TensorKind,
@@ -52,7 +52,7 @@ _HOMES = {
     ),
     "sitesym.errors": ("SitesymError",),
     "sitesym.groups": ("CharacterTable", "PointGroup", "character_table", "standard_rotation"),
-    "sitesym.screening": ("screen_folder",),
+    "sitesym.screening": ("screen",),
     "sitesym.tensors": (
         "AllowedForm", "TensorKind", "TensorSpace", "all_kinds", "allowed_form", "independent_count", "kind",
         "kind_from_jahn",
@@ -84,7 +84,7 @@ __all__ = [
     "kind_from_jahn",
     "read_crystal",
     "read_crystals",
-    "screen_folder",
+    "screen",
     "standard_rotation",
 ]
 

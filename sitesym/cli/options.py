@@ -9,11 +9,13 @@ from typing import Any, TypeVar, cast
 
 import click
 
+from sitesym.cli.choices import reliability_options as reliability_options
+from sitesym.cli.choices import split_names as split_names
+from sitesym.cli.choices import tolerance_option as tolerance_option
 from sitesym.crystals import MARKS, STATEMENTS, ReadingChoices
 from sitesym.errors import UsageError
 from sitesym.reports.markup import Document
 from sitesym.reports.render import FORMATS, render
-from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
 _Command = TypeVar("_Command", bound=Callable[..., Any])
 
@@ -30,36 +32,6 @@ def output_options(command: _Command) -> _Command:
         help="Output format.",
     )
     return format_choice(output(command))
-
-
-tolerance_option = click.option(
-    "--tolerance",
-    "tolerance_angstrom",
-    type=click.FloatRange(min=0, min_open=True),
-    default=DEFAULT_TOLERANCE_ANGSTROM,
-    show_default=True,
-    metavar="ANGSTROM",
-    help="Distance within which atoms count as related by symmetry.",
-)
-
-
-def reliability_options(command: _Command) -> _Command:
-    """``--tolerance``, ``--finder`` and ``--ladder``."""
-    finder = click.option(
-        "--finder",
-        type=click.Choice(("spglib", "moyo", "both")),
-        default="spglib",
-        show_default=True,
-        help="Library that finds the symmetry; both: the first, with the second as second opinion.",
-    )
-    ladder = click.option(
-        "--ladder",
-        type=click.Choice(("on", "off")),
-        default="on",
-        show_default=True,
-        help="Try other tolerances, and measure the distance from inversion and a reversed polar axis.",
-    )
-    return tolerance_option(finder(ladder(command)))
 
 
 def reading_options(command: _Command) -> _Command:
@@ -114,13 +86,3 @@ def write(text: str, output: str | None) -> None:
         raise UsageError(
             "the output cannot be written", reason, "a path that can be written", "correct --output", output
         ) from error
-
-
-def split_names(values: tuple[str, ...]) -> list[str]:
-    """Names from a repeated option whose values may be lists separated by commas; doubles are dropped.
-
-    >>> split_names(("pyroelectric, seebeck", "seebeck"))
-    ['pyroelectric', 'seebeck']
-    """
-    names = (name.strip() for value in values for name in value.split(","))
-    return list(dict.fromkeys(name for name in names if name))

@@ -1,25 +1,168 @@
-"""`sitesym screen`: one row of verdicts for every structure below a folder."""
+"""`sitesym screen`: one row of verdicts for every structure of folders, files, archives and lists."""
 
 from __future__ import annotations
 
+import sys
+from collections.abc import Callable, Iterable, Iterator
+from dataclasses import dataclass
+from functools import partial
+from signal import Signals
+
 import click
 
-from sitesym.cli.options import emit, output_options, reliability_options
-from sitesym.reports.screen_report import screen_document
-from sitesym.screening import screen_folder
+from sitesym.cli.choices import reliability_options, split_names, spreadsheet_option
+from sitesym.cli.progress import watched
+from sitesym.screening import Row, Screening, Settings, Store, Task, WorkItem, available_cores
+from sitesym.screening.engine import DEFAULT_LIMIT_MEGABYTES, DEFAULT_LIMIT_SECONDS, Crew
+from sitesym.screening.pool import Pool
+
+FORMATS = ("text", "json", "jsonl", "csv", "markdown", "latex", "parquet")
+#: Formats of which rows are written as they come.
+_STREAMED = ("jsonl", "csv")
+
+
+@dataclass(frozen=True)
+class _Target:
+    """Where rows go: the format (None for none), the file (None for the terminal)."""
+
+    inputs: tuple[str, ...]
+    format_name: str | None
+    output: str | None
+    spreadsheet_safe: bool
+
+    def write(self, rows: Iterable[Row], settings: Settings) -> None:
+        """Write all rows, as they come where the format can."""
+        # Not needed to start a run, and long to load.
+        from sitesym.cli.options import emit
+        from sitesym.cli.table import write_rows
+        from sitesym.reports.screen_report import screen_document
+
+        if self.format_name in (*_STREAMED, "parquet"):
+            write_rows(
+                rows, settings.columns, self.format_name, self.output, spreadsheet_safe=self.spreadsheet_safe
+            )
+        elif self.format_name is not None:
+            emit(screen_document(self.inputs, settings, rows), self.format_name, self.output)
 
 
 @click.command("screen")
-@click.argument("folder")
+@click.argument("inputs", nargs=-1, required=True, metavar="INPUT...")
+@click.option("--store", "store_path", metavar="FILE", help="Keep the rows in this file, and go on from it.")
+@click.option(
+    "--workers",
+    type=click.IntRange(min=1),
+    default=available_cores,
+    show_default="all cores",
+    help="Processes.",
+)
+@click.option(
+    "--cluster",
+    metavar="ADDRESS",
+    help="Workers of a Dask cluster: tcp://host:port, its scheduler file (.json), or local:N.",
+)
+@click.option(
+    "--limit-seconds",
+    type=click.FloatRange(min=0, min_open=True),
+    default=DEFAULT_LIMIT_SECONDS,
+    show_default=True,
+    help="Time for one structure.",
+)
+@click.option(
+    "--limit-memory",
+    type=click.FloatRange(min=0, min_open=True),
+    default=DEFAULT_LIMIT_MEGABYTES,
+    show_default=True,
+    metavar="MEGABYTES",
+    help="Memory for one structure.",
+)
+@click.option(
+    "--retry", is_flag=True, help="With --store: try again what crashed, took too long or too much."
+)
+@click.option("--properties", multiple=True, metavar="NAMES", help="Tensors whose components are counted.")
 @reliability_options
-@output_options
+@click.option("--format", "format_name", type=click.Choice(FORMATS), help="Format; text without --store.")
+@click.option("--output", metavar="PATH", help="Write to this file and not to the terminal.")
+@spreadsheet_option
 def command(
-    folder: str, tolerance_angstrom: float, finder: str, ladder: str, format_name: str, output: str | None
+    inputs: tuple[str, ...],
+    store_path: str | None,
+    workers: int,
+    cluster: str | None,
+    limit_seconds: float,
+    limit_memory: float,
+    retry: bool,
+    properties: tuple[str, ...],
+    tolerance_angstrom: float,
+    finder: str,
+    ladder: str,
+    format_name: str | None,
+    output: str | None,
+    spreadsheet_safe: bool,
 ) -> None:
-    """Symmetry and verdicts of every structure file below FOLDER, in the order of the paths.
+    """Symmetry and verdicts of every structure of each INPUT, in the order of the paths.
 
-    A file that cannot be read is a row with its error, and the run goes on. Columns of CSV are best read as
-    text: in pandas with dtype=str and keep_default_na=False.
+    An INPUT is a folder (with those below it), a structure file, an ASE database, JSON Lines with inline
+    structures, an archive (.tar, .zip), a list of paths (.txt), or a shell pattern of these. What cannot be
+    read, crashes or takes too much is a row with its error, and the run goes on.
+
+    With --store, rows are kept in FILE as they come. A run that was stopped goes on there; only what is new
+    or has changed (content, settings, versions) is done again. Rows are read with `sitesym table FILE`, or
+    with --format. Text, json, markdown and latex hold all rows in memory; csv and jsonl are written row by row.
     """
-    rows = screen_folder(folder, tolerance_angstrom, finder, ladder == "on")
-    emit(screen_document(folder, rows, tolerance_angstrom), format_name, output)
+    chosen = split_names(properties)
+    settings = Settings(tolerance_angstrom, finder, ladder == "on", *([tuple(chosen)] if chosen else []))
+    task = Task(settings, limit_seconds, limit_memory, hashed=store_path is not None)
+    run = Screening(task, _crew(workers, cluster))
+    if store_path is None:
+        _screen_to_output(run, _Target(inputs, format_name or "text", output, spreadsheet_safe))
+    else:
+        _screen_to_store(run, _Target(inputs, format_name, output, spreadsheet_safe), store_path, retry)
+    if run.stopped_by:
+        click.echo(f"stopped by {run.stopped_by}; what is done is kept", err=True)
+        sys.exit(128 + Signals[run.stopped_by])
+
+
+def _crew(workers: int, cluster: str | None) -> Callable[[Task], Crew]:
+    """What makes the workers: processes of this machine, or a cluster, whose library is loaded only then."""
+    if cluster is None:
+        return lambda task: Pool(task, workers)
+    from sitesym.screening.cluster import ClusterPool
+
+    return partial(ClusterPool, address=cluster)
+
+
+def _screen_to_output(run: Screening, target: _Target) -> None:
+    with run:
+        to_terminal = target.format_name in _STREAMED and target.output is None and sys.stdout.isatty()
+        rows = _watched(run.rows(_items(target.inputs)), run, target, bar=not to_terminal)
+        target.write(rows, run.task.settings)
+    if target.format_name != "text":
+        _summarise(run, to_standard_error=True)
+
+
+def _screen_to_store(run: Screening, target: _Target, path: str, retry: bool) -> None:
+    with Store.writing(path, run.task.settings) as store, run:
+        for _ in _watched(run.into(store, _items(target.inputs), retry), run, target, bar=True):
+            pass
+        target.write(store.rows(), run.task.settings)
+    _summarise(run, to_standard_error=target.format_name is not None)
+
+
+def _items(inputs: tuple[str, ...]) -> Iterator[WorkItem]:
+    # Knows every format, so that it takes long to load: the workers are on their way meanwhile.
+    from sitesym.screening.sources import work_items
+
+    yield from work_items(inputs)
+
+
+def _watched(rows: Iterable[Row], run: Screening, target: _Target, *, bar: bool) -> Iterator[Row]:
+    return watched(rows, run, lambda: sum(1 for _ in _items(target.inputs)), bar=bar and sys.stderr.isatty())
+
+
+def _summarise(run: Screening, *, to_standard_error: bool) -> None:
+    from sitesym.reports.screen_summary import summary_lines
+
+    if run.already_done:
+        click.echo(f"{run.already_done} done before, {run.done} now", err=to_standard_error)
+    for line in summary_lines(run.tally):
+        click.echo(line, err=to_standard_error)

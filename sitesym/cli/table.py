@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 import sys
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 
 import click
 
-from sitesym.cli.options import split_names
+from sitesym.cli.choices import split_names, spreadsheet_option
 from sitesym.errors import UsageError
 from sitesym.reports.table import TABLE_FORMATS, default_columns, table_lines
 from sitesym.reports.table_parquet import write_parquet
-from sitesym.screening.query import Query
+from sitesym.screening.columns import Column, Row
 from sitesym.screening.table import Table
 
 
@@ -34,12 +34,7 @@ from sitesym.screening.table import Table
     help="Format.",
 )
 @click.option("--output", metavar="PATH", help="Write to this file and not to the terminal.")
-@click.option(
-    "--spreadsheet-safe/--plain-cells",
-    default=True,
-    show_default=True,
-    help="In CSV, an apostrophe before outside text that a spreadsheet would run; or every text as it is.",
-)
+@spreadsheet_option
 def command(
     store: str,
     where: tuple[str, ...],
@@ -67,14 +62,26 @@ def command(
     named = split_names(columns)
     names = [] if named == ["all"] else named or default_columns(table.columns, format_name)
     query = table.query(where, sort, names, limit)
+    write_rows(table.rows(query), query.columns, format_name, output, spreadsheet_safe=spreadsheet_safe)
+
+
+def write_rows(
+    rows: Iterable[Row],
+    columns: Sequence[Column],
+    format_name: str,
+    output: str | None,
+    *,
+    spreadsheet_safe: bool = True,
+) -> None:
+    """Write a table in one of `TABLE_FORMATS` to standard output or to a file, row by row where it can be.
+
+    Raises UsageError when the file cannot be written, and for Parquet without one.
+    """
     try:
         if format_name == "parquet":
-            _write_parquet(table, query, output)
+            _write_parquet(rows, columns, output)
         else:
-            lines = table_lines(
-                table.rows(query), query.columns, format_name, spreadsheet_safe=spreadsheet_safe
-            )
-            _write(lines, output)
+            _write(table_lines(rows, columns, format_name, spreadsheet_safe=spreadsheet_safe), output)
     except OSError as error:
         if output is None:
             raise
@@ -96,9 +103,9 @@ def _write(lines: Iterable[str], output: str | None) -> None:
         stream.writelines(lines)
 
 
-def _write_parquet(table: Table, query: Query, output: str | None) -> None:
+def _write_parquet(rows: Iterable[Row], columns: Sequence[Column], output: str | None) -> None:
     if output is None:
         raise UsageError(
             "Parquet is not for a terminal", "no --output", "a Parquet file is binary", "add --output PATH"
         )
-    write_parquet(table.rows(query), query.columns, output)
+    write_parquet(rows, columns, output)

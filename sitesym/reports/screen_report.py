@@ -2,15 +2,17 @@
 
 from __future__ import annotations
 
-from collections import Counter
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
+from dataclasses import asdict
 from typing import Any
 
 from sitesym.reports.headings import footer, latex_footer, markdown_footer
 from sitesym.reports.layout import cell_text, labelled, paragraph, table
-from sitesym.reports.markup import Document, csv_text, latex_escape, latex_table, markdown_table
+from sitesym.reports.markup import Document, latex_escape, latex_table, markdown_table
 from sitesym.reports.provenance import library_versions
-from sitesym.screening import COLUMNS, Row
+from sitesym.reports.screen_summary import counts_line, verdicts_line
+from sitesym.reports.table_csv import csv_lines
+from sitesym.screening import Column, Row, Settings, Tally
 
 #: What a person sees of a row: head and column. Every column is in CSV and JSON.
 _SHOWN = (
@@ -19,7 +21,7 @@ _SHOWN = (
     ("space group", "space_group"),
     ("point group", "point_group"),
     ("centric", "centrosymmetric"),
-    ("chiral", "chiral"),
+    ("chiral", "chiral_class"),
     ("polar", "polar"),
     ("piezo", "piezoelectric"),
     ("pyro", "pyroelectric"),
@@ -31,16 +33,17 @@ _SHOWN = (
 )
 _HEAD = tuple(head for head, _ in _SHOWN)
 _RIGHT = (11, 12, 13)
-_VERDICTS = ("centrosymmetric", "chiral", "polar", "piezoelectric", "second_harmonic", "optical_activity")
 
 
-def screen_document(folder: str, rows: Iterable[Row], tolerance_angstrom: float) -> dict[str, Any]:
-    """Schema ``sitesym.screen/1``: the rows of a folder with the tolerance they were made at."""
+def screen_document(inputs: Sequence[str], settings: Settings, rows: Iterable[Row]) -> dict[str, Any]:
+    """Schema ``sitesym.screen/1``: the rows of everything named, with the settings they were made with."""
     return {
         "schema": "sitesym.screen/1",
-        "folder": folder,
-        "tolerance_angstrom": tolerance_angstrom,
-        "columns": list(COLUMNS),
+        "inputs": list(inputs),
+        "tolerance_angstrom": settings.tolerance_angstrom,
+        "finder": settings.finder,
+        "ladder": settings.ladder,
+        "columns": [asdict(column) for column in settings.columns],
         "rows": list(rows),
         "versions": library_versions(),
     }
@@ -49,8 +52,11 @@ def screen_document(folder: str, rows: Iterable[Row], tolerance_angstrom: float)
 def screen_text(document: Document) -> str:
     """The table of structures, the failures with their reasons, and the counts."""
     rows = document["rows"]
-    blocks = [labelled("folder", document["folder"]), labelled("tolerance", _tolerance(document))]
-    blocks = ["\n".join(blocks)]
+    facts = [
+        labelled("structures", ", ".join(document["inputs"])),
+        labelled("tolerance", _tolerance(document)),
+    ]
+    blocks = ["\n".join(facts)]
     good = [row for row in rows if row["status"] == "ok" and row.get("stability") != "fragile"]
     fragile = [row for row in rows if row["status"] == "ok" and row.get("stability") == "fragile"]
     bad = [row for row in rows if row["status"] != "ok"]
@@ -74,8 +80,7 @@ def screen_csv(document: Document) -> str:
     Read it with the columns as text (in pandas: ``dtype=str, keep_default_na=False``): point groups may all
     be "-1", and a formula may be "NaN".
     """
-    columns = document["columns"]
-    return csv_text(columns, ([row[column] for column in columns] for row in document["rows"]))
+    return "".join(csv_lines(document["rows"], [Column(**entry) for entry in document["columns"]]))
 
 
 def screen_markdown(document: Document) -> str:
@@ -122,10 +127,7 @@ def _tolerance(document: Document) -> str:
 
 
 def _summary(document: Document) -> str:
-    rows = document["rows"]
-    statuses = Counter(row["status"] for row in rows)
-    verdicts = (
-        f"{column.replace('_', ' ')} {sum(bool(row[column]) for row in rows)}" for column in _VERDICTS
-    )
-    counted = ", ".join(f"{number} {status}" for status, number in sorted(statuses.items(), reverse=True))
-    return f"{len(rows)} structures ({counted}); {', '.join(verdicts)}"
+    tally = Tally()
+    for row in document["rows"]:
+        tally.add(row)
+    return "; ".join((counts_line(tally), verdicts_line(tally)))

@@ -8,6 +8,7 @@ another; a batch that lost several workers one after the other is done item by i
 from __future__ import annotations
 
 import importlib
+import os
 from collections import deque
 from collections.abc import Iterator
 from time import monotonic
@@ -41,14 +42,15 @@ class ClusterPool:
     """Workers of a Dask cluster for one task. Use it as a context manager: its end leaves the cluster."""
 
     def __init__(self, task: Task, address: str) -> None:
-        """Connect to ``address``: a scheduler (tcp://host:8786), the scheduler file it wrote (a path ending
-        in .json), or local:N for N workers on this machine.
+        """``address``: a scheduler (tcp://host:8786), the scheduler file it wrote (a path ending in .json),
+        or local:N for N workers on this machine.
 
-        Raises UsageError where Dask is not installed or the address is not understood, ScreeningError where
-        the scheduler does not answer.
+        Raises UsageError where Dask is not installed or the address is not understood.
         """
         self.task = task
         self.stopping = False
+        self._address = address
+        self._local_workers = _local_workers(address)
         self._run = uuid4().hex
         self._versions = versions()
         self._given: dict[Any, list[Job]] = {}
@@ -56,10 +58,18 @@ class ClusterPool:
         self._threads, self._counted = 0, -_FRESH_SECONDS
         self._newest = 0
         self._dask = _library()
-        self._cluster = self._local_cluster(address) if address.startswith("local:") else None
-        self._client = self._connected(address)
+        self._cluster: Any = None
+        self._client: Any = None
 
     def __enter__(self) -> ClusterPool:
+        """Start the local cluster or connect. Raises ScreeningError where the scheduler does not answer."""
+        if self._local_workers:
+            # No limit of memory: structures are worked on in processes that have limits of their own.
+            self._cluster = self._dask.LocalCluster(
+                n_workers=self._local_workers, threads_per_worker=1, memory_limit=None,
+                dashboard_address="localhost:0",
+            )  # fmt: skip
+        self._client = self._connected()
         return self
 
     def __exit__(
@@ -164,33 +174,37 @@ class ClusterPool:
             self._threads, self._counted = sum(self._client.nthreads().values()), monotonic()
         return max(BATCHES_AT_LEAST, BATCHES_A_THREAD * self._threads)
 
-    def _local_cluster(self, address: str) -> Any:
-        number = address.removeprefix("local:")
-        if not number.isdecimal() or int(number) < 1:
-            raise UsageError(
-                "the local cluster is not understood",
-                address,
-                "local:N starts N workers, at least one",
-                "write for example --cluster local:4",
-            )
-        # No dashboard, and no limit of memory: structures are worked on in processes that have their own.
-        return self._dask.LocalCluster(
-            n_workers=int(number), threads_per_worker=1, dashboard_address=None, memory_limit=None
-        )
-
-    def _connected(self, address: str) -> Any:
-        where: dict[str, Any] = {"address": self._cluster or address}
-        if address.endswith(".json"):
-            where = {"scheduler_file": address}
+    def _connected(self) -> Any:
+        where: dict[str, Any] = {"address": self._cluster or self._address}
+        if self._address.endswith(".json"):
+            where = {"scheduler_file": self._address}
         try:
+            if "scheduler_file" in where:
+                # The client would wait for the file for ever.
+                os.stat(self._address)
             return self._dask.Client(**where, timeout=_CONNECT_SECONDS, set_as_default=False)
         except (OSError, ValueError) as error:
             raise ScreeningError(
                 "the scheduler of the cluster does not answer",
-                f"{address}: {error}",
+                f"{self._address}: {error}",
                 "tcp://host:port, the scheduler file (.json) it wrote, or local:N",
                 "start the scheduler, or correct --cluster",
             ) from error
+
+
+def _local_workers(address: str) -> int:
+    """N of local:N, 0 for the address of a scheduler. Raises UsageError."""
+    kind, _, number = address.partition(":")
+    if kind != "local":
+        return 0
+    if not number.isdecimal() or int(number) < 1:
+        raise UsageError(
+            "the local cluster is not understood",
+            address,
+            "local:N starts N workers, at least one",
+            "write for example --cluster local:4",
+        )
+    return int(number)
 
 
 def _library() -> Any:

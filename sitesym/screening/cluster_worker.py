@@ -12,10 +12,9 @@ from typing import Final
 
 from sitesym.errors import ScreeningError
 from sitesym.screening.pool import Pool
-from sitesym.screening.process import Job
 from sitesym.screening.settings import versions
+from sitesym.screening.task import Answer, Job, Task
 from sitesym.screening.work import WorkItem
-from sitesym.screening.worker import Answer, Task
 
 #: Warm processes by run and thread. They belong to the Dask worker, which no single batch outlives.
 _POOLS: Final[dict[tuple[str, int], Pool]] = {}

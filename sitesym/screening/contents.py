@@ -23,10 +23,20 @@ def read_item(item: WorkItem) -> Structures:
         raise item.error
     if item.kind == "path":
         _require_regular(item.source)
-        yield from read_each(item.source, item.file_format or None)
+        yield from _named(read_each(item.source, item.file_format or None))
         return
     with file_in_memory(item.content, item.name or "structure") as path:
-        yield from read_each(path, item.file_format or None)
+        yield from _named(read_each(path, item.file_format or None))
+
+
+def _named(structures: Structures) -> Structures:
+    """The structures; the only one of a file needs no name."""
+    first, second = next(structures, None), next(structures, None)
+    if first is not None and second is None:
+        yield "", first[1]
+        return
+    yield from (structure for structure in (first, second) if structure is not None)
+    yield from structures
 
 
 @contextmanager

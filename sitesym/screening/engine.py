@@ -9,16 +9,18 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Iterable, Iterator
 from contextlib import AbstractContextManager
+from types import TracebackType
 from typing import Final, Protocol
 
+from sitesym.errors import SitesymError
 from sitesym.screening.columns import Row
 from sitesym.screening.interruption import requests_to_stop
 from sitesym.screening.pool import Pool
-from sitesym.screening.process import Job
+from sitesym.screening.settings import Settings
 from sitesym.screening.store import Store
 from sitesym.screening.tally import Tally
+from sitesym.screening.task import Answer, Job, Task
 from sitesym.screening.work import WorkItem
-from sitesym.screening.worker import Answer, Task
 
 DEFAULT_LIMIT_SECONDS: Final = 300.0
 DEFAULT_LIMIT_MEGABYTES: Final = 4000.0
@@ -35,18 +37,35 @@ class Crew(AbstractContextManager["Crew"], Protocol):
 
 
 class Screening:
-    """One run of a task. ``tally`` counts its rows; ``already_done`` the units found done in the store;
-    ``stopped_by`` is the name of the signal that ended it early, or empty.
+    """One run of a task, as a context manager: workers start when it is entered and end with it.
 
-    ``crew`` makes the workers for the task; by default one process for each core that may be used.
+    ``tally`` counts the rows, ``done`` the units finished, ``already_done`` those found done in the store;
+    ``stopped_by`` is the name of the signal that ended the run early, or empty. ``crew`` makes the workers;
+    by default one process for each core that may be used.
     """
 
     def __init__(self, task: Task, crew: Callable[[Task], Crew] | None = None) -> None:
         self.task = task
         self.tally = Tally()
+        self.done = 0
         self.already_done = 0
         self.stopped_by = ""
-        self._crew = crew or (lambda task: Pool(task, available_cores()))
+        self._crew = (crew or _one_process_a_core)(task)
+
+    def __enter__(self) -> Screening:
+        """Start the workers. Raises UsageError for settings that name what does not exist."""
+        self._crew.__enter__()
+        try:
+            self.task.settings.check()
+        except SitesymError:
+            self._crew.__exit__(None, None, None)
+            raise
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        self._crew.__exit__(kind, error, trace)
 
     def rows(self, items: Iterable[WorkItem]) -> Iterator[Row]:
         """Rows of all items, in their order.
@@ -86,19 +105,39 @@ class Screening:
 
     def _answers(self, items: Iterable[WorkItem]) -> Iterator[tuple[Job, Answer]]:
         jobs = (Job(number, item) for number, item in enumerate(items))
-        with self._crew(self.task) as crew:
+        with requests_to_stop(self._stop):
+            for job, answer in self._crew.answers(jobs):
+                self.done += 1
+                for row in answer.rows:
+                    self.tally.add(row)
+                yield job, answer
 
-            def stop(signal_name: str) -> None:
-                self.stopped_by = signal_name
-                crew.stop()
+    def _stop(self, signal_name: str) -> None:
+        self.stopped_by = signal_name
+        self._crew.stop()
 
-            with requests_to_stop(stop):
-                for job, answer in crew.answers(jobs):
-                    for row in answer.rows:
-                        self.tally.add(row)
-                    yield job, answer
+
+def screen(
+    names: Iterable[str | os.PathLike[str]], settings: Settings | None = None, workers: int | None = None
+) -> Iterator[Row]:
+    """Rows of all structures in folders, files, archives, lists and patterns, in their order.
+
+    ``workers``: number of processes, by default one for each core; they do not import the calling program.
+    Raises ReadingError where a name
+    stands for nothing.
+    """
+    task = Task(settings or Settings(), DEFAULT_LIMIT_SECONDS, DEFAULT_LIMIT_MEGABYTES)
+    with Screening(task, lambda task: Pool(task, workers or available_cores())) as run:
+        # Knows every format, so that it takes long to load: the workers are on their way meanwhile.
+        from sitesym.screening.sources import work_items
+
+        yield from run.rows(work_items(names))
 
 
 def available_cores() -> int:
     """Cores this process may use."""
     return len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1
+
+
+def _one_process_a_core(task: Task) -> Crew:
+    return Pool(task, available_cores())

@@ -13,10 +13,10 @@ from types import TracebackType
 from typing import Final
 
 from sitesym.errors import CrashError
-from sitesym.screening.process import Job, WorkerProcess
-from sitesym.screening.row import failed_row
+from sitesym.screening.failures import failed_row
+from sitesym.screening.process import WorkerProcess
+from sitesym.screening.task import Answer, Job, Task
 from sitesym.screening.work import content_hash
-from sitesym.screening.worker import Answer, Task
 
 #: A batch ends with the item that reaches one of these: atoms, items.
 BATCH_ATOMS: Final = 200
@@ -33,13 +33,15 @@ class Pool:
     def __init__(self, task: Task, workers: int) -> None:
         self.task = task
         self.stopping = False
-        self._crew = [WorkerProcess(task) for _ in range(workers)]
+        self._workers = workers
+        self._crew: list[WorkerProcess] = []
         self._again: deque[list[Job]] = deque()
         self._next: list[Job] = []
         self._jobs: Iterator[Job] = iter(())
         self._newest = 0
 
     def __enter__(self) -> Pool:
+        self._crew = [WorkerProcess(self.task) for _ in range(self._workers)]
         return self
 
     def __exit__(

@@ -11,13 +11,12 @@ import subprocess
 import sys
 import tempfile
 from collections import deque
-from dataclasses import dataclass
 from multiprocessing import Pipe
 from signal import SIGALRM, SIGKILL, Signals
 
 from sitesym.errors import CrashError, ScreeningError, TooSlowError
-from sitesym.screening.work import WorkItem
-from sitesym.screening.worker import MOST_WORDS, Answer, Task, too_much_memory
+from sitesym.screening.failures import too_much_memory
+from sitesym.screening.task import MOST_WORDS, Answer, Job, Task
 
 _CODE = "import sys; from sitesym.screening.worker import main; main(int(sys.argv[1]))"
 #: One thread a process: the processes share the cores.
@@ -26,15 +25,6 @@ _ONE_THREAD = dict.fromkeys(
 )
 #: What allocators of C++ and Rust say before they end the process.
 _MEMORY_WORDS = ("memory allocation of", "bad_alloc", "Cannot allocate memory", "out of memory")
-
-
-@dataclass(eq=False)
-class Job:
-    """An item with its place in the stream; ``tries``: how often it has ended a worker."""
-
-    number: int
-    item: WorkItem
-    tries: int = 0
 
 
 class WorkerProcess:
@@ -94,8 +84,7 @@ class WorkerProcess:
     def cause_of_death(self) -> ScreeningError:
         """Why the process ended, as the error of the job it was at."""
         code = self._process.wait()
-        words = os.pread(self._words.fileno(), MOST_WORDS, 0).decode("utf-8", errors="replace")
-        said = " ".join(words.split())
+        said = self._last_words()
         if code == -SIGALRM:
             return TooSlowError(
                 "the structure takes too much time",
@@ -118,6 +107,12 @@ class WorkerProcess:
             "native code of a library fails on it",
             "look at the structure; report it with the file",
         )
+
+    def _last_words(self) -> str:
+        """The end of what the process wrote since its last answer, in one line."""
+        start = max(os.fstat(self._words.fileno()).st_size - MOST_WORDS, 0)
+        words = os.pread(self._words.fileno(), MOST_WORDS, start)
+        return " ".join(words.decode("utf-8", errors="replace").split())
 
 
 def _ending(code: int) -> str:

@@ -5,17 +5,15 @@ Only what the columns need is computed. A verdict is a count of invariant compon
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.found import FoundSymmetry
 from sitesym.crystals.reliability import examined_symmetry
 from sitesym.crystals.symmetry import CrystalSymmetry
-from sitesym.errors import SitesymError, SymmetryError
-from sitesym.screening.columns import STATUSES, Row
+from sitesym.errors import SymmetryError
+from sitesym.screening.columns import Row
 from sitesym.screening.facts import chirality, facts_of, polar_text
+from sitesym.screening.failures import blank_row, joined
 from sitesym.screening.settings import Settings
-from sitesym.screening.sources.texts import storable
 from sitesym.screening.verdicts import reliability_columns, reliability_remarks
 from sitesym.screening.work import WorkItem
 
@@ -33,33 +31,6 @@ def crystal_row(item: WorkItem, name: str, crystal: Crystal, settings: Settings)
     row |= _sites(symmetry.found)
     row |= reliability_columns(symmetry.reliability)
     return row | {"remarks": joined(_remarks(symmetry)), "status": "ok"}
-
-
-def failed_row(item: WorkItem, name: str, error: SitesymError, settings: Settings) -> Row:
-    """The row of a structure, or of a whole item, that came to nothing.
-
-    Its status is the code of the error where that is a status of its own (crashed, ...), else `error`.
-    """
-    labelled = (("value", error.value), ("rule", error.rule), ("next step", error.next_step))
-    message = "; ".join([error.what, *(f"{label}: {text}" for label, text in labelled if text)])
-    status = error.code if error.code in STATUSES else "error"
-    failure: Row = {"status": status, "error_code": error.code, "error_message": storable(message)}
-    return blank_row(item, name, settings) | failure
-
-
-def blank_row(item: WorkItem, name: str, settings: Settings) -> Row:
-    """All columns, with what is known before anything is read."""
-    row: Row = dict.fromkeys(column.name for column in settings.columns)
-    row["id"] = storable(f"{item.identity}#{name}" if name else item.identity)
-    row["source"] = storable(item.source)
-    row["frame"] = storable(joined((item.frame, name), ", ") or "")
-    row["tolerance_angstrom"] = settings.tolerance_angstrom
-    return row
-
-
-def joined(parts: Sequence[str], separator: str = "; ") -> str | None:
-    """The parts that are not empty in one text; None for none."""
-    return storable(separator.join(part for part in parts if part)) or None
 
 
 def _identification(symmetry: CrystalSymmetry) -> Row:

@@ -6,9 +6,11 @@ import json
 from dataclasses import dataclass
 from hashlib import blake2b
 from importlib.metadata import PackageNotFoundError, version
+from math import isfinite
 from typing import Any, Final
 
 from sitesym import __version__
+from sitesym.errors import UsageError
 from sitesym.screening.columns import DEFAULT_PROPERTIES, Column, columns_for
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
@@ -30,6 +32,29 @@ class Settings:
     def columns(self) -> tuple[Column, ...]:
         """The columns of a row, in order."""
         return columns_for(self.properties)
+
+    def check(self) -> None:
+        """Return when every name means something; else UsageError with what there is."""
+        # Loads most of the package, which workers do at the same time.
+        from sitesym.crystals.reliability import FINDER_CHOICES
+        from sitesym.tensors import kind
+
+        for name in self.properties:
+            kind(name)
+        if self.finder not in FINDER_CHOICES:
+            raise UsageError(
+                "unknown symmetry finder",
+                self.finder,
+                f"one of {', '.join(FINDER_CHOICES)}",
+                "name one of these",
+            )
+        if not (isfinite(self.tolerance_angstrom) and self.tolerance_angstrom > 0.0):
+            raise UsageError(
+                "the tolerance is not a length",
+                f"{self.tolerance_angstrom}",
+                "a number above zero, in angstrom",
+                "correct it",
+            )
 
     def document(self) -> dict[str, Any]:
         """Settings and versions as strict JSON."""

@@ -22,8 +22,7 @@ from sitesym.screening.columns import Column, Row
 from sitesym.screening.lock import WriterLock
 from sitesym.screening.schema import add_columns, check_version, columns_in, migrate
 from sitesym.screening.settings import Settings
-from sitesym.screening.sources.texts import storable
-from sitesym.screening.work import WorkItem, content_hash
+from sitesym.screening.work import WorkItem, content_hash, storable
 
 #: Finished units are made permanent at the latest after so many, or so long (seconds).
 COMMIT_UNITS: Final = 200

@@ -11,13 +11,9 @@ from functools import lru_cache
 from itertools import pairwise
 from typing import Final
 
-import numpy as np
-
-from sitesym.crystals.idealisation import nearest_symmetric_lattice
 from sitesym.crystals.ladder import Ladder
 from sitesym.crystals.reliability import Reliability
-from sitesym.crystals.spglib_finder import setting
-from sitesym.groups import PointGroup
+from sitesym.crystals.symmetry import group_of_setting
 from sitesym.screening.columns import Row
 from sitesym.tensors import independent_count, kind
 
@@ -59,13 +55,6 @@ def verdict_flips(ladder: Ladder) -> tuple[Flip, ...]:
         for verdict in LADDER_VERDICTS
         if below[verdict] != above[verdict]
     )
-
-
-@lru_cache(maxsize=530)
-def group_of_setting(hall_number: int) -> PointGroup:
-    """The point group of a space-group setting, in some lattice that has its symmetry."""
-    rotations = setting(hall_number).point_rotations
-    return PointGroup.from_fractional(rotations, nearest_symmetric_lattice(np.eye(3), rotations))
 
 
 @lru_cache(maxsize=530)

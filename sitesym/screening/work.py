@@ -74,6 +74,15 @@ class WorkItem:
         return cls(source, frame, identity, "error", error=error)
 
 
+def storable(text: str) -> str:
+    r"""The text with what UTF-8 cannot hold (undecodable bytes of a file name) written as escapes.
+
+    >>> storable("a\udcff.cif")
+    'a\\udcff.cif'
+    """
+    return text.encode("utf-8", errors="backslashreplace").decode("utf-8")
+
+
 def content_hash(item: WorkItem) -> str:
     """32 hexadecimal digits for everything that decides an item's rows but the settings.
 

@@ -13,49 +13,21 @@ import signal
 import warnings
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
-from dataclasses import dataclass
 from importlib import import_module
 from multiprocessing.connection import Connection
 from time import perf_counter
-from typing import Final, TypeAlias
+from typing import TypeAlias
 
-from sitesym.errors import SitesymError, TooMuchMemoryError
+from sitesym.errors import SitesymError
 from sitesym.screening.columns import Row
 from sitesym.screening.contents import Structures
-from sitesym.screening.row import crystal_row, failed_row, joined
+from sitesym.screening.failures import failed_row, joined, too_much_memory
+from sitesym.screening.row import crystal_row
 from sitesym.screening.settings import Settings
-from sitesym.screening.sources.texts import storable
-from sitesym.screening.work import WorkItem, content_hash
-
-#: How much of what native code wrote is kept for a row (bytes).
-MOST_WORDS: Final = 600
+from sitesym.screening.task import MOST_WORDS, Answer, Task
+from sitesym.screening.work import WorkItem, content_hash, storable
 
 Reader: TypeAlias = Callable[[WorkItem], Structures]
-
-
-@dataclass(frozen=True)
-class Task:
-    """What a worker is told when it starts.
-
-    ``limit_seconds`` for reading an item and for each structure in it; ``limit_megabytes`` of memory beyond
-    what the warm process has. ``hashed``: whether answers carry the hash of the content. ``reader``: module
-    and function, separated by a colon, that gives the structures of an item.
-    """
-
-    settings: Settings
-    limit_seconds: float
-    limit_megabytes: float
-    hashed: bool = False
-    reader: str = "sitesym.screening.contents:read_item"
-
-
-@dataclass(frozen=True)
-class Answer:
-    """The rows of an item and the hash of its content; after a ``last`` answer the worker ends itself."""
-
-    rows: tuple[Row, ...]
-    content_hash: str = ""
-    last: bool = False
 
 
 def main(descriptor: int) -> None:
@@ -169,16 +141,6 @@ def _limit_memory(megabytes: float) -> None:
     _, hard = resource.getrlimit(resource.RLIMIT_AS)
     if hard == resource.RLIM_INFINITY or limit < hard:
         resource.setrlimit(resource.RLIMIT_AS, (limit, hard))
-
-
-def too_much_memory(megabytes: float, said: str = "") -> TooMuchMemoryError:
-    """The error of a structure that was refused memory; ``said``: the words of the code that asked for it."""
-    return TooMuchMemoryError(
-        "the structure takes too much memory",
-        f"more than {megabytes:g} megabytes{': ' if said else ''}{said}",
-        "memory for one structure is limited",
-        "raise --limit-memory",
-    )
 
 
 def _unforeseen(error: Exception) -> SitesymError:

@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+from dataclasses import asdict
 from typing import Any
 
 import pytest
+
+from sitesym.screening import columns_for
 
 VERSIONS = {"sitesym": "0.0.0", "numpy": "0.0.0", "ase": None}
 GROUP = {"symbol": "3m", "oriented": "31m", "schoenflies": "C3v", "order": 6, "system": "trigonal"}
@@ -125,18 +128,24 @@ def irreps() -> dict[str, Any]:
 @pytest.fixture
 def screen() -> dict[str, Any]:
     """A formula and a point group that read as something else, and a file that failed."""
-    columns = [
-        "id", "formula", "space_group", "point_group", "centrosymmetric", "chiral", "polar", "piezoelectric",
-        "pyroelectric", "second_harmonic", "optical_activity", "count_piezoelectric_strain",
-        "count_permittivity", "count_elastic_stiffness", "status", "error_code", "error_message",
-    ]  # fmt: skip
-    good = ["a|b", "NaN", "P-1", "-1", True, *[False] * 6, 0, 6, 21, "ok", None, None]
-    bad = ["x_%.cif", *[None] * 13, "error", "unreadable", "line one\nline two"]
+    columns = columns_for()
+    good = {"id": "a|b", "formula": "NaN", "space_group": "P-1", "point_group": "-1", "centrosymmetric": True}
+    good |= dict.fromkeys((column.name for column in columns if column.type == "bool"), False) | good
+    good |= {"count_piezoelectric_strain": 0, "count_permittivity": 6, "count_elastic_stiffness": 21}
+    bad = {
+        "id": "x_%.cif",
+        "status": "error",
+        "error_code": "unreadable",
+        "error_message": "line one\nline two",
+    }
+    blank = dict.fromkeys(column.name for column in columns)
     return {
         "schema": "sitesym.screen/1",
-        "folder": "samples",
+        "inputs": ["samples"],
         "tolerance_angstrom": 0.01,
-        "columns": columns,
-        "rows": [dict(zip(columns, row, strict=True)) for row in (good, bad)],
+        "finder": "spglib",
+        "ladder": False,
+        "columns": [asdict(column) for column in columns],
+        "rows": [blank | good | {"status": "ok"}, blank | bad],
         "versions": VERSIONS,
     }

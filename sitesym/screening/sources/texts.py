@@ -1,4 +1,4 @@
-"""Texts a store can hold, streams that may be compressed, and the errors of entries."""
+"""Streams that may be compressed, and the errors of entries."""
 
 from __future__ import annotations
 
@@ -10,6 +10,7 @@ from pathlib import Path
 from typing import IO, Final
 
 from sitesym.errors import FileTooLargeError, ReadingError
+from sitesym.screening.work import storable as storable
 
 #: Limit of one entry that is held in memory: a member of an archive, a line, a frame (bytes).
 LARGEST_ENTRY_BYTES: Final = 50_000_000
@@ -18,15 +19,6 @@ LARGEST_ENTRY_BYTES: Final = 50_000_000
 STREAM_ERRORS: Final = (OSError, EOFError, zlib.error, lzma.LZMAError)
 
 COMPRESSIONS: Final = (".gz", ".xz")
-
-
-def storable(text: str) -> str:
-    r"""The text with what UTF-8 cannot hold (undecodable bytes of a file name) written as escapes.
-
-    >>> storable("a\udcff.cif")
-    'a\\udcff.cif'
-    """
-    return text.encode("utf-8", errors="backslashreplace").decode("utf-8")
 
 
 def open_bytes(path: str | os.PathLike[str]) -> IO[bytes] | gzip.GzipFile:

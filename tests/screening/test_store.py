@@ -1,0 +1,198 @@
+"""The store: rows written once, replaced when something changed, kept when the disk is full."""
+
+from __future__ import annotations
+
+import sqlite3
+from collections.abc import Iterator
+from pathlib import Path
+
+import pytest
+
+from sitesym.errors import StoreError
+from sitesym.screening import Row, Settings, Store, WorkItem, columns_for
+from sitesym.screening.failures import blank_row
+from sitesym.screening.schema import APPLICATION_ID, VERSION
+from sitesym.screening.work import content_hash
+
+SETTINGS = Settings(ladder=False)
+
+
+@pytest.fixture
+def path(tmp_path: Path) -> Path:
+    """Where a store is to be."""
+    return tmp_path / "rows.sitesym"
+
+
+def item(name: str, text: str = "content") -> WorkItem:
+    """A unit of work with a text."""
+    return WorkItem.of_text("lines", name, name, text, "vasp")
+
+
+def row(unit: WorkItem, **values: str | int | float | bool) -> Row:
+    """A row of the unit."""
+    return blank_row(unit, "", SETTINGS) | {"status": "ok"} | values
+
+
+def put(store: Store, unit: WorkItem, *rows: Row) -> None:
+    """Write rows of a unit, permanently."""
+    store.put(unit, content_hash(unit), rows or (row(unit),))
+    store.commit()
+
+
+def stored(path: Path) -> list[Row]:
+    """All rows of the store at a path."""
+    with Store.reading(path) as store:
+        return list(store.rows())
+
+
+def test_values_come_back_with_their_types(path: Path) -> None:
+    unit = item("line 1")
+    written = row(unit, point_group="-1", formula="NaN", polar=False, atoms=3, seconds=0.5, space_group="222")
+    with Store.writing(path, SETTINGS) as store:
+        put(store, unit, written)
+    assert stored(path) == [written]
+    assert {type(stored(path)[0][name]) for name in ("point_group", "space_group")} == {str}
+
+
+def test_rows_are_ordered_by_number_whatever_the_order_of_writing(path: Path) -> None:
+    with Store.writing(path, SETTINGS) as store:
+        for number in (10, 2, 1, 11):
+            put(store, item(f"line {number}"))
+    assert [found["id"] for found in stored(path)] == ["line 1", "line 2", "line 10", "line 11"]
+
+
+def test_a_unit_written_again_replaces_all_its_rows(path: Path) -> None:
+    unit = item("line 1")
+    with Store.writing(path, SETTINGS) as store:
+        put(store, unit, *(row(unit, atoms=number) for number in range(3)))
+        put(store, unit, row(unit, atoms=9))
+    assert [found["atoms"] for found in stored(path)] == [9]
+
+
+def test_the_store_holds_a_unit_until_content_settings_or_name_change(path: Path) -> None:
+    with Store.writing(path, SETTINGS) as store:
+        put(store, item("line 1"))
+        assert store.holds(item("line 1"))
+        assert not store.holds(item("line 1", "other content"))
+        assert not store.holds(item("line 2"))
+    with Store.writing(path, Settings(ladder=False, tolerance_angstrom=0.1)) as store:
+        assert not store.holds(item("line 1"))
+    with Store.writing(path, SETTINGS) as store:
+        assert store.holds(item("line 1"))
+
+
+def test_a_file_that_changes_is_not_held(path: Path, tmp_path: Path) -> None:
+    file = tmp_path / "a.vasp"
+    file.write_text("one")
+    with Store.writing(path, SETTINGS) as store:
+        put(store, WorkItem.of_path(file, "a"))
+        assert store.holds(WorkItem.of_path(file, "a"))
+        file.write_text("two")
+        assert not store.holds(WorkItem.of_path(file, "a"))
+        file.unlink()
+        put(store, WorkItem.of_path(file, "a"))
+        assert store.holds(WorkItem.of_path(file, "a"))
+        file.mkdir()
+        assert not store.holds(WorkItem.of_path(file, "a"))
+
+
+def test_what_ended_its_process_is_tried_again_on_request(path: Path) -> None:
+    unit = item("line 1")
+    with Store.writing(path, SETTINGS) as store:
+        put(store, unit, row(unit, status="timed-out"))
+        assert store.holds(unit)
+        assert not store.holds(unit, retry=True)
+
+
+def test_other_properties_add_columns_and_leave_rows_alone(path: Path) -> None:
+    with Store.writing(path, SETTINGS) as store:
+        put(store, item("line 1"), row(item("line 1"), count_permittivity=6))
+    other = Settings(properties=("seebeck",))
+    with Store.writing(path, other) as store:
+        unit = item("line 2")
+        put(store, unit, blank_row(unit, "", other) | {"status": "ok", "count_seebeck": 9})
+    first, second = stored(path)
+    assert (first["count_permittivity"], first["count_seebeck"]) == (6, None)
+    assert (second["count_permittivity"], second["count_seebeck"]) == (None, 9)
+    with Store.reading(path) as store:
+        assert store.columns == columns_for((*SETTINGS.properties, "seebeck"))
+        assert [found["properties"] for found in store.settings_documents()] == [
+            list(SETTINGS.properties),
+            ["seebeck"],
+        ]
+
+
+def test_hostile_text_is_kept_as_text(path: Path) -> None:
+    names = ["'; drop table items; --", "<script>", "=cmd", 'a"b', "line\nbreak", "nul\0", "\udcff"]
+    with Store.writing(path, SETTINGS) as store:
+        for name in names:
+            put(store, item(name))
+            assert store.holds(item(name))
+    assert {found["id"] for found in stored(path)} == {*names[:-1], "\\udcff"}
+
+
+def test_two_runs_exclude_each_other_and_a_reader_does_not(path: Path) -> None:
+    with Store.writing(path, SETTINGS) as store:
+        put(store, item("line 1"))
+        with pytest.raises(StoreError, match=r"another run is writing to the store\n.*process \d+ on "):
+            Store.writing(path, SETTINGS)
+        assert len(stored(path)) == 1
+    Store.writing(path, SETTINGS).close()
+    assert not path.with_name(path.name + ".lock").exists()
+
+
+def test_a_full_disk_keeps_what_was_done(path: Path) -> None:
+    """SQLite reports a database at its largest size as it reports a full disk."""
+    done = 0
+    with pytest.raises(StoreError, match="database or disk is full"), Store.writing(path, SETTINGS) as store:
+        store.connection.execute("PRAGMA max_page_count = 40")
+        for number in range(10_000):
+            unit = item(f"line {number}")
+            put(store, unit, row(unit, remarks="x" * 300))
+            done += 1
+    assert done > 100
+    assert [found["id"] for found in stored(path)] == [f"line {number}" for number in range(done)]
+    with Store.writing(path, SETTINGS) as store:
+        assert store.holds(item("line 0"))
+
+
+def test_a_store_that_cannot_be_written_is_an_error(path: Path) -> None:
+    with Store.writing(path, SETTINGS) as store:
+        store.connection.execute("PRAGMA query_only = 1")
+        with pytest.raises(StoreError, match="readonly"):
+            put(store, item("line 1"))
+    with pytest.raises(StoreError, match="no-such-folder"):
+        Store.writing(path.parent / "no-such-folder" / "store", SETTINGS)
+    with pytest.raises(StoreError):
+        Store.reading(path.parent / "nothing-here")
+
+
+@pytest.fixture
+def foreign(tmp_path: Path) -> Iterator[sqlite3.Connection]:
+    """A database of something else at other.db."""
+    connection = sqlite3.connect(tmp_path / "other.db")
+    connection.execute("CREATE TABLE systems (id INTEGER)")
+    connection.commit()
+    yield connection
+    connection.close()
+
+
+def test_a_database_of_something_else_is_left_alone(foreign: sqlite3.Connection, tmp_path: Path) -> None:
+    before = (tmp_path / "other.db").read_bytes()
+    with pytest.raises(StoreError, match="database of something else"):
+        Store.writing(tmp_path / "other.db", SETTINGS)
+    assert (tmp_path / "other.db").read_bytes() == before
+    (tmp_path / "text.db").write_text("not a database at all, but long enough to be looked at" * 30)
+    with pytest.raises(StoreError, match="not a database"):
+        Store.writing(tmp_path / "text.db", SETTINGS)
+
+
+def test_a_store_of_a_later_version_is_refused(path: Path) -> None:
+    Store.writing(path, SETTINGS).close()
+    connection = sqlite3.connect(path)
+    assert connection.execute("PRAGMA application_id").fetchone() == (APPLICATION_ID,)
+    connection.execute(f"PRAGMA user_version = {VERSION + 1}")
+    connection.close()
+    for opened in (Store.reading, lambda name: Store.writing(name, SETTINGS)):
+        with pytest.raises(StoreError, match="later version"):
+            opened(path)
