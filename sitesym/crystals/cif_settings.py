@@ -119,10 +119,15 @@ def settings_of_name(name: str) -> tuple[Setting, ...]:
 
 @lru_cache(maxsize=230)
 def settings_of_number(number: str) -> tuple[Setting, ...]:
-    """All settings of a space group. Raises SpaceGroupStatementError for a number outside 1 to 230."""
+    """The settings of a space group in spglib's database, which leaves out odd ones such as F 1.
+
+    Raises SpaceGroupStatementError for a number outside 1 to 230.
+    """
     import gemmi
 
-    groups = [group for group in gemmi.spacegroup_table() if str(group.number) == number]
+    usual = {hall for _, hall in full_symbols()}
+    table = (group for group in gemmi.spacegroup_table() if group.hall in usual)
+    groups = [group for group in table if str(group.number) == number]
     if not groups:
         raise SpaceGroupStatementError(
             "no space group has this number", number, "numbers are 1 to 230", REMEDY
