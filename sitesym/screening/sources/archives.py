@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import re
 import stat
+import struct
 import tarfile
 import zipfile
 from collections.abc import Callable, Iterator
@@ -27,9 +28,11 @@ TAR_NAMES: Final = (".tar", ".tar.gz", ".tgz", ".tar.bz2", ".tar.xz")
 ZIP_NAMES: Final = (".zip",)
 
 _ABSOLUTE = re.compile(r"[\\/]|[A-Za-z]:")
-_ARCHIVE_ERRORS = (*STREAM_ERRORS, tarfile.TarError, zipfile.BadZipFile)
-# An encrypted member is a RuntimeError, an unknown compression a NotImplementedError (which is one too).
-_MEMBER_ERRORS = (*_ARCHIVE_ERRORS, RuntimeError)
+# The libraries let whatever damaged bytes provoke escape. An encrypted member is a RuntimeError, an unknown
+# compression a NotImplementedError (which is one too).
+_ARCHIVE_ERRORS: Final = (
+    *STREAM_ERRORS, tarfile.TarError, zipfile.BadZipFile, struct.error, RuntimeError, ValueError, LookupError,
+)  # fmt: skip
 
 
 def archive_items(path: str) -> Iterator[WorkItem]:
@@ -117,7 +120,7 @@ def _content(opener: Callable[[], IO[bytes] | None], size: int, source: str) -> 
             raise ReadingError("the member is no file", source, "a regular file", "leave it out")
         with stream:
             content = stream.read(LARGEST_ENTRY_BYTES + 1)
-    except _MEMBER_ERRORS as error:
+    except _ARCHIVE_ERRORS as error:
         raise broken_stream(source, error) from error
     if len(content) > LARGEST_ENTRY_BYTES:
         raise too_large_entry("the member", len(content), source)

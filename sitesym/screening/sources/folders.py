@@ -9,7 +9,7 @@ import os
 from collections.abc import Iterator
 from fnmatch import fnmatchcase
 from pathlib import PurePath
-from typing import Literal
+from typing import Final, Literal
 
 from sitesym.crystals.reading import named_format
 from sitesym.errors import ReadingError, UsageError
@@ -17,7 +17,10 @@ from sitesym.screening.sources.files import file_items
 from sitesym.screening.sources.texts import broken_stream, storable
 from sitesym.screening.work import WorkItem
 
-_MAGIC = frozenset("*?[")
+#: Folders inside each other that are walked; deeper ones are an error, and not the end of the run.
+DEEPEST: Final = 200
+
+_MAGIC: Final = frozenset("*?[")
 
 
 def folder_items(folder: str | os.PathLike[str]) -> Iterator[WorkItem]:
@@ -54,6 +57,8 @@ def has_magic(text: str) -> bool:
 
 def _below(folder: str, prefix: str) -> Iterator[WorkItem]:
     try:
+        if prefix.count("/") > DEEPEST:
+            raise OSError(f"more than {DEEPEST} folders inside each other")
         entries = _visible(folder)
     except OSError as error:
         identity = storable(prefix.rstrip("/") or folder)
@@ -84,9 +89,17 @@ def _visible(folder: str) -> list[tuple[str, bool]]:
                 continue
             if entry.is_dir(follow_symlinks=False):
                 found.append((entry.name, True))
-            elif named_format(entry.name) and not entry.is_dir():
+            elif named_format(entry.name) and not _leads_to_folder(entry):
                 found.append((entry.name, False))
     return sorted(found, key=lambda pair: pair[0] + "/" if pair[1] else pair[0])
+
+
+def _leads_to_folder(link: os.DirEntry[str]) -> bool:
+    """False also for a link that leads to itself."""
+    try:
+        return link.is_dir()
+    except OSError:
+        return False
 
 
 def _matches(base: str, parts: tuple[str, ...]) -> Iterator[str]:

@@ -50,6 +50,19 @@ def test_a_dangling_link_is_a_unit_and_a_linked_folder_is_not_followed(tmp_path:
     assert ids(tmp_path) == ["gone.cif"]
 
 
+def test_a_link_to_itself_costs_one_row(tmp_path: Path) -> None:
+    (tmp_path / "self.cif").symlink_to(tmp_path / "self.cif")
+    make(tmp_path, "z.cif")
+    assert ids(tmp_path) == ["self.cif", "z.cif"]
+
+
+def test_folders_nested_without_end_are_an_error_and_the_walk_goes_on(tmp_path: Path) -> None:
+    make(tmp_path, "a/" * 250 + "x.cif", "b/" * 150 + "y.cif")
+    deep, good = folder_items(tmp_path)
+    assert "more than 200" in str(deep.error)
+    assert good.identity.endswith("/y.cif")
+
+
 def test_a_folder_that_cannot_be_opened_is_a_row_and_the_walk_goes_on(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
