@@ -20,7 +20,15 @@ if TYPE_CHECKING:
     import gemmi
 
 _COORDINATES: Final = ("fract_x", "fract_y", "fract_z")
-_OPTIONAL: Final = ("label", "type_symbol", "occupancy", "calc_flag")
+_OPTIONAL: Final = (
+    "label",
+    "type_symbol",
+    "occupancy",
+    "calc_flag",
+    "attached_hydrogens",
+    "site_symmetry_multiplicity",
+    "symmetry_multiplicity",
+)
 # As type symbols and labels (Va1) for an empty place; VA1 may be a vanadium.
 _VACANCIES: Final = ("Va", "Vac", "vac", "VAC")
 _CHARGE: Final = re.compile(r"(?:(\d*)([+-])|([+-])(\d+))$")
@@ -39,13 +47,15 @@ def listed_sites(block: gemmi.cif.Block, remarks: list[str]) -> list[ListedSite]
     """
     coordinates, others = columns(block, "_atom_site", _COORDINATES, _OPTIONAL)
     count = len(coordinates[0]) if coordinates else 0
-    labels, types, occupancies, flags = (_texts(others.get(item), count) for item in _OPTIONAL)
+    texts = {item: _texts(others.get(item), count) for item in _OPTIONAL}
+    labels = texts["label"]
     oxidation = _oxidation_numbers(block)
     moments = listed_moments(block)
     seen: Counter[str] = Counter()
     sites = []
-    for row, (label, kind, occupancy, flag) in enumerate(zip(labels, types, occupancies, flags, strict=True)):
-        if flag.lower() == "dum":
+    for row, label in enumerate(labels):
+        kind = texts["type_symbol"][row]
+        if texts["calc_flag"][row].lower() == "dum":
             remarks.append(f"site {label} is a dummy and holds no atom")
             continue
         symbol = element(kind or label)
@@ -56,8 +66,14 @@ def listed_sites(block: gemmi.cif.Block, remarks: list[str]) -> list[ListedSite]
         position = _position([column[row] for column in coordinates], name)
         charge = oxidation.get(kind) or _charge(kind)
         marks = {"isotope": symbol if symbol in ISOTOPES else "", "oxidation": charge}
-        contents = ((ISOTOPES.get(symbol, symbol), _occupancy(occupancy, name)),)
-        sites.append(ListedSite(name, position, contents, marks, moments.get(label)))
+        contents = ((ISOTOPES.get(symbol, symbol), _occupancy(texts["occupancy"][row], name)),)
+        places = texts["site_symmetry_multiplicity"][row] or texts["symmetry_multiplicity"][row]
+        stated = int(places) if places.isdecimal() else None
+        sites.append(ListedSite(name, position, contents, marks, moments.get(label), stated))
+        if texts["attached_hydrogens"][row].strip("0"):
+            remarks.append(
+                f"hydrogen atoms attached to {name} have no positions and are not in the structure"
+            )
     if not sites:
         raise EmptyStructureError(
             "the structure has no atoms",

@@ -33,13 +33,14 @@ _ROUNDING = 1e-12
 @dataclass(frozen=True, eq=False)
 class ListedSite:
     """A line of the asymmetric unit: label, fractional position (3,), elements with occupancies, marks by
-    name, moment (3,) along the cell edges."""
+    name, moment (3,) along the cell edges, and how many places of the cell the file says it has."""
 
     label: str
     position_frac: FloatArray
     occupancies: tuple[tuple[str, float], ...]
     marks: Mapping[str, str] = field(default_factory=dict)
     moment: FloatArray | None = None
+    stated_places: int | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -64,6 +65,11 @@ def expand(sites: Sequence[ListedSite], operations: StatedOperations, lattice: F
     remarks = _moves(sites, positions - listed, lattice)
     images, chosen = _orbits(sites, positions, fixing, operations)
     counts = [len(orbit) for orbit in images]
+    remarks.extend(
+        f"site {site.label} has {count} places in the cell, the file states {site.stated_places}"
+        for site, count in zip(sites, counts, strict=True)
+        if site.stated_places not in (None, count)
+    )
     everything = np.vstack(images)
     group_of = _meeting_sites(everything, np.repeat(np.arange(len(sites)), counts), lattice, len(sites))
     members: dict[int, list[int]] = {}
@@ -107,11 +113,16 @@ def _onto_special_positions(
 
 
 def _moves(sites: Sequence[ListedSite], moves: FloatArray, lattice: FloatArray) -> list[str]:
+    """A remark for each site that was moved; a partly filled one may have been meant as it was."""
     lengths = np.linalg.norm(moves @ lattice, axis=1)
-    return [
-        f"site {sites[number].label} moved by {lengths[number]:.4f} angstrom onto its special position"
-        for number in np.flatnonzero(lengths > _REPORTED_MOVE_ANGSTROM).tolist()
-    ]
+    remarks = []
+    for number in np.flatnonzero(lengths > _REPORTED_MOVE_ANGSTROM).tolist():
+        site, length = sites[number], lengths[number]
+        remark = f"site {site.label} moved by {length:.4f} angstrom onto its special position"
+        filled = sum(occupancy for _, occupancy in site.occupancies)
+        kept = f"; its occupancy {filled:g} is taken for that of the special position"
+        remarks.append(remark + (kept if filled < 1.0 else ""))
+    return remarks
 
 
 def _orbits(

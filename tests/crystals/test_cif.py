@@ -251,3 +251,37 @@ def test_images_near_each_other_without_a_common_special_position_are_refused(re
     lines = "loop_\n_symmetry_equiv_pos_as_xyz\nx,y,z\nx,y,z+1/2"
     with pytest.raises(ReadingError):
         read(CELL.format(4, 4, 0.18, 90, 90, 90), lines, COLUMNS, "Po1 0 0 0")
+
+
+def test_a_partly_filled_site_that_is_moved_says_what_its_occupancy_means(read):
+    site = "0.5 Zn1 0.333 0.667 0"
+    crystal = read(HEXAGONAL, name("P 63 m c"), OCCUPIED, site, "1 O1 0.333333 0.666667 0.382")
+    assert crystal.remarks[0].endswith("; its occupancy 0.5 is taken for that of the special position")
+    assert str(crystal.species[0]) == "Zn0.5"
+
+
+@pytest.mark.parametrize("tag", ["_atom_site_symmetry_multiplicity", "_atom_site_site_symmetry_multiplicity"])
+def test_stated_multiplicities_are_compared_with_the_places_found(read, tag):
+    table = COLUMNS.replace("loop_\n", f"loop_\n{tag}\n")
+    assert read(CUBIC, name("F d -3 m:1"), table, "8 C1 0 0 0").remarks == ()
+    crystal = read(CUBIC, name("F d -3 m:1"), table, "16 C1 0 0 0")
+    assert crystal.remarks == ("site C1 has 8 places in the cell, the file states 16",)
+
+
+def test_dummies_and_attached_hydrogen_atoms_are_named(read):
+    table = COLUMNS.replace("loop_\n", "loop_\n_atom_site_calc_flag\n_atom_site_attached_hydrogens\n")
+    crystal = read(
+        CUBIC, name("P 1"), table, "d 2 O1 0 0 0", "dum 0 X1 .5 .5 .5", "d ? Na1 .5 .5 0", "d 0 K1 0 .5 .5"
+    )
+    assert len(crystal) == 3
+    assert crystal.remarks == (
+        "hydrogen atoms attached to O1 have no positions and are not in the structure",
+        "site X1 is a dummy and holds no atom",
+    )
+
+
+def test_three_rounded_sites_of_a_large_group_meet_on_their_special_positions(read):
+    # (0.333, 0.667, z) and (0.667, 0.333, z) are one orbit of P 63/m m c: listed twice, they overlap
+    with pytest.raises(ReadingError) as caught:
+        read(HEXAGONAL, name("P 63/m m c"), COLUMNS, "Zn1 0.333 0.667 0.25", "Zn2 0.667 0.333 0.75")
+    assert caught.value.code == "overlap"
