@@ -1,12 +1,12 @@
 """Contracted arrays as vectors in an orthonormal metric, and how rotations act on them.
 
 An entry M of a contracted array stands for tensor components T = M / factor that occur 2^s times, s being
-its number of shear pairs. Its coordinate is sqrt(2^s) M / factor (Kelvin's weights), so that the length of the
-coordinate vector is the length of the full tensor and rotations are orthogonal matrices. Both members of a
-pair that index symmetry makes equal keep their own coordinate: c12 and c21 of measured data may differ.
+its number of shear pairs. Its coordinate is sqrt(2^s) M / factor (Kelvin's weights), so that the length of
+the coordinate vector is the length of the full tensor and rotations are orthogonal matrices. Both members of
+a pair that index symmetry makes equal keep their own coordinate: c12 and c21 of measured data may differ.
 
-Source: W. Thomson (Lord Kelvin), Phil. Trans. R. Soc. 146 (1856) 481; M. M. Mehrabadi, S. C. Cowin, Q. J. Mech.
-Appl. Math. 43 (1990) 15.
+Source: W. Thomson (Lord Kelvin), Phil. Trans. R. Soc. 146 (1856) 481; M. M. Mehrabadi, S. C. Cowin, Q. J.
+Mech. Appl. Math. 43 (1990) 15.
 """
 
 from __future__ import annotations
@@ -63,7 +63,8 @@ class ArraySpace:
     def shears(self) -> IntArray:
         """For every entry and contracted axis, 1 where the index is 4 to 6 of a pair, shape (n, axes)."""
         rows = np.array(self.entries).reshape(self.size, len(self.blocks))
-        return ((rows > 2) & (np.array(self.blocks) == 6)).astype(np.int64)
+        shears: IntArray = ((rows > 2) & (np.array(self.blocks) == 6)).astype(np.int64)
+        return shears
 
     @cached_property
     def factors(self) -> FloatArray:
@@ -92,8 +93,8 @@ class ArraySpace:
     def index_basis(self) -> FloatArray:
         """Orthonormal rows spanning the arrays that obey index symmetry, shape (N, n)."""
         basis = TensorSpace.of(self.kind).basis
-        written: FloatArray = basis.reshape(len(basis), -1)[:, self.full_places] * (self.weights * self.factors)
-        return frozen(written)
+        written = basis.reshape(len(basis), -1)[:, self.full_places]
+        return frozen(written * (self.weights * self.factors))
 
     def coordinates(self, array: FloatArray) -> FloatArray:
         """Coordinates (n,) of a contracted array."""
@@ -107,6 +108,8 @@ class ArraySpace:
     def rotated(self, rotations: FloatArray, coordinates: FloatArray) -> FloatArray:
         """Coordinates (n, m) after each of the proper rotations (r, 3, 3), shape (r, n, m)."""
         m = coordinates.shape[1]
+        if m == 0:
+            return np.zeros((len(rotations), self.size, 0))
         if not m:
             return np.zeros((len(rotations), self.size, 0))
         by_length = {3: rotations, 6: pair_rotations(rotations)}
@@ -141,7 +144,8 @@ def array_space(kind: TensorKind) -> ArraySpace:
 
 def pair_rotations(rotations: FloatArray) -> FloatArray:
     """What rotations (r, 3, 3) do to a symmetric pair of indices in Kelvin's weights, shape (r, 6, 6)."""
-    return _pairs(rotations, rotations) * (_PAIR_WEIGHTS[:, None] * _PAIR_WEIGHTS)
+    weighted: FloatArray = _pairs(rotations, rotations) * (_PAIR_WEIGHTS[:, None] * _PAIR_WEIGHTS)
+    return weighted
 
 
 def _pair_generator(matrix: FloatArray) -> FloatArray:

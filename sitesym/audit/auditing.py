@@ -54,9 +54,7 @@ def audit(
     return _detailed(field, index, settle(field, explain))
 
 
-def _without_search(
-    spaces: Subspaces, stated: Variant, level: Noise, index: IndexFinding
-) -> Finding | None:
+def _without_search(spaces: Subspaces, stated: Variant, level: Noise, index: IndexFinding) -> Finding | None:
     """Verdicts that need no residual: nothing is forbidden, or nothing was measured."""
     if not index.holds and not spaces.constraints:
         return Finding("violates", "index-symmetry")

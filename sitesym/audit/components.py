@@ -61,7 +61,9 @@ def relations_in(spaces: Subspaces, to_group_axes: FloatArray) -> Relations:
     """
     space = spaces.space
     form = space.rotated(to_group_axes.T[None], spaces.allowed.T)[0]
-    preference = [space.names.index(contraction(space.kind).keys[k]) for k in contraction(space.kind).preference]
+    preference = [
+        space.names.index(contraction(space.kind).keys[k]) for k in contraction(space.kind).preference
+    ]
     chosen: list[int] = []
     free = np.eye(spaces.independent)
     for place in preference:

@@ -108,10 +108,13 @@ def _turned_units(kind: TensorKind, group: PointGroup, turn: FloatArray) -> Floa
 
 @lru_cache(maxsize=512)
 def _unit_tensors(kind: TensorKind, group: PointGroup) -> tuple[FloatArray, FloatArray]:
-    """Tensors with one independent component equal to one, as columns (n, k), and what reads them off (k, n)."""
+    """Tensors with one independent component equal to one, as columns (n, k); what reads them off (k, n)."""
     form = allowed_form(kind, group)
     space = array_space(kind)
     units = np.array(
-        [space.coordinates(form.matrix({n: float(n == name) for n in form.independent})) for name in form.independent]
+        [
+            space.coordinates(form.matrix({n: float(n == name) for n in form.independent}))
+            for name in form.independent
+        ]
     ).T
     return frozen(units), frozen(np.linalg.pinv(units))

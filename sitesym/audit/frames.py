@@ -126,7 +126,8 @@ class NamedTurn:
 def tried_turns() -> tuple[NamedTurn, ...]:
     """No turn, the 23 others of the cube, turns by 30 and 60 degrees about x, y, z, by 45 degrees about z.
 
-    They contain the permutations of axes, unique axis a, b or c, obverse against reverse (180 degrees about z).
+    They contain the permutations of axes, unique axis a, b or c, obverse against reverse (180 degrees about
+    z).
     """
     cube = sorted(PointGroup.from_symbol("432").rotations_cart, key=lambda m: -float(np.trace(m)))
     finer = [_about(axis, angle) for axis in (2, 1, 0) for angle in range(30, 360, 30) if angle % 90]

@@ -25,8 +25,8 @@ def check_index_symmetry(
     """Entries that index symmetry makes equal or opposite, compared in the array as given.
 
     Two entries may differ by four standard uncertainties of their difference and one unit of their last
-    digit. Where no uncertainty is stated, ``noise`` times the length of the tensor is taken to be spread evenly
-    over its entries.
+    digit. Where no uncertainty is stated, ``noise`` times the length of the tensor is taken to be spread
+    evenly over its entries.
     """
     values, component, sign, factors, names = _comparable(measurement, layout, order)
     tensor = values / factors

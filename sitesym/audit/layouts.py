@@ -15,7 +15,6 @@ from sitesym.audit.arrayspace import ArraySpace, array_space
 from sitesym.audit.measurement import Layout
 from sitesym.audit.orders import SHEAR_ORDERS, STANDARD_ORDER, Order
 from sitesym.tensors import TensorKind, contraction
-from sitesym.tensors.indexsymmetry import VOIGT_PAIRS
 
 
 def contracted(kind: TensorKind, values: FloatArray, layout: Layout, order: Order) -> FloatArray:
@@ -68,7 +67,8 @@ def contracted_of_full(kind: TensorKind) -> IntArray:
     """Flat place in the contracted array of every component of the full tensor, shape (3**rank,)."""
     notation = contraction(kind)
     rows = np.array([notation.contracted(full) for full in np.ndindex(*(3,) * kind.rank)])
-    return np.ravel_multi_index(rows.T, notation.shape)
+    places: IntArray = np.ravel_multi_index(tuple(rows.T), notation.shape)
+    return places
 
 
 def _contracted_full(space: ArraySpace, values: FloatArray) -> FloatArray:
@@ -92,9 +92,3 @@ def _trailing(space: ArraySpace) -> list[int]:
 def full_names(kind: TensorKind) -> tuple[str, ...]:
     """Names of the components of the full tensor, in C order."""
     return tuple("".join(str(i + 1) for i in full) for full in np.ndindex(*(3,) * kind.rank))
-
-
-def pair_digits(index: int) -> str:
-    """The two digits of a contracted index from 0: 3 is 23."""
-    first, second = VOIGT_PAIRS[index]
-    return f"{first + 1}{second + 1}"

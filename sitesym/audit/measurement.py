@@ -12,10 +12,10 @@ from sitesym.audit.orders import STANDARD_ORDER, Order
 from sitesym.errors import TensorInputError
 from sitesym.tensors import TensorKind, contraction
 
-#: ``matrix``: contracted array, shape ``contraction(kind).shape``. ``full``: every index 1 to 3. ``transposed``:
-#: contracted with the two indices exchanged (6x3 for 3x6). ``by-columns``: the numbers of the matrix written
-#: column after column into the rows of an array of the same shape. ``full-last-first``: full, with the last
-#: index (or pair of indices) of the kind standing first.
+#: ``matrix``: contracted array, shape ``contraction(kind).shape``. ``full``: every index 1 to 3.
+#: ``transposed``: contracted with the two indices exchanged (6x3 for 3x6). ``by-columns``: the numbers of the
+#: matrix written column after column into the rows of an array of the same shape. ``full-last-first``: full,
+#: with the last index (or pair of indices) of the kind standing first.
 Layout: TypeAlias = Literal["matrix", "full", "transposed", "by-columns", "full-last-first"]
 
 #: A name of axes of the crystal, ``unknown``, or the axes as rows in the file's axes, shape (3, 3).

@@ -49,7 +49,9 @@ def _otherwise(finding: Finding, index: IndexFinding) -> tuple[str, str]:
 
 
 def _violates(finding: Finding, index: IndexFinding) -> tuple[str, str]:
-    stated = f"fails as stated ({_residual(finding.stated)})" if finding.stated else "fails in every reading tried"
+    stated = (
+        f"fails as stated ({_residual(finding.stated)})" if finding.stated else "fails in every reading tried"
+    )
     match finding.cause:
         case "slip" if finding.best is not None and finding.best.slip is not None:
             return f"{stated}; {slip_words(finding.best.slip)}", (
@@ -58,8 +60,13 @@ def _violates(finding: Finding, index: IndexFinding) -> tuple[str, str]:
         case "crystal" if finding.crystal is not None:
             other = finding.crystal
             return (
-                f"{stated}; the data look {other.system} ({other.symbol} in axes {other.axes})",
+                f"{stated}; the data look {other.system} ({other.symbol}, axes {other.axes})",
                 "check that structure and tensor belong to one phase (poling, strain, another structure)",
+            )
+        case "crystal":
+            return (
+                f"must vanish altogether in this class, and does not ({_residual(finding.stated)})",
+                "look for another structure; numbers that are noise need an uncertainty to be told as such",
             )
         case "index-symmetry":
             pairs = ", ".join(f"{p.first} and {p.second}" for p in index.broken[:3])
@@ -69,7 +76,10 @@ def _violates(finding: Finding, index: IndexFinding) -> tuple[str, str]:
             f"{stated}; a reading that fits exists, but chance would find one as good",
             "the rivals are listed; state axes and order from the source before relying on any of them",
         )
-    return f"{stated}; no reading, slip or other class explains it", "check the data and the structure at the source"
+    return (
+        f"{stated}; no reading, slip or other class explains it",
+        "check the data and the structure at the source",
+    )
 
 
 def _cannot_tell(finding: Finding, index: IndexFinding) -> tuple[str, str]:

@@ -98,7 +98,7 @@ def turns_of_normaliser(group: PointGroup) -> tuple[FloatArray, ...]:
 
 @lru_cache(maxsize=512)
 def equivalent_rotations(group: PointGroup) -> FloatArray:
-    """All products of a turn of `turns_of_normaliser` (or none) and a proper part of an element, (m, 3, 3)."""
+    """Products of a turn of `turns_of_normaliser` (or none) and a proper part of an element, (m, 3, 3)."""
     proper = group.rotations_cart * group.determinants[:, None, None]
     turns = np.array([np.eye(3), *turns_of_normaliser(group)])
     return frozen((turns[:, None] @ proper[None]).reshape(-1, 3, 3))

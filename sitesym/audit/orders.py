@@ -35,7 +35,7 @@ def read_order(text: str) -> Order:
         raise TensorInputError(
             "the order of the contracted index is not understood",
             value=repr(text),
-            rule="each of the pairs 11 22 33 23 13 12 (or xx yy zz yz xz xy) once, in the order of the columns",
+            rule="each of the pairs 11 22 33 23 13 12 (or xx yy zz yz xz xy) once, as the columns stand",
             next_step="correct it, or leave it out: it then counts as unknown",
         )
     return pairs

@@ -45,9 +45,19 @@ def tensor_symmetry(spaces: Subspaces, moved: FloatArray, tolerance: float) -> T
         description.symbol,
         description.system,
         description.names,
-        _described(_larger(expected)).symbol,
+        expected_symbol(kind, group),
         _relation(own, expected),
     )
+
+
+def expected_symbol(kind: TensorKind, group: PointGroup) -> str:
+    """Symbol of the group that a tensor of this kind is expected to show in a class."""
+    return _described(_larger(_expected(kind, group))).symbol
+
+
+def expected_order(kind: TensorKind, group: PointGroup) -> int:
+    """Order of that group."""
+    return len(_larger(_expected(kind, group)).elements)
 
 
 def kept_operations(kind: TensorKind, moved: FloatArray, tolerance: float) -> Kept:
@@ -76,9 +86,7 @@ def _images(kind: TensorKind, symbol: str, moved: FloatArray) -> FloatArray:
     return images
 
 
-def _largest_group(
-    symbol: str, images: FloatArray, moved: FloatArray, tolerance: float
-) -> frozenset[int]:
+def _largest_group(symbol: str, images: FloatArray, moved: FloatArray, tolerance: float) -> frozenset[int]:
     """Operations added in order of what they change, while the mean over the group stays within tolerance."""
     group = standard_groups()[symbol]
     changes = np.linalg.norm(images - moved, axis=1)

@@ -37,7 +37,7 @@ class Residual:
 
 @dataclass(frozen=True)
 class EntryPair:
-    """Two entries that index symmetry makes equal (or opposite): names, values, tolerance of the difference."""
+    """Two entries that index symmetry makes equal or opposite; ``tolerance`` of their difference."""
 
     first: str
     second: str
@@ -50,9 +50,9 @@ class EntryPair:
 class IndexFinding:
     """Index symmetry of the array as given: C_IJ against C_JI, eps_ij against eps_ji.
 
-    ``applies``: whether the layout leaves anything to compare. ``largest``: largest difference of two entries,
-    in the unit of the tensor. ``relative``: norm of the part that breaks it divided by the norm of the array.
-    ``broken``: the pairs beyond their tolerance.
+    ``applies``: whether the layout leaves anything to compare. ``largest``: largest difference of two
+    entries, in the unit of the tensor. ``relative``: norm of the part that breaks it divided by the norm of
+    the array. ``broken``: the pairs beyond their tolerance.
     """
 
     applies: bool
@@ -151,9 +151,9 @@ class EquivalentAxes:
 class TensorSymmetry:
     """The largest point group that leaves the tensor unchanged within noise, in the axes of the crystal.
 
-    ``symbol``, ``system``, ``elements`` (names): of that group. ``crystal_symbol``: the group that a tensor of this
-    kind shows in this crystal. ``relation``: of the first to the second: same, higher (more than the crystal
-    asks for), lower (a subgroup), other.
+    ``symbol``, ``system``, ``elements`` (names): of that group. ``crystal_symbol``: the group that a tensor
+    of this kind shows in this crystal. ``relation``: of the first to the second: same, higher (more than the
+    crystal asks for), lower (a subgroup), other.
     """
 
     symbol: str
@@ -169,9 +169,10 @@ class AuditResult:
 
     ``stated``: the reading as stated (None where order or axes are unknown). ``best``: the reading that
     explains the tensor, or the slip; None when nothing does. ``rivals``: others that do about as well.
-    ``cause``: what the verdict is put down to: another reading, a slip, a crystal of another class, broken index
-    symmetry, nothing found, or '' where nothing is wrong. ``undetected``: changes of axes, order, layout or factor that leave the tensor as obedient as it is:
-    symmetry cannot exclude them. ``message``: two lines, the verdict and what to do.
+    ``cause``: what the verdict is put down to: another reading, a slip, a crystal of another class, broken
+    index symmetry, nothing found, or '' where nothing is wrong. ``undetected``: changes of axes, order,
+    layout or factor that leave the tensor as obedient as it is: symmetry cannot exclude them. ``message``:
+    two lines, the verdict and what to do.
     """
 
     measurement: Measurement

@@ -1,4 +1,4 @@
-"""Search over all rotations: a fixed grid, then Gauss-Newton steps on the rotation vector from its best points.
+"""Search over all rotations: a fixed grid, then damped Gauss-Newton steps from its best points.
 
 The grid is the same in every run. Source of the map from three numbers to rotations: K. Shoemake, in Graphics
 Gems III (1992), p. 124.
@@ -25,8 +25,8 @@ _SHORTEST_STEP = 1e-10
 
 @dataclass(frozen=True, eq=False)
 class FoundRotation:
-    """``rotation`` (3, 3) takes the tensor's axes to the group's; ``residual`` what is left; ``effective``: how
-    many of the three angles the residual depends on there.
+    """``rotation`` (3, 3) takes the tensor's axes to the group's; ``residual`` what is left; ``effective``:
+    how many of the three angles the residual depends on there.
     """
 
     rotation: FloatArray
@@ -49,9 +49,7 @@ def best_rotation(spaces: Subspaces, coordinates: FloatArray) -> FoundRotation:
     return min(refined, key=lambda found: found.residual)
 
 
-def _refined(
-    spaces: Subspaces, coordinates: FloatArray, start: FloatArray, length: float
-) -> FoundRotation:
+def _refined(spaces: Subspaces, coordinates: FloatArray, start: FloatArray, length: float) -> FoundRotation:
     """Levenberg-Marquardt from one start; every step that is taken makes the residual smaller."""
     rotation, damping = start, 1e-3
     vector, slope = _with_slope(spaces, rotation, coordinates)

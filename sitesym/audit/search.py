@@ -1,4 +1,4 @@
-"""The search over readings: every named set of axes and turn of it, times every variant of the array, at once.
+"""The search over readings: every named set of axes and turn of it, times every variant of the array.
 
 Readings are ranked by how many of the hypotheses tried would fit so well by chance. For one hypothesis with
 c constraints the chance that a residual of typical size r0 is as small as r goes like (r / r0)^c; a reading
@@ -13,7 +13,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from sitesym.arrays import FloatArray, IntArray
+from sitesym.arrays import BoolArray, FloatArray, IntArray
 from sitesym.audit.frames import Frames, tried_turns
 from sitesym.audit.indexcheck import check_index_symmetry
 from sitesym.audit.measurement import Measurement
@@ -38,6 +38,8 @@ RIVAL = 3.0
 EARNED = float(np.log(0.05))
 #: Axes further than this from those of the group's normaliser are other axes (entries of matrices).
 _SAME_AXES = 1e-3
+#: A factor must take away at least half of the residual.
+_EXPLAINED = 0.5
 _MOST_RIVALS = 4
 _MOST_JOINED = 5
 #: Weights of the entries of a matrix without rational relations: square roots of primes.
@@ -60,8 +62,8 @@ class Orientation:
 
 @dataclass(frozen=True, eq=False)
 class Candidate:
-    """A reading as a place in the field. ``coefficients`` (k,): its allowed part. ``joined``: readings that give
-    the same tensor, in words.
+    """A reading as a place in the field. ``coefficients`` (k,): its allowed part. ``joined``: readings that
+    give the same tensor, in words.
     """
 
     orientation: Orientation
@@ -135,8 +137,9 @@ def _classes_of_axes(to_standard: FloatArray, group: PointGroup) -> tuple[IntArr
     A fixed linear function of the matrices, its largest value over all equivalent turns, names the class.
     """
     turns = equivalent_rotations(group)
-    values = np.round((turns.reshape(len(turns), 1, 3, 3) @ to_standard).reshape(len(turns), -1, 9) @ _MARK, 6)
-    _, first, member = np.unique(values.max(axis=0), return_index=True, return_inverse=True)
+    images = (turns[:, None] @ to_standard[None]).reshape(len(turns), -1, 9)
+    marks = np.round(images @ _MARK, 6).max(axis=0)
+    _, first, member = np.unique(marks, return_index=True, return_inverse=True)
     order = np.argsort(first)
     place = np.empty_like(order)
     place[order] = np.arange(len(order))
@@ -177,8 +180,9 @@ class Field:
     def moved(self, rotation: FloatArray, variant: Variant) -> FloatArray:
         """Coordinates (n,) in the standard orientation of a variant with these axes (rows in the file's)."""
         to_standard = self.frames.standard_from_file @ rotation.T
-        moved: FloatArray = self.spaces.space.rotated(to_standard[None], variant.coordinates[:, None])[0, :, 0]
-        return moved
+        moved = self.spaces.space.rotated(to_standard[None], variant.coordinates[:, None])
+        only: FloatArray = moved[0, :, 0]
+        return only
 
 
 def search(
@@ -222,9 +226,30 @@ def search(
     )
 
 
-def chance(
-    relative: FloatArray, typical: float, floor: FloatArray | float, constraints: int
-) -> FloatArray:
+def without_empty_factors(field: Field) -> Field:
+    """The field without variants whose factor explains nothing.
+
+    A factor that halves an entry halves what is wrong with it too. So the best allowed tensor is fitted to
+    the numbers as given, before they are divided, and must leave less than half of what is left without the
+    factor.
+    """
+    residuals = field.residuals.copy()
+    plain = {(v.order, v.layout): n for n, v in enumerate(field.variants) if not v.factor}
+    for place, number in np.argwhere(field.residuals <= field.tolerances).tolist():
+        variant = field.variants[number]
+        if not variant.factor:
+            continue
+        to_standard = field.frames.standard_from_file @ field.orientations[place].rotation.T
+        design = field.spaces.space.rotated(to_standard.T[None], field.spaces.allowed.T)[0]
+        design, target = design * variant.divisors[:, None], variant.coordinates * variant.divisors
+        rest = target - design @ np.linalg.lstsq(design, target, rcond=None)[0]
+        before = field.residuals[place, plain[variant.order, variant.layout]]
+        if np.linalg.norm(rest) > _EXPLAINED * before:
+            residuals[place, number] = np.inf
+    return replace(field, residuals=residuals)
+
+
+def chance(relative: FloatArray, typical: float, floor: FloatArray | float, constraints: int) -> FloatArray:
     """Logarithm of the chance that one hypothesis leaves so small a relative residual."""
     logarithm: FloatArray = constraints * np.log(
         np.minimum(np.maximum(relative, floor) / max(typical, 1e-300), 1.0)
@@ -299,12 +324,12 @@ def _score(field: Field, place: IntArray) -> float:
     return float(field.scores[tuple(place)])
 
 
-def _same_tensor(field: Field, leader: Candidate, places: IntArray) -> FloatArray:
+def _same_tensor(field: Field, leader: Candidate, places: IntArray) -> BoolArray:
     """Which readings give the leader's tensor up to an equivalent choice of axes, shape (m,)."""
     own = field.allowed[places[:, 0], :, places[:, 1]]
     images = equivalent_actions(field.spaces.space.kind, field.spaces.group) @ leader.coefficients
     distance = np.linalg.norm(own[:, None, :] - images[None], axis=2).min(axis=1)
-    same = distance <= 2.0 * field.tolerances[places[:, 1]]
+    same: BoolArray = distance <= 2.0 * field.tolerances[places[:, 1]]
     if not is_continuous(field.spaces.group):
         return same
     to_standard = field.frames.standard_from_file

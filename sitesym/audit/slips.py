@@ -1,8 +1,8 @@
 """Mistakes in single entries that would explain a violation: sign, exchange, power of ten, one wrong value.
 
 The tensor stays in its axes; each mistake moves the residual by a multiple of one or two columns of a fixed
-matrix, so that all mistakes are tried at once. An entry is a single number of the array, or a number with all the
-places index symmetry gives it.
+matrix, so that all mistakes are tried at once. An entry is a single number of the array, or a number with all
+the places index symmetry gives it.
 """
 
 from __future__ import annotations
@@ -14,7 +14,7 @@ from itertools import combinations
 
 import numpy as np
 
-from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.arrays import BoolArray, FloatArray, IntArray, frozen
 from sitesym.audit.arrayspace import ArraySpace, array_space
 from sitesym.audit.result import Slip
 from sitesym.audit.search import Candidate, Field, chance
@@ -55,12 +55,8 @@ def repairs(field: Field, candidate: Candidate) -> list[Repair]:
     columns = np.eye(space.size)
     moved = space.rotated(to_standard[None], np.column_stack([columns, coordinates]))[0]
     forbidden = field.spaces.forbidden_part(moved)
-    entries = coordinates / space.weights
-    trial = _Trial(
-        cells, forbidden[:, :-1] * space.weights, forbidden[:, -1], entries, float(np.linalg.norm(coordinates))
-    )
-    number = field.variants.index(candidate.variant)
-    tolerance = float(field.tolerances[number])
+    trial = _Trial(cells, forbidden[:, :-1] * space.weights, forbidden[:, -1], coordinates / space.weights)
+    tolerance = float(field.tolerances[field.variants.index(candidate.variant)])
     found = [
         _scored(field, candidate, slip, left, choices, free)
         for slip, left, choices, free in _fitting(trial, tolerance)
@@ -70,13 +66,12 @@ def repairs(field: Field, candidate: Candidate) -> list[Repair]:
 
 @dataclass(frozen=True, eq=False)
 class _Trial:
-    """``columns`` (n, n): change of the forbidden part per unit of each entry. ``rest`` (n,): that part now."""
+    """``columns`` (n, n): change of the forbidden part per unit of each entry; ``rest`` (n,): that part."""
 
     cells: _Cells
     columns: FloatArray
     rest: FloatArray
     entries: FloatArray
-    length: float
 
 
 def _fitting(trial: _Trial, tolerance: float) -> Iterator[tuple[Slip, float, int, int]]:
@@ -92,9 +87,11 @@ def _fitting(trial: _Trial, tolerance: float) -> Iterator[tuple[Slip, float, int
     for k in _within(left, tolerance, present):
         yield Slip("sign", (names[k],), (-values[k],)), float(left[k]), count, 0
 
+    # Where zero would do as well, a power of ten explains nothing.
+    needed = present & (_lengths(trial.rest[:, None] - weighted) > tolerance)
     for exponent in _EXPONENTS:
         left = _lengths(trial.rest[:, None] + (10.0**-exponent - 1.0) * weighted)
-        for k in _within(left, tolerance, present):
+        for k in _within(left, tolerance, needed):
             expected = (values[k] * 10.0**-exponent,)
             yield (
                 Slip("power-of-ten", (names[k],), expected, exponent),
@@ -136,9 +133,7 @@ def _swaps(
         yield slip, float(left[k]), len(left), 0
 
 
-def _scored(
-    field: Field, candidate: Candidate, slip: Slip, left: float, choices: int, fitted: int
-) -> Repair:
+def _scored(field: Field, candidate: Candidate, slip: Slip, left: float, choices: int, fitted: int) -> Repair:
     number = field.variants.index(candidate.variant)
     length = float(np.linalg.norm(candidate.variant.coordinates))
     floor = field.floor(number)
@@ -155,7 +150,7 @@ def _lengths(vectors: FloatArray) -> FloatArray:
     return lengths
 
 
-def _within(left: FloatArray, tolerance: float, usable: FloatArray) -> list[int]:
+def _within(left: FloatArray, tolerance: float, usable: BoolArray) -> list[int]:
     places: list[int] = np.flatnonzero((left <= tolerance) & usable).tolist()
     return places
 

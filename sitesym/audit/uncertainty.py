@@ -103,9 +103,7 @@ def noise_of(
     return Noise(relative, arrays[0], arrays[1])
 
 
-def judged(
-    noise: Noise, spaces: Subspaces, coordinates: FloatArray, to_group_axes: FloatArray
-) -> Residual:
+def judged(noise: Noise, spaces: Subspaces, coordinates: FloatArray, to_group_axes: FloatArray) -> Residual:
     """The residual of a tensor with coordinates (n,) in its own axes; the rotation (3, 3) leads to the
     group's.
     """

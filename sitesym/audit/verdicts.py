@@ -19,6 +19,7 @@ from sitesym.audit.search import (
     chance,
     judged_reading,
     residual_of,
+    without_empty_factors,
 )
 from sitesym.audit.slips import Repair, repairs
 from sitesym.audit.turns import smallest_turn, turn_of
@@ -30,7 +31,7 @@ _MOST_SLIPS = 6
 
 @dataclass(frozen=True, eq=False)
 class Finding:
-    """A verdict with the readings behind it. ``crystal``: the class the tensor looks like, if that explains."""
+    """A verdict with the readings behind it. ``crystal``: the class the tensor looks like, if any."""
 
     verdict: Verdict
     cause: Cause = ""
@@ -50,7 +51,8 @@ def settle(field: Field, explain: bool) -> Finding:
         return Finding("consistent", "", stated, stated)
     if not explain:
         return Finding("violates", "unexplained", stated)
-    return replace(_explained(field, candidates(field)), stated=stated)
+    searched = without_empty_factors(field)
+    return replace(_explained(searched, candidates(searched)), stated=stated)
 
 
 def is_stated(field: Field) -> bool:
@@ -62,6 +64,7 @@ def is_stated(field: Field) -> bool:
 
 def _unstated(field: Field) -> Finding:
     """Readings that contradict nothing stated come first; several different ones leave the answer open."""
+    field = without_empty_factors(field)
     fits = candidates(field)
     compatible = [fit for fit in fits if not fit.departs]
     if not compatible or compatible[0].score > fits[0].score + RIVAL:
@@ -73,27 +76,36 @@ def _unstated(field: Field) -> Finding:
 
 
 def _explained(field: Field, fits: list[Candidate]) -> Finding:
-    """The most likely explanation of a failure."""
-    reading = fits[0] if fits and fits[0].score <= EARNED else None
-    slips = _slips(field)
+    """The most likely explanation of a failure.
+
+    Another reading comes first unless a slip or another crystal is clearly more likely; then the likelier
+    of a slip, a free rotation and another crystal.
+    """
+    if not field.spaces.independent:
+        return Finding("violates", "crystal", crystal=other_crystal(field))
+    readings = [judged_reading(field, fit) for fit in fits]
+    slips, crystal = _slips(field), _earned_crystal(field)
     slip = slips[0] if slips and slips[0].score <= EARNED else None
-    readings = tuple(judged_reading(field, fit) for fit in fits)
-    if reading is not None and (slip is None or reading.score <= slip.score + _PREFERENCE):
-        near = tuple(r for r in readings[1:] if r.score <= reading.score + RIVAL)
+    crystal_score = np.inf if crystal is None else crystal.score
+    slip_score = np.inf if slip is None else slip.score
+    # A tensor that shows more symmetry than this crystal asks for is no evidence against it.
+    against = crystal_score if crystal is not None and crystal.is_lower else np.inf
+    if readings and readings[0].score <= min(EARNED, slip_score + _PREFERENCE, against + RIVAL):
+        near = tuple(r for r in readings[1:] if r.score <= readings[0].score + RIVAL)
         return Finding("consistent-otherwise", "reading", None, readings[0], near)
-    crystal = other_crystal(field)
-    if crystal is not None and crystal.score > EARNED:
-        crystal = None
-    if slip is not None and (crystal is None or slip.score < crystal.score):
-        near = tuple(s for s in slips[1:] if s.score <= slip.score + RIVAL)[:_MOST_SLIPS]
+    if slip is not None and slip_score < crystal_score:
+        near = tuple(s for s in slips[1:] if s.score <= slip_score + RIVAL)[:_MOST_SLIPS]
         return Finding("violates", "slip", None, slip, (*near, *readings[:1]), crystal)
     turned = _turned(field)
-    if turned is not None and turned.score <= EARNED and (crystal is None or turned.score <= crystal.score):
-        return Finding("consistent-otherwise", "reading", None, turned, readings[:1])
+    if turned is not None and turned.score <= min(EARNED, crystal_score):
+        return Finding("consistent-otherwise", "reading", None, turned, tuple(readings[:1]))
     rivals = (*readings[:1], *([turned] if turned is not None else []), *slips[:1])
-    if crystal is not None:
-        return Finding("violates", "crystal", None, None, rivals, crystal)
-    return Finding("violates", "unexplained", None, None, rivals)
+    return Finding("violates", "unexplained" if crystal is None else "crystal", None, None, rivals, crystal)
+
+
+def _earned_crystal(field: Field) -> OtherCrystal | None:
+    found = other_crystal(field)
+    return found if found is not None and found.score <= EARNED else None
 
 
 def _slips(field: Field) -> list[Reading]:
