@@ -37,6 +37,11 @@ class SpaceGroupSetting:
         return frozen(np.array([place[rotation.tobytes()] for rotation in self.rotations], dtype=np.int64))
 
     @cached_property
+    def by_element(self) -> IntArray:
+        """(n,): indices of the operations in the order of their rotations in ``point_rotations``."""
+        return frozen(np.argsort(self.point_indices, kind="stable"))
+
+    @cached_property
     def has_inversion(self) -> bool:
         """Whether some operation turns every direction round."""
         return bool((self.point_rotations == -np.eye(3)).all(axis=(1, 2)).any())

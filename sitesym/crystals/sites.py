@@ -43,9 +43,9 @@ class Site:
 
     ``atoms``: indices in the file, from 0. ``multiplicity``: atoms in the conventional cell. ``symbol``:
     oriented site-symmetry symbol of International Tables A, such as 4/mm.m. ``position_frac``: idealised
-    position of the first atom in the conventional cell. ``rotations``, ``translations``: the operations of
-    the site in the conventional cell, each leaving the position where it is, in the order of its
-    ``elements``, which are indices into ``crystal_group``.
+    position of the first atom in the conventional cell. ``operations``: indices of the operations of
+    ``setting`` that leave the position where it is, up to lattice vectors ``steps`` (k, 3), in the order of
+    the elements of ``crystal_group``.
     """
 
     label: str
@@ -56,19 +56,30 @@ class Site:
     symbol: str
     position_frac: FloatArray
     crystal_group: PointGroup
-    elements: tuple[int, ...]
-    rotations: IntArray
-    translations: FloatArray
+    setting: SpaceGroupSetting
+    operations: IntArray
+    steps: FloatArray
+
+    @property
+    def rotations(self) -> IntArray:
+        """(k, 3, 3) of the operations of the site in the conventional cell."""
+        return self.setting.rotations[self.operations]
+
+    @property
+    def translations(self) -> FloatArray:
+        """(k, 3) of the operations of the site: each leaves the position exactly where it is."""
+        translations: FloatArray = self.setting.translations[self.operations] - self.steps
+        return translations
 
     @cached_property
     def point_group(self) -> PointGroup:
         """The site group, in the basis and axes of the crystal's."""
-        return self.crystal_group.subgroup(list(self.elements))
+        return self.crystal_group.subgroup(self.setting.point_indices[self.operations].tolist())
 
     @property
     def order(self) -> int:
         """Number of operations of the site."""
-        return len(self.elements)
+        return len(self.operations)
 
     @property
     def has_inversion(self) -> bool:
@@ -99,32 +110,34 @@ def build_sites(
     Raises SymmetryError when the order of a site group times the multiplicity is not the order of the space
     group in the conventional cell: the finder's answer is then not consistent.
     """
-    if not np.array_equal(_integer_rotations(point_group), found.setting.point_rotations):
+    setting = found.setting
+    if not np.array_equal(_integer_rotations(point_group), setting.point_rotations):
         raise SymmetryError("the point group is not that of the space group found")
-    _, first, orbit_of = np.unique(found.orbits, return_index=True, return_inverse=True)
-    members = [np.flatnonzero(orbit_of == orbit).tolist() for orbit in np.argsort(first)]
-    leading = [atoms[0] for atoms in members]
-    positions = found.conventional_positions[leading]
-    steps, fixing = _stabilisers(found.setting, positions, lattice)
+    members: dict[int, list[int]] = {}
+    for atom, orbit in enumerate(found.orbits.tolist()):
+        members.setdefault(orbit, []).append(atom)
+    leading = [atoms[0] for atoms in members.values()]
+    positions = frozen(found.conventional_positions[leading])
+    steps, fixing = _stabilisers(setting, positions, lattice)
+    in_order = setting.by_element
+    orders, multiplicities = fixing.sum(axis=1), found.multiplicities[leading]
     sites = []
-    for orbit, (atom, atoms) in enumerate(zip(leading, members, strict=True)):
-        operations = np.flatnonzero(fixing[:, orbit])
-        operations = operations[np.argsort(found.setting.point_indices[operations])]
-        multiplicity = int(found.multiplicities[atom])
-        _check_orbit(crystal.labels[atom], len(operations), multiplicity, found.setting)
+    for orbit, (atom, atoms) in enumerate(zip(leading, members.values(), strict=True)):
+        _check_orbit(crystal.labels[atom], int(orders[orbit]), int(multiplicities[orbit]), setting)
+        operations = in_order[fixing[orbit, in_order]]
         sites.append(
             Site(
                 crystal.labels[atom],
                 str(crystal.species[atom]),
                 tuple(atoms),
-                multiplicity,
+                int(multiplicities[orbit]),
                 found.wyckoffs[atom],
                 found.site_symbols[atom],
-                frozen(positions[orbit]),
+                positions[orbit],
                 point_group,
-                tuple(found.setting.point_indices[operations].tolist()),
-                frozen(found.setting.rotations[operations]),
-                frozen(found.setting.translations[operations] - steps[operations, orbit]),
+                setting,
+                frozen(operations),
+                frozen(steps[orbit, operations]),
             )
         )
     return tuple(sites)
@@ -139,12 +152,13 @@ def _integer_rotations(point_group: PointGroup) -> IntArray:
 def _stabilisers(
     setting: SpaceGroupSetting, positions: FloatArray, lattice: FloatArray
 ) -> tuple[FloatArray, BoolArray]:
-    """For n operations and m positions: the lattice vectors (n, m, 3) by which each image comes nearest its
-    position, and whether it then falls on it (n, m)."""
-    difference = positions @ np.swapaxes(setting.rotations, 1, 2) + setting.translations[:, None] - positions
+    """For m positions and n operations: the lattice vectors (m, n, 3) by which each image comes nearest its
+    position, and whether it then falls on it (m, n)."""
+    images = np.tensordot(positions, setting.rotations, axes=(1, 2)) + setting.translations
+    difference = images - positions[:, None]
     steps = np.rint(difference)
-    distances = np.linalg.norm((difference - steps) @ lattice, axis=2)
-    return steps, distances < _SAME_POSITION_ANGSTROM
+    rest = (difference - steps) @ lattice
+    return steps, (rest * rest).sum(axis=2) < _SAME_POSITION_ANGSTROM**2
 
 
 def _check_orbit(label: str, order: int, multiplicity: int, setting: SpaceGroupSetting) -> None:

@@ -8,7 +8,7 @@ operations of the conventional cell, from the database, are taken to the file's 
 from __future__ import annotations
 
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, lru_cache
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -19,6 +19,7 @@ from sitesym.crystals.finders import DEFAULT_FINDER, find_with
 from sitesym.crystals.found import FoundSymmetry, SpaceGroupSetting
 from sitesym.crystals.idealisation import Idealisation, idealisation_of, nearest_symmetric_lattice
 from sitesym.crystals.sites import Site, build_sites
+from sitesym.crystals.spglib_finder import setting
 from sitesym.errors import UsageError
 from sitesym.groups import PointGroup
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
@@ -53,7 +54,7 @@ class CrystalSymmetry:
     @cached_property
     def point_group(self) -> PointGroup:
         """Of the crystal, in the basis of the conventional cell and the file's Cartesian axes."""
-        return PointGroup.from_fractional(self.setting.point_rotations, self.conventional_lattice)
+        return group_of_setting(self.setting.hall_number).in_lattice(self.conventional_lattice)
 
     @cached_property
     def idealisation(self) -> Idealisation:
@@ -110,6 +111,13 @@ class CrystalSymmetry:
             f"sites: {known}",
             "name one of these sites",
         )
+
+
+@lru_cache(maxsize=530)
+def group_of_setting(hall_number: int) -> PointGroup:
+    """The point group of a space-group setting, in some lattice that has its symmetry."""
+    rotations = setting(hall_number).point_rotations
+    return PointGroup.from_fractional(rotations, nearest_symmetric_lattice(np.eye(3), rotations))
 
 
 def find_symmetry(

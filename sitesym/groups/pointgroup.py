@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cached_property, lru_cache
 
 import numpy as np
 
 from sitesym.arrays import BoolArray, FloatArray, IntArray, frozen
+from sitesym.errors import SymmetryError
 from sitesym.groups.abstract import AbstractGroup
 from sitesym.groups.closure import abstract_group, identity_first
 from sitesym.groups.elements import Element, classify
@@ -87,6 +88,18 @@ class PointGroup:
         cart, flags = given[sequence], flags[sequence]
         require_orthogonal(cart)
         return cls(frozen(cart), None, None, frozen(flags), abstract_group(cart, flags))
+
+    def in_lattice(self, lattice: FloatArray) -> PointGroup:
+        """The same integer matrices in the basis with other rows ``lattice``.
+
+        Raises SymmetryError for a group without a lattice basis or a lattice without the symmetry.
+        """
+        if self.rotations_frac is None:
+            raise SymmetryError("the group has no lattice basis", repr(self))
+        rows = lattice_rows(lattice)
+        cart: FloatArray = rows.T @ self.rotations_frac @ np.linalg.inv(rows.T)
+        require_orthogonal(cart)
+        return replace(self, rotations_cart=frozen(cart), lattice=frozen(rows))
 
     def rotated(self, rotation: FloatArray) -> PointGroup:
         """The same group in other Cartesian axes: v_new = R v_old, so C becomes R C R^T and lattice rows

@@ -8,7 +8,8 @@ from sitesym.crystals import CrystalSymmetry
 from sitesym.crystals.ladder import Ladder, Rung
 from sitesym.crystals.pseudosymmetry import NearestArrangement, Pseudosymmetry
 from sitesym.crystals.second_opinion import SecondOpinion
-from sitesym.screening.verdicts import group_of_setting, verdict_flips, verdicts_of_setting
+from sitesym.crystals.symmetry import group_of_setting
+from sitesym.screening.verdicts import verdict_flips, verdicts_of_setting
 
 
 def reliability_entries(symmetry: CrystalSymmetry) -> dict[str, Any]:

@@ -6,6 +6,7 @@ from scipy.spatial.transform import Rotation
 
 from sitesym.crystals import Crystal, find_symmetry, read_crystal
 from sitesym.errors import SymmetryError, SymmetryNotFoundError, UsageError
+from sitesym.groups import PointGroup
 
 
 def same_operations(first, second):
@@ -145,3 +146,15 @@ def test_tetragonal_barium_titanate_becomes_cubic_between_a_tenth_and_a_fifth_of
     crystal = read_crystal(structures / "barium_titanate_BaTiO3.cif")
     symbols = [find_symmetry(crystal, tolerance).space_group_symbol for tolerance in (1e-5, 0.01, 0.1, 0.2)]
     assert symbols == ["P4mm", "P4mm", "P4mm", "Pm-3m"]
+
+
+def test_a_group_in_another_lattice_is_the_one_built_there_and_a_lattice_without_the_symmetry_is_refused():
+    cubic_group = PointGroup.from_symbol("m-3m")
+    moved = cubic_group.in_lattice(np.eye(3) * 4.2)
+    built = PointGroup.from_fractional(cubic_group.rotations_frac, np.eye(3) * 4.2)
+    assert np.allclose(moved.rotations_cart, built.rotations_cart, atol=1e-12)
+    assert np.array_equal(moved.product_table, built.product_table)
+    with pytest.raises(SymmetryError):
+        cubic_group.in_lattice(np.diag([4.0, 4.0, 4.1]))
+    with pytest.raises(SymmetryError):
+        PointGroup.from_cartesian(np.eye(3)[None]).in_lattice(np.eye(3))

@@ -7,8 +7,8 @@ import pytest
 
 from sitesym.crystals import Crystal, examined_symmetry
 from sitesym.crystals.spglib_finder import setting
+from sitesym.crystals.symmetry import group_of_setting
 from sitesym.screening.verdicts import (
-    group_of_setting,
     reliability_columns,
     reliability_remarks,
     verdict_flips,
