@@ -19,6 +19,8 @@ from sitesym.screening.pool import Pool
 FORMATS = ("text", "json", "jsonl", "csv", "markdown", "latex", "parquet")
 #: Formats of which rows are written as they come.
 _STREAMED = ("jsonl", "csv")
+#: Formats of the bare table; the others are documents, with settings and counts.
+_TABLES = (*_STREAMED, "parquet")
 
 
 @dataclass(frozen=True)
@@ -37,7 +39,7 @@ class _Target:
         from sitesym.cli.table import write_rows
         from sitesym.reports.screen_report import screen_document
 
-        if self.format_name in (*_STREAMED, "parquet"):
+        if self.format_name in _TABLES:
             write_rows(
                 rows, settings.columns, self.format_name, self.output, spreadsheet_safe=self.spreadsheet_safe
             )
@@ -107,7 +109,7 @@ def command(
 
     With --store, rows are kept in FILE as they come. A run that was stopped goes on there; only what is new
     or has changed (content, settings, versions) is done again. Rows are read with `sitesym table FILE`, or
-    with --format. Text, json, markdown and latex hold all rows in memory; csv and jsonl are written row by row.
+    with --format. Formats csv and jsonl are written row by row; the others hold all rows in memory.
     """
     chosen = split_names(properties)
     settings = Settings(tolerance_angstrom, finder, ladder == "on", *([tuple(chosen)] if chosen else []))
@@ -136,7 +138,7 @@ def _screen_to_output(run: Screening, target: _Target) -> None:
         to_terminal = target.format_name in _STREAMED and target.output is None and sys.stdout.isatty()
         rows = _watched(run.rows(_items(target.inputs)), run, target, bar=not to_terminal)
         target.write(rows, run.task.settings)
-    if target.format_name != "text":
+    if target.format_name in _TABLES:
         _summarise(run, to_standard_error=True)
 
 

@@ -46,12 +46,8 @@ STEPS: Final = (_first_version(),)
 VERSION: Final = len(STEPS)
 
 
-def migrate(connection: sqlite3.Connection, path: str) -> None:
-    """Bring a new or older store to `VERSION`, all steps or none.
-
-    Raises StoreError for a file that is no store, or of a later version.
-    """
-    check_version(connection, path)
+def migrate(connection: sqlite3.Connection) -> None:
+    """Bring a new or older store, as `check_version` allows, to `VERSION`: all steps or none."""
     version = connection.execute("PRAGMA user_version").fetchone()[0]
     if version == VERSION:
         return

@@ -159,9 +159,10 @@ class Store:
 
     def _prepare(self, settings: Settings) -> None:
         connection = self._connection
+        check_version(connection, self.path)
         connection.execute("PRAGMA journal_mode = WAL")
         connection.execute("PRAGMA synchronous = NORMAL")
-        migrate(connection, self.path)
+        migrate(connection)
         connection.execute("BEGIN IMMEDIATE")
         add_columns(connection, settings.columns)
         fingerprint = settings.fingerprint()

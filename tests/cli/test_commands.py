@@ -82,7 +82,7 @@ def test_every_command_writes_every_format(
     result = run(command, *argument, "--format", format_name)
     assert result.exit_code == 0, result.output
     if format_name == "csv":
-        assert len({len(row) for row in csv.reader(io.StringIO(result.output))}) == 1
+        assert len({len(row) for row in csv.reader(io.StringIO(result.stdout))}) == 1
     elif format_name == "json":
         assert json.loads(result.output)["schema"] == f"sitesym.{command}/1"
     else:

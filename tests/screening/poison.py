@@ -6,6 +6,7 @@ import os
 import signal
 import sys
 import time
+from collections.abc import Callable
 from pathlib import Path
 
 from sitesym.screening.contents import Structures, read_item
@@ -13,45 +14,56 @@ from sitesym.screening.work import WorkItem
 
 
 def read(item: WorkItem) -> Structures:
-    """Structures of the item, unless its file begins with the name of a poison."""
+    """Structures of the item, unless its file begins with the name of a poison. What only warns, or crashes
+    the first time alone, is read from the file of the same name that ends in .good."""
     path = Path(item.source)
-    word = path.read_bytes().split(maxsplit=1)[:1] if path.is_file() else []
-    match word:
-        case [b"crash"]:
-            os.write(2, b"native code: broken table\n")
-            os.kill(os.getpid(), signal.SIGSEGV)
-        case [b"crash-once"]:
-            path.with_suffix(".seen").touch(exist_ok=True)
-            if path.with_suffix(".seen").read_text() == "":
-                path.with_suffix(".seen").write_text("seen")
-                os.kill(os.getpid(), signal.SIGSEGV)
-            path = path.with_suffix(".good")
-            item = WorkItem.of_path(path, item.identity, "vasp")
-        case [b"hang"]:
-            _hang_without_python()
-        case [b"eat"]:
-            _keep(bytearray(2**34))
-        case [b"abort"]:
-            os.write(2, b"memory allocation of 9999999999 bytes failed\n")
-            os.abort()
-        case [b"leave"]:
-            os._exit(0)
-        case [b"exit"]:
-            sys.exit("nobody thought of this")
-        case [b"whisper"]:
-            os.write(2, b"native code: a warning\n")
-            item = WorkItem.of_path(path.with_suffix(".good"), item.identity, "vasp")
-        case [b"unforeseen"]:
-            raise ZeroDivisionError("nobody thought of this")
+    word = path.read_text(encoding="utf-8", errors="replace").split()[0] if path.is_file() else ""
+    if word in POISONS:
+        POISONS[word](path)
+        item = WorkItem.of_path(path.with_suffix(".good"), item.identity, "vasp")
     yield from read_item(item)
 
 
-def _hang_without_python() -> None:
+def _crash(_: Path) -> None:
+    os.write(2, b"native code: broken table\n")
+    os.kill(os.getpid(), signal.SIGSEGV)
+
+
+def _crash_once(path: Path) -> None:
+    seen = path.with_suffix(".seen")
+    if not seen.exists():
+        seen.touch()
+        os.kill(os.getpid(), signal.SIGSEGV)
+
+
+def _hang(_: Path) -> None:
     """Block the signals Python could handle and never come back, as native code does."""
     signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT, signal.SIGTERM})
     while True:
         time.sleep(60.0)
 
 
-def _keep(block: bytearray) -> None:
-    raise AssertionError(f"{len(block)} bytes were given")
+def _eat(_: Path) -> None:
+    raise AssertionError(f"{len(bytearray(2**34))} bytes were given")
+
+
+def _abort(_: Path) -> None:
+    os.write(2, b"memory allocation of 9999999999 bytes failed\n")
+    os.abort()
+
+
+def _unforeseen(_: Path) -> None:
+    raise ZeroDivisionError("nobody thought of this")
+
+
+POISONS: dict[str, Callable[[Path], object]] = {
+    "crash": _crash,
+    "crash-once": _crash_once,
+    "hang": _hang,
+    "eat": _eat,
+    "abort": _abort,
+    "leave": lambda _: os._exit(0),
+    "exit": lambda _: sys.exit("nobody thought of this"),
+    "whisper": lambda _: os.write(2, b"native code: a warning\n"),
+    "unforeseen": _unforeseen,
+}

@@ -87,11 +87,12 @@ def test_polar_directions_of_classes_without_a_single_axis() -> None:
 
 
 def test_65_space_groups_lack_improper_operations_and_22_of_them_are_chiral() -> None:
-    """Eleven enantiomorphic pairs: International Tables A (2016), table 3.5.3.1 lists the pairs, from memory."""
+    """The eleven enantiomorphic pairs of International Tables A, numbers from memory."""
     found = {setting(hall).number: chirality(setting(hall)) for hall in range(1, 531)}
     assert sum(sohncke for sohncke, _ in found.values()) == 65
     assert sorted(number for number, (_, chiral) in found.items() if chiral) == [
-        76, 78, 91, 92, 95, 96, 144, 145, 151, 152, 153, 154, 169, 170, 171, 172, 178, 179, 180, 181, 212, 213,
+        76, 78, 91, 92, 95, 96, 144, 145, 151, 152, 153, 154, 169, 170, 171, 172, 178, 179, 180, 181,
+        212, 213,
     ]  # fmt: skip
 
 
