@@ -14,6 +14,7 @@ from typing import Final
 
 from sitesym.errors import CrashError
 from sitesym.screening.failures import failed_row
+from sitesym.screening.nursery import Nursery
 from sitesym.screening.process import WorkerProcess
 from sitesym.screening.task import Answer, Job, Task
 from sitesym.screening.work import content_hash
@@ -41,14 +42,16 @@ class Pool:
         self._newest = 0
 
     def __enter__(self) -> Pool:
-        self._crew = [WorkerProcess(self.task) for _ in range(self._workers)]
+        self._nursery = Nursery(self.task)
         return self
 
     def __exit__(
         self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
     ) -> None:
+        # Workers see the end of their connection; those that hang are ended here.
         for worker in self._crew:
             worker.end()
+        self._nursery.end()
 
     def stop(self) -> None:
         """Give out no more jobs; those given out are finished."""
@@ -60,6 +63,9 @@ class Pool:
         Raises ScreeningError when worker processes do not start.
         """
         self._jobs = jobs
+        # The first jobs are looked for while the libraries of the workers are being loaded.
+        self._next = self._fresh()
+        self._crew = self._crew or [WorkerProcess(self.task, self._nursery) for _ in range(self._workers)]
         self._feed()
         while any(worker.jobs for worker in self._crew):
             listening = {worker.connection.fileno(): worker for worker in self._crew}
@@ -71,25 +77,22 @@ class Pool:
 
     def _listen(self, worker: WorkerProcess) -> tuple[Job, Answer] | None:
         try:
-            message = worker.listen()
+            answer = worker.listen()
         except EOFError:
             return self._bury(worker)
-        if isinstance(message, str):
-            worker.ready = True
-            return None
         job = worker.jobs.popleft()
-        if message.last:
+        if answer.last:
             self._replace(worker)
-        return job, message
+        return job, answer
 
     def _bury(self, worker: WorkerProcess) -> tuple[Job, Answer] | None:
         """Replace a dead worker; the row of the item that ended it, unless that one is tried again."""
         error = worker.cause_of_death()
-        if not worker.ready or not worker.jobs:
-            raise error
-        job = worker.jobs.popleft()
-        job.tries += 1
+        job = worker.jobs.popleft() if worker.jobs else None
         self._replace(worker)
+        if job is None:
+            return None
+        job.tries += 1
         if isinstance(error, CrashError) and job.tries < 2:
             self._again.append([job])
             return None
@@ -100,7 +103,7 @@ class Pool:
         if worker.jobs:
             self._again.appendleft(list(worker.jobs))
         worker.end()
-        self._crew[self._crew.index(worker)] = WorkerProcess(self.task)
+        self._crew[self._crew.index(worker)] = WorkerProcess(self.task, self._nursery)
 
     def _feed(self) -> None:
         """Give every worker what it lacks, the one with the fewest jobs first."""

@@ -1,6 +1,6 @@
 """What a worker process does: receive units of work, answer each with rows, one after the other.
 
-The process is warm: libraries are loaded once. A unit that takes too long ends the process by an alarm signal
+A unit that takes too long ends the process by an alarm signal
 whose action is the system's own, so that code which never returns to Python is ended too; a unit that asks
 for too much memory fails to get it. Whatever native code writes to standard error while a unit is worked on
 goes to its rows.
@@ -9,6 +9,7 @@ goes to its rows.
 from __future__ import annotations
 
 import os
+import resource
 import signal
 import warnings
 from collections.abc import Callable, Iterator
@@ -18,47 +19,47 @@ from multiprocessing.connection import Connection
 from time import perf_counter
 from typing import TypeAlias
 
+from sitesym.crystals.spglib_finder import setting
 from sitesym.errors import SitesymError
 from sitesym.screening.columns import Row
 from sitesym.screening.contents import Structures
+from sitesym.screening.facts import facts_of
 from sitesym.screening.failures import failed_row, joined, too_much_memory
 from sitesym.screening.row import crystal_row
-from sitesym.screening.settings import Settings
 from sitesym.screening.task import MOST_WORDS, Answer, Task
 from sitesym.screening.work import WorkItem, content_hash, storable
 
 Reader: TypeAlias = Callable[[WorkItem], Structures]
 
 
-def main(descriptor: int) -> None:
-    """Work for the other end of a connection until it says None, or is gone."""
-    signal.signal(signal.SIGINT, signal.SIG_IGN)
+def prepared(task: Task) -> Reader:
+    """Load all that the first item would, so that its time is its own; the reader that the task names."""
+    module, _, function = task.reader.partition(":")
+    reader: Reader = getattr(import_module(module), function)
+    import_module("scipy.spatial")
+    if task.settings.finder != "spglib" or task.settings.ladder:
+        import_module("moyopy")
+    facts_of(setting(1), task.settings.properties)
+    return reader
+
+
+def work(connection: Connection, task: Task, reader: Reader) -> None:
+    """Receive lists of items and send one `Answer` for each, in order, until the other end is gone."""
     signal.signal(signal.SIGALRM, signal.SIG_DFL)
     # Each warning is shown each time: what an item's rows say must not depend on the items before it.
     warnings.simplefilter("always")
     warnings.simplefilter("ignore", DeprecationWarning)
     warnings.simplefilter("ignore", FutureWarning)
-    with Connection(descriptor) as connection:
-        try:
-            work(connection)
-        except (EOFError, BrokenPipeError, ConnectionResetError):
-            return
-
-
-def work(connection: Connection) -> None:
-    """Receive a `Task`, then lists of items; send "ready", then one `Answer` for each item, in order."""
-    task: Task = connection.recv()
-    module, _, function = task.reader.partition(":")
-    reader: Reader = getattr(import_module(module), function)
-    _load_libraries(task.settings)
     _limit_memory(task.limit_megabytes)
-    connection.send("ready")
-    while (items := connection.recv()) is not None:
-        for item in items:
-            answer = answered(item, task, reader)
-            connection.send(answer)
-            if answer.last:
-                return
+    try:
+        while True:
+            for item in connection.recv():
+                answer = answered(item, task, reader)
+                connection.send(answer)
+                if answer.last:
+                    return
+    except (EOFError, BrokenPipeError, ConnectionResetError):
+        return
 
 
 def answered(item: WorkItem, task: Task, reader: Reader) -> Answer:
@@ -121,17 +122,8 @@ def _words() -> str:
     return f"standard error: {text}" if text else ""
 
 
-def _load_libraries(settings: Settings) -> None:
-    """Import now what the first item would, so that its time is its own."""
-    import_module("scipy.spatial")
-    if settings.finder != "spglib" or settings.ladder:
-        import_module("moyopy")
-
-
 def _limit_memory(megabytes: float) -> None:
     """Refuse memory beyond what the process has now plus so much; only where the system tells what it has."""
-    import resource
-
     try:
         with open("/proc/self/statm", encoding="ascii") as stream:
             pages = int(stream.read().split()[0])
