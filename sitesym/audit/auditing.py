@@ -15,10 +15,10 @@ from sitesym.audit.messages import message
 from sitesym.audit.neumann import Subspaces, subspaces
 from sitesym.audit.own_symmetry import tensor_symmetry
 from sitesym.audit.result import AuditResult, Deviation, IndexFinding, Reading
-from sitesym.audit.search import Field, orientations, search
+from sitesym.audit.search import Field, orientations, search, stated_orientation
 from sitesym.audit.uncertainty import Noise, noise_of
 from sitesym.audit.variants import Variant, variants_of
-from sitesym.audit.verdicts import Finding, settle
+from sitesym.audit.verdicts import Finding, as_stated, explained
 from sitesym.errors import UsageError
 
 DEFAULT_NOISE = 0.01
@@ -50,8 +50,14 @@ def audit(
     trivial = _without_search(spaces, stated, level, index)
     if trivial is not None:
         return _bare(measurement, frames, spaces, noise, index, trivial)
+    axes = stated_orientation(measurement, frames)
+    if axes is not None:
+        field = search(measurement, frames, spaces, variants, (axes,), noise)
+        finding = as_stated(field)
+        if finding.verdict == "consistent" or not explain:
+            return _detailed(field, index, finding)
     field = search(measurement, frames, spaces, variants, orientations(measurement, frames), noise)
-    return _detailed(field, index, settle(field, explain))
+    return _detailed(field, index, explained(field))
 
 
 def _without_search(spaces: Subspaces, stated: Variant, level: Noise, index: IndexFinding) -> Finding | None:

@@ -124,15 +124,17 @@ class NamedTurn:
 
 @lru_cache(maxsize=1)
 def tried_turns() -> tuple[NamedTurn, ...]:
-    """No turn, the 23 others of the cube, turns by 30 and 60 degrees about x, y, z, by 45 degrees about z.
+    """No turn, then by angle: turns by 30 and 60 degrees about x, y, z, by 45 degrees about z, and
+    the 23 of the cube.
 
     They contain the permutations of axes, unique axis a, b or c, obverse against reverse (180 degrees about
     z).
     """
-    cube = sorted(PointGroup.from_symbol("432").rotations_cart, key=lambda m: -float(np.trace(m)))
+    cube = list(PointGroup.from_symbol("432").rotations_cart)
     finer = [_about(axis, angle) for axis in (2, 1, 0) for angle in range(30, 360, 30) if angle % 90]
     eighths = [_about(2, angle) for angle in (45, 135, 225, 315)]
-    return tuple(NamedTurn(frozen(matrix), turn_words(matrix)) for matrix in [*cube, *finer, *eighths])
+    by_angle = sorted([*cube, *finer, *eighths], key=lambda matrix: -round(float(np.trace(matrix)), 9))
+    return tuple(NamedTurn(frozen(matrix), turn_words(matrix)) for matrix in by_angle)
 
 
 def turn_words(matrix: FloatArray) -> str:

@@ -57,7 +57,8 @@ def _refined(spaces: Subspaces, coordinates: FloatArray, start: FloatArray, leng
         normal = slope.T @ slope
         damped = normal + damping * (np.diag(np.diag(normal)) + 1e-12 * length**2 * np.eye(3))
         # A turn that does not change the tensor makes the matrix singular: the shortest step leaves it out.
-        step = -np.linalg.lstsq(damped, slope.T @ vector, rcond=None)[0]
+        shortest = np.linalg.lstsq(damped, slope.T @ vector, rcond=None)[0]
+        step = np.asarray(-shortest, dtype=np.float64)
         trial = rotation_of(step) @ rotation
         trial_vector, trial_slope = _with_slope(spaces, trial, coordinates)
         if trial_vector @ trial_vector < vector @ vector:

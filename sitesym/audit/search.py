@@ -16,6 +16,7 @@ import numpy as np
 from sitesym.arrays import BoolArray, FloatArray, IntArray
 from sitesym.audit.frames import Frames, tried_turns
 from sitesym.audit.indexcheck import check_index_symmetry
+from sitesym.audit.layouts import orders_of
 from sitesym.audit.measurement import Measurement
 from sitesym.audit.neumann import (
     Subspaces,
@@ -87,6 +88,21 @@ class Candidate:
         if self.variant.layout not in ("matrix", "full"):
             parts.append(f"layout {self.variant.layout}")
         return ", ".join(parts + ([self.variant.factor] if self.variant.factor else []))
+
+
+def stated_orientation(measurement: Measurement, frames: Frames) -> Orientation | None:
+    """The axes as stated; None where something that a verdict needs is not stated.
+
+    That is the axes and, where the array has contracted pairs, their order.
+    """
+    if measurement.order is None and len(orders_of(measurement.kind, measurement.stated_layout)) > 1:
+        return None
+    if not isinstance(measurement.axes, str):
+        return Orientation("given", measurement.axes, 1, departs=False, is_plain=True, same_axes=())
+    if measurement.axes == "unknown":
+        return None
+    rotation = frames.named[measurement.axes]
+    return Orientation(measurement.axes, rotation, 1, departs=False, is_plain=True, same_axes=())
 
 
 def orientations(measurement: Measurement, frames: Frames) -> tuple[Orientation, ...]:

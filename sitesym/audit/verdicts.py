@@ -19,6 +19,7 @@ from sitesym.audit.search import (
     chance,
     judged_reading,
     residual_of,
+    stated_orientation,
     without_empty_factors,
 )
 from sitesym.audit.slips import Repair, repairs
@@ -41,30 +42,29 @@ class Finding:
     crystal: OtherCrystal | None = None
 
 
-def settle(field: Field, explain: bool) -> Finding:
-    """The verdict on a tensor that is long enough to be judged, in a crystal that constrains it."""
+def as_stated(field: Field) -> Finding:
+    """Whether a tensor obeys as stated: long enough to be judged, in a crystal that constrains it.
+
+    The first place of the field is the reading as stated.
+    """
     first = field.candidate(0, 0)
-    if not is_stated(field):
-        return _unstated(field)
     stated = judged_reading(field, first)
     if accepted(field, first):
         return Finding("consistent", "", stated, stated)
-    if not explain:
-        return Finding("violates", "unexplained", stated)
-    searched = without_empty_factors(field)
-    return replace(_explained(searched, candidates(searched)), stated=stated)
+    return Finding("violates", "unexplained", stated)
 
 
-def is_stated(field: Field) -> bool:
-    """Whether axes and, where the array has contracted pairs, their order were stated."""
-    measurement = field.measurement
-    ordered = measurement.order is not None or len({v.order for v in field.variants}) == 1
-    return ordered and not (isinstance(measurement.axes, str) and measurement.axes == "unknown")
+def explained(field: Field) -> Finding:
+    """What makes a tensor obey that fails as stated, or whose axes or order are not stated."""
+    field = without_empty_factors(field)
+    if stated_orientation(field.measurement, field.frames) is None:
+        return _unstated(field)
+    stated = judged_reading(field, field.candidate(0, 0))
+    return replace(_explained(field, candidates(field)), stated=stated)
 
 
 def _unstated(field: Field) -> Finding:
     """Readings that contradict nothing stated come first; several different ones leave the answer open."""
-    field = without_empty_factors(field)
     fits = candidates(field)
     compatible = [fit for fit in fits if not fit.departs]
     if not compatible or compatible[0].score > fits[0].score + RIVAL:
@@ -97,7 +97,7 @@ def _explained(field: Field, fits: list[Candidate]) -> Finding:
         near = tuple(s for s in slips[1:] if s.score <= slip_score + RIVAL)[:_MOST_SLIPS]
         return Finding("violates", "slip", None, slip, (*near, *readings[:1]), crystal)
     turned = _turned(field)
-    if turned is not None and turned.score <= min(EARNED, crystal_score):
+    if turned is not None and turned.score <= min(EARNED, crystal_score + RIVAL):
         return Finding("consistent-otherwise", "reading", None, turned, tuple(readings[:1]))
     rivals = (*readings[:1], *([turned] if turned is not None else []), *slips[:1])
     return Finding("violates", "unexplained" if crystal is None else "crystal", None, None, rivals, crystal)
