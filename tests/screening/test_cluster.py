@@ -27,7 +27,7 @@ from sitesym.screening.task import Job, Task
 
 SETTINGS = Settings(ladder=False, properties=("permittivity",))
 TASK = Task(SETTINGS, limit_seconds=60.0, limit_megabytes=4000.0, hashed=True)
-COUNT = 240
+COUNT = 160
 
 
 @pytest.fixture(scope="module")

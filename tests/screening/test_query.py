@@ -93,8 +93,16 @@ STATEMENTS = {
 }
 
 
+#: Characters with a meaning in SQL, in conditions or in terminals, and a few without.
+CHARACTERS = st.sampled_from("ab01 =<>!~'\"`;:-/*()[]%_,.?@$#\\\n\t\0é\u202e\U0001f48e")
+
+
 @settings(deadline=None, max_examples=60)
-@given(name=st.text(max_size=30), operator=st.sampled_from(list(OPERATORS)), value=st.text(max_size=40))
+@given(
+    name=st.text(CHARACTERS, max_size=30),
+    operator=st.sampled_from(list(OPERATORS)),
+    value=st.text(CHARACTERS, max_size=40),
+)
 def test_any_text_is_refused_or_bound_and_never_part_of_the_statement(
     name: str, operator: str, value: str
 ) -> None:
