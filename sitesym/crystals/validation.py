@@ -7,12 +7,14 @@ volume, atoms on top of each other. Occupancies are checked where a species is m
 from __future__ import annotations
 
 from collections.abc import Sequence
+from functools import lru_cache
 from math import hypot, prod
 from operator import mul
+from typing import Final
 
 import numpy as np
 
-from sitesym.arrays import FloatArray, IntArray
+from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.errors import (
     CountMismatchError,
     EmptyStructureError,
@@ -22,6 +24,9 @@ from sitesym.errors import (
     SingularCellError,
 )
 from sitesym.tolerances import LARGEST_CELL_EDGE_ANGSTROM, SMALLEST_DISTANCE_ANGSTROM
+
+#: Up to so many atoms all pairs are looked at, which takes less time than loading what sorts them in space.
+_FEW_ATOMS: Final = 200
 
 
 def check_structure(lattice: FloatArray, positions_frac: FloatArray, labels: Sequence[str]) -> None:
@@ -73,19 +78,32 @@ def close_pairs(
     The limit must be below half the spacings of the lattice planes: then two atoms have at most one such
     vector between their images, the one of smallest fractional components.
     """
-    from scipy.spatial import cKDTree
-
     wrapped: FloatArray = positions_frac - np.floor(positions_frac)
     wrapped[wrapped >= 1.0] = 0.0
-    # A vector this long in angstrom is at most this long in fractional coordinates.
-    radius = within_angstrom * hypot(*(1.0 / plane_spacings(lattice)).tolist())
-    pairs = cKDTree(wrapped, boxsize=1.0).query_pairs(radius, output_type="ndarray")
+    if len(wrapped) <= _FEW_ATOMS:
+        pairs = _all_pairs(len(wrapped))
+    else:
+        # A vector this long in angstrom is at most this long in fractional coordinates.
+        radius = within_angstrom * hypot(*(1.0 / plane_spacings(lattice)).tolist())
+        pairs = _near_in_fractions(wrapped, radius)
     if len(pairs) == 0:
         return pairs, np.zeros(0)
     difference = wrapped[pairs[:, 0]] - wrapped[pairs[:, 1]]
     distances = np.linalg.norm((difference - np.rint(difference)) @ lattice, axis=1)
     near = distances < within_angstrom
     return pairs[near], distances[near]
+
+
+@lru_cache(maxsize=_FEW_ATOMS + 1)
+def _all_pairs(count: int) -> IntArray:
+    return frozen(np.stack(np.triu_indices(count, 1), axis=1).astype(np.int64))
+
+
+def _near_in_fractions(wrapped: FloatArray, radius: float) -> IntArray:
+    from scipy.spatial import cKDTree
+
+    pairs: IntArray = cKDTree(wrapped, boxsize=1.0).query_pairs(radius, output_type="ndarray")
+    return pairs
 
 
 def closest_pair(

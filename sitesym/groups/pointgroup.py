@@ -194,7 +194,9 @@ class PointGroup:
     @property
     def _is_grey(self) -> bool:
         """Whether time reversal by itself is an element, so that every rotation part occurs twice."""
-        return any(not e.improper and e.order == 1 and e.time_reversal for e in self.elements)
+        return bool(self.time_reversal.any()) and any(
+            not e.improper and e.order == 1 and e.time_reversal for e in self.elements
+        )
 
     @property
     def has_inversion(self) -> bool:

@@ -36,7 +36,6 @@ def prepared(task: Task) -> Reader:
     """Load all that the first item would, so that its time is its own; the reader that the task names."""
     module, _, function = task.reader.partition(":")
     reader: Reader = getattr(import_module(module), function)
-    import_module("scipy.spatial")
     if task.settings.finder != "spglib" or task.settings.ladder:
         import_module("moyopy")
     facts_of(setting(1), task.settings.properties)
