@@ -1,8 +1,8 @@
 """Published sets of constants obey their class.
 
 The relations here are typed from J. F. Nye, Physical Properties of Crystals (1957), tables 10, 11 and
-appendix E, independent of the program. Stiffness GPa, compliance 1e-12/Pa, d pC/N, e C/m2, permittivity relative
-to vacuum; axes IEEE Std 176-1978 except the first set. 'Memory' marks values quoted from memory.
+appendix E, independent of the program. Stiffness GPa, compliance 1e-12/Pa, d pC/N, e C/m2, permittivity
+relative to vacuum; axes IEEE Std 176-1978 except the first set. 'Memory' marks values quoted from memory.
 """
 
 from __future__ import annotations
