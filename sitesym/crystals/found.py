@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
 from itertools import combinations
@@ -9,7 +10,6 @@ from itertools import combinations
 import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray, frozen
-from sitesym.crystals.crystal import Crystal
 
 
 @dataclass(frozen=True, eq=False)
@@ -67,7 +67,8 @@ class FoundSymmetry:
     """Answer of a symmetry finder for n atoms.
 
     ``transformation`` P (3, 3) and ``origin_shift`` p (3,): x_conventional = P x_file + p (modulo 1).
-    ``conventional_positions`` (n, 3): idealised position of each file atom in the conventional cell.
+    ``ideal_positions`` gives (n, 3) an idealised position of each file atom in the conventional cell, modulo
+    translations of the lattice; ``positions_frac`` (n, 3) are the atoms as read.
     ``orbits`` (n,): equal for atoms related by the space group, translations of a supercell included.
     ``primitive_atoms`` (n,): equal for atoms related by a lattice translation, numbered from 0.
     ``multiplicities`` (n,): atoms of the orbit in the conventional cell. ``wyckoffs`` and ``site_symbols``:
@@ -78,7 +79,8 @@ class FoundSymmetry:
     setting: SpaceGroupSetting
     transformation: FloatArray
     origin_shift: FloatArray
-    conventional_positions: FloatArray
+    positions_frac: FloatArray
+    ideal_positions: Callable[[], FloatArray]
     orbits: IntArray
     primitive_atoms: IntArray
     multiplicities: IntArray
@@ -88,24 +90,15 @@ class FoundSymmetry:
     tolerance_used_angstrom: float
     messages: tuple[str, ...] = ()
 
-
-def nearest_copies(
-    crystal: Crystal,
-    setting: SpaceGroupSetting,
-    transformation: FloatArray,
-    origin_shift: FloatArray,
-    ideal: FloatArray,
-) -> FloatArray:
-    """(n, 3): of the copies of each idealised position under lattice translations, the one at the atom.
-
-    ``ideal`` (n, 3): an idealised position of each file atom in the conventional cell, modulo any translation
-    of the lattice, centring included.
-    """
-    measured = crystal.positions_frac @ transformation.T + origin_shift
-    basis = setting.primitive_basis
-    steps = (ideal - measured) @ np.linalg.inv(basis)
-    steps -= np.rint(steps)
-    return frozen(measured + steps @ basis)
+    @cached_property
+    def conventional_positions(self) -> FloatArray:
+        """(n, 3): idealised position of each file atom in the conventional cell, of all its copies the one at
+        the atom."""
+        measured = self.positions_frac @ self.transformation.T + self.origin_shift
+        basis = self.setting.primitive_basis
+        steps = (self.ideal_positions() - measured) @ np.linalg.inv(basis)
+        steps -= np.rint(steps)
+        return frozen(measured + steps @ basis)
 
 
 def orbit_multiplicities(orbits: IntArray, primitive_atoms: IntArray, setting: SpaceGroupSetting) -> IntArray:

@@ -17,7 +17,7 @@ import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.crystals.crystal import Crystal
-from sitesym.crystals.found import FoundSymmetry, nearest_copies, orbit_multiplicities
+from sitesym.crystals.found import FoundSymmetry, orbit_multiplicities
 from sitesym.crystals.spglib_finder import setting
 from sitesym.errors import SymmetryNotFoundError
 
@@ -32,15 +32,20 @@ def find_with_moyo(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmetry
     # moyo gives the way back: x_file = linear x_conventional + shift, and the same for its primitive cell.
     transformation = np.linalg.inv(dataset.std_linear)
     origin_shift = -transformation @ dataset.std_origin_shift
-    primitive = np.array(dataset.prim_std_cell.positions) @ np.transpose(dataset.prim_std_linear)
-    ideal = (primitive + dataset.prim_std_origin_shift) @ transformation.T + origin_shift
     primitive_atoms = np.array(dataset.mapping_std_prim, dtype=np.int64)
     orbits = np.array(dataset.orbits, dtype=np.int64)
+
+    def ideal_positions() -> FloatArray:
+        primitive = np.array(dataset.prim_std_cell.positions) @ np.transpose(dataset.prim_std_linear)
+        shifted: FloatArray = (primitive + dataset.prim_std_origin_shift) @ transformation.T + origin_shift
+        return shifted[primitive_atoms]
+
     return FoundSymmetry(
         found,
         frozen(transformation),
         frozen(origin_shift),
-        nearest_copies(crystal, found, transformation, origin_shift, ideal[primitive_atoms]),
+        crystal.positions_frac,
+        ideal_positions,
         frozen(orbits),
         frozen(primitive_atoms),
         orbit_multiplicities(orbits, primitive_atoms, found),

@@ -14,12 +14,7 @@ import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.crystals.crystal import Crystal
-from sitesym.crystals.found import (
-    FoundSymmetry,
-    SpaceGroupSetting,
-    nearest_copies,
-    orbit_multiplicities,
-)
+from sitesym.crystals.found import FoundSymmetry, SpaceGroupSetting, orbit_multiplicities
 from sitesym.errors import SymmetryNotFoundError
 
 _ANGLE_TOLERANCE = -1.0
@@ -32,15 +27,20 @@ def find_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmet
     transformation = np.asarray(dataset.transformation_matrix, dtype=np.float64)
     origin_shift = np.asarray(dataset.origin_shift, dtype=np.float64)
     primitive_atoms = np.asarray(dataset.mapping_to_primitive, dtype=np.int64)
-    # Of each atom of the primitive cell one standardised position; the others are copies of it.
-    ideal = np.zeros((int(primitive_atoms.max()) + 1, 3))
-    ideal[dataset.std_mapping_to_primitive] = dataset.std_positions
     orbits = np.asarray(dataset.crystallographic_orbits, dtype=np.int64)
+
+    def ideal_positions() -> FloatArray:
+        # Of each atom of the primitive cell one standardised position; the others are copies of it.
+        ideal = np.zeros((int(primitive_atoms.max()) + 1, 3))
+        ideal[dataset.std_mapping_to_primitive] = dataset.std_positions
+        return ideal[primitive_atoms]
+
     return FoundSymmetry(
         found,
         frozen(transformation),
         frozen(origin_shift),
-        nearest_copies(crystal, found, transformation, origin_shift, ideal[primitive_atoms]),
+        crystal.positions_frac,
+        ideal_positions,
         frozen(orbits),
         frozen(primitive_atoms),
         orbit_multiplicities(orbits, primitive_atoms, found),

@@ -54,14 +54,12 @@ def _facts(rotation_bytes: bytes, properties: tuple[str, ...]) -> GroupFacts:
     return GroupFacts(cells, frozen(group.polar_directions @ np.linalg.inv(lattice)))
 
 
-def polar_text(facts: GroupFacts, lattice: FloatArray) -> str | None:
-    """The polar directions in Cartesian axes of the conventional cell ``lattice`` (rows); None for none.
+def polar_text(facts: GroupFacts, lattice: FloatArray) -> str:
+    """The polar directions, of which there is one, in the Cartesian axes of the conventional cell (rows).
 
     The sense of an axis is open: its last component that is not zero is printed positive.
     """
     directions = facts.polar_directions_frac @ lattice
-    if len(directions) == 0:
-        return None
     if len(directions) == 3:
         return "any direction"
     if len(directions) == 2:

@@ -11,7 +11,7 @@ from sitesym.crystals.reliability import examined_symmetry
 from sitesym.crystals.symmetry import CrystalSymmetry
 from sitesym.errors import SymmetryError
 from sitesym.screening.columns import Row
-from sitesym.screening.facts import chirality, facts_of, polar_text
+from sitesym.screening.facts import GroupFacts, chirality, facts_of, polar_text
 from sitesym.screening.failures import blank_row, joined
 from sitesym.screening.settings import Settings
 from sitesym.screening.verdicts import reliability_columns, reliability_remarks
@@ -27,10 +27,14 @@ def crystal_row(item: WorkItem, name: str, crystal: Crystal, settings: Settings)
     row = blank_row(item, name, settings)
     row |= _identification(symmetry)
     facts = facts_of(symmetry.setting, settings.properties)
-    row |= facts.cells | {"polar_axis": polar_text(facts, symmetry.measured_lattice)}
+    row |= facts.cells | {"polar_axis": _polar_axis(facts, symmetry)}
     row |= _sites(symmetry.found)
     row |= reliability_columns(symmetry.reliability)
     return row | {"remarks": joined(_remarks(symmetry)), "status": "ok"}
+
+
+def _polar_axis(facts: GroupFacts, symmetry: CrystalSymmetry) -> str | None:
+    return polar_text(facts, symmetry.measured_lattice) if len(facts.polar_directions_frac) else None
 
 
 def _identification(symmetry: CrystalSymmetry) -> Row:

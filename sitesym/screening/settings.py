@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from dataclasses import dataclass
+from functools import cached_property
 from hashlib import blake2b
 from importlib.metadata import PackageNotFoundError, version
 from math import isfinite
@@ -28,7 +29,7 @@ class Settings:
     ladder: bool = True
     properties: tuple[str, ...] = DEFAULT_PROPERTIES
 
-    @property
+    @cached_property
     def columns(self) -> tuple[Column, ...]:
         """The columns of a row, in order."""
         return columns_for(self.properties)

@@ -13,7 +13,6 @@ import resource
 import signal
 import warnings
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
 from importlib import import_module
 from multiprocessing.connection import Connection
 from time import perf_counter
@@ -65,8 +64,9 @@ def answered(item: WorkItem, task: Task, reader: Reader) -> Answer:
     """Rows of an item; whatever goes wrong is a row."""
     digest, rows = "", list[Row]()
     try:
-        with _alarm(task.limit_seconds):
-            digest = content_hash(item) if task.hashed else ""
+        if task.hashed:
+            _set_alarm(task.limit_seconds)
+            digest = content_hash(item)
         rows.extend(_rows(item, task, reader))
         return Answer(tuple(rows), digest)
     except SitesymError as error:
@@ -83,9 +83,10 @@ def answered(item: WorkItem, task: Task, reader: Reader) -> Answer:
 def _rows(item: WorkItem, task: Task, reader: Reader) -> Iterator[Row]:
     """A row for each structure of an item; limits and times are those of one structure."""
     structures = iter(reader(item))
-    while True:
-        start = perf_counter()
-        with _alarm(task.limit_seconds):
+    try:
+        while True:
+            start = perf_counter()
+            _set_alarm(task.limit_seconds)
             named = next(structures, None)
             if named is None:
                 return
@@ -96,19 +97,17 @@ def _rows(item: WorkItem, task: Task, reader: Reader) -> Iterator[Row]:
                 row = crystal_row(item, name, crystal, task.settings)
             except SitesymError as error:
                 row = failed_row(item, name, error, task.settings)
-        row["remarks"] = joined((str(row["remarks"] or ""), _words()))
-        row["seconds"] = round(perf_counter() - start, 6)
-        yield row
-
-
-@contextmanager
-def _alarm(seconds: float) -> Iterator[None]:
-    """End the process, Python or not, when the block takes longer."""
-    signal.setitimer(signal.ITIMER_REAL, seconds)
-    try:
-        yield
+            if words := _words():
+                row["remarks"] = joined((str(row["remarks"] or ""), words))
+            row["seconds"] = round(perf_counter() - start, 6)
+            yield row
     finally:
-        signal.setitimer(signal.ITIMER_REAL, 0.0)
+        _set_alarm(0.0)
+
+
+def _set_alarm(seconds: float) -> None:
+    """End the process after so long, whether it is in Python or not; 0 for never."""
+    signal.setitimer(signal.ITIMER_REAL, seconds)
 
 
 def _words() -> str:

@@ -24,7 +24,7 @@ def file_items(path: str, identity: str) -> Iterator[WorkItem]:
             return database_items(path, identity)
         if file_format == "extxyz":
             return frame_items(path, identity)
-    return iter((WorkItem.of_path(path, identity, size_bytes=_size(path)),))
+    return iter((WorkItem.of_path(path, identity, file_format or "", _size(path)),))
 
 
 def _size(path: str) -> int:
