@@ -65,7 +65,8 @@ class Pool:
         self._jobs = jobs
         # The first jobs are looked for while the libraries of the workers are being loaded.
         self._next = self._fresh()
-        self._crew = self._crew or [WorkerProcess(self.task, self._nursery) for _ in range(self._workers)]
+        while len(self._crew) < self._workers:
+            self._crew.append(WorkerProcess(self.task, self._nursery))
         self._feed()
         while any(worker.jobs for worker in self._crew):
             listening = {worker.connection.fileno(): worker for worker in self._crew}

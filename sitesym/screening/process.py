@@ -29,8 +29,14 @@ class WorkerProcess:
         self.connection, other = Pipe()
         # Appending, so that the worker may cut the file and go on writing at its start.
         self._words = tempfile.TemporaryFile(mode="ab+")  # noqa: SIM115  closed in `end`
-        self._number: int | None = nursery.worker(other, self._words.fileno())
-        other.close()
+        self._number: int | None = None
+        try:
+            self._number = nursery.worker(other, self._words.fileno())
+        except ScreeningError:
+            self.end()
+            raise
+        finally:
+            other.close()
 
     def give(self, jobs: list[Job]) -> None:
         """Add jobs to those of the process; one that has died will be noticed on listening."""
