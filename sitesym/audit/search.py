@@ -216,12 +216,7 @@ def search(
     allowed = spaces.allowed @ moved
     lengths = np.linalg.norm(coordinates, axis=0)
     residuals = np.linalg.norm(moved - spaces.allowed.T @ allowed, axis=1)
-    tolerances = np.array(
-        [
-            noise_of(measurement, v.layout, v.order, v.divisors, noise).tolerance(spaces, float(length))
-            for v, length in zip(variants, lengths, strict=True)
-        ]
-    )
+    tolerances = _tolerances(measurement, spaces, variants, lengths, noise)
     relative = residuals / lengths
     typical = float(np.sqrt((relative**2).mean()))
     numbers = np.outer([o.choices for o in choices], [v.choices for v in variants])
@@ -242,25 +237,42 @@ def search(
     )
 
 
+def _tolerances(
+    measurement: Measurement,
+    spaces: Subspaces,
+    variants: Sequence[Variant],
+    lengths: FloatArray,
+    noise: float,
+) -> FloatArray:
+    """Largest residual that noise may leave in each variant, shape (variants,)."""
+    levels = (noise_of(measurement, v.layout, v.order, v.divisors, noise) for v in variants)
+    if measurement.sigma is None and measurement.rounding is None:
+        # Noise that is relative to the tensor is the same for every way to read it.
+        return next(levels).tolerance(spaces, 1.0) * lengths
+    return np.array([n.tolerance(spaces, float(x)) for n, x in zip(levels, lengths, strict=True)])
+
+
 def without_empty_factors(field: Field) -> Field:
     """The field without variants whose factor explains nothing.
 
     A factor that halves an entry halves what is wrong with it too. So the best allowed tensor is fitted to
     the numbers as given, before they are divided, and must leave less than half of what is left without the
-    factor.
+    factor. Where a reading fits without a factor, or much better than with one, none is tried.
     """
-    residuals = field.residuals.copy()
     plain = {(v.order, v.layout): n for n, v in enumerate(field.variants) if not v.factor}
-    for place, number in np.argwhere(field.residuals <= field.tolerances).tolist():
+    without = np.array([plain[v.order, v.layout] for v in field.variants])
+    factors = without != np.arange(len(without))
+    fits = field.residuals <= field.tolerances
+    best = field.scores[fits & ~factors].min(initial=np.inf)
+    empty = factors & (fits[:, without] | (field.scores > best + RIVAL))
+    residuals = np.where(empty, np.inf, field.residuals)
+    for place, number in np.argwhere((residuals <= field.tolerances) & factors).tolist():
         variant = field.variants[number]
-        if not variant.factor:
-            continue
         to_standard = field.frames.standard_from_file @ field.orientations[place].rotation.T
         design = field.spaces.space.rotated(to_standard.T[None], field.spaces.allowed.T)[0]
         design, target = design * variant.divisors[:, None], variant.coordinates * variant.divisors
         rest = target - design @ np.linalg.lstsq(design, target, rcond=None)[0]
-        before = field.residuals[place, plain[variant.order, variant.layout]]
-        if np.linalg.norm(rest) > _EXPLAINED * before:
+        if np.linalg.norm(rest) > _EXPLAINED * field.residuals[place, without[number]]:
             residuals[place, number] = np.inf
     return replace(field, residuals=residuals)
 

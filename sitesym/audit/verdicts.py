@@ -28,6 +28,8 @@ from sitesym.audit.turns import smallest_turn, turn_of
 #: A reading is preferred to a slip unless the slip is this much (in the logarithm) more likely.
 _PREFERENCE = 1.0
 _MOST_SLIPS = 6
+#: Chance finds the like of such a reading less than once in 10^8 searches.
+_BEYOND_DOUBT = -20.0
 
 
 @dataclass(frozen=True, eq=False)
@@ -84,6 +86,9 @@ def _explained(field: Field, fits: list[Candidate]) -> Finding:
     if not field.spaces.independent:
         return Finding("violates", "crystal", crystal=other_crystal(field))
     readings = [judged_reading(field, fit) for fit in fits]
+    near = tuple(r for r in readings[1:] if r.score <= readings[0].score + RIVAL)
+    if readings and _is_beyond_doubt(readings[0]):
+        return Finding("consistent-otherwise", "reading", None, readings[0], near)
     slips, crystal = _slips(field), _earned_crystal(field)
     slip = slips[0] if slips and slips[0].score <= EARNED else None
     crystal_score = np.inf if crystal is None else crystal.score
@@ -91,16 +96,21 @@ def _explained(field: Field, fits: list[Candidate]) -> Finding:
     # A tensor that shows more symmetry than this crystal asks for is no evidence against it.
     against = crystal_score if crystal is not None and crystal.is_lower else np.inf
     if readings and readings[0].score <= min(EARNED, slip_score + _PREFERENCE, against + RIVAL):
-        near = tuple(r for r in readings[1:] if r.score <= readings[0].score + RIVAL)
         return Finding("consistent-otherwise", "reading", None, readings[0], near)
     if slip is not None and slip_score < crystal_score:
-        near = tuple(s for s in slips[1:] if s.score <= slip_score + RIVAL)[:_MOST_SLIPS]
-        return Finding("violates", "slip", None, slip, (*near, *readings[:1]), crystal)
+        alike = tuple(s for s in slips[1:] if s.score <= slip_score + RIVAL)[:_MOST_SLIPS]
+        return Finding("violates", "slip", None, slip, (*alike, *readings[:1]), crystal)
     turned = _turned(field)
     if turned is not None and turned.score <= min(EARNED, crystal_score + RIVAL):
         return Finding("consistent-otherwise", "reading", None, turned, tuple(readings[:1]))
     rivals = (*readings[:1], *([turned] if turned is not None else []), *slips[:1])
     return Finding("violates", "unexplained" if crystal is None else "crystal", None, None, rivals, crystal)
+
+
+def _is_beyond_doubt(reading: Reading) -> bool:
+    """Whether a reading fits so far below the noise that nothing else need be tried."""
+    residual = reading.residual
+    return reading.score <= _BEYOND_DOUBT and residual.absolute <= 0.1 * residual.tolerance
 
 
 def _earned_crystal(field: Field) -> OtherCrystal | None:
