@@ -6,9 +6,10 @@ CIF goes through gemmi, POSCAR is read here, all else goes through ASE.
 from __future__ import annotations
 
 import os
+import re
 from collections.abc import Callable, Iterable, Iterator
 from contextlib import contextmanager
-from fnmatch import fnmatch
+from fnmatch import translate
 from functools import partial
 from pathlib import Path
 from typing import Final, TypeAlias, TypedDict, Unpack
@@ -51,6 +52,7 @@ FILE_NAMES: Final = (
     ("*.cube", "cube"),
 )
 FORMATS: Final = tuple(dict.fromkeys(name for _, name in FILE_NAMES))
+_NAME_MATCHERS: Final = tuple((re.compile(translate(pattern)).match, name) for pattern, name in FILE_NAMES)
 
 
 class ReadingChoices(TypedDict, total=False):
@@ -235,4 +237,4 @@ def named_format(path: str | os.PathLike[str]) -> str | None:
     A suffix of compression (.gz, .xz, .zst) is left out of account.
     """
     name = content_name(Path(path)).lower()
-    return next((file_format for pattern, file_format in FILE_NAMES if fnmatch(name, pattern)), None)
+    return next((file_format for matches, file_format in _NAME_MATCHERS if matches(name)), None)
