@@ -54,7 +54,7 @@ def _violates(finding: Finding, index: IndexFinding) -> tuple[str, str]:
     )
     match finding.cause:
         case "slip" if finding.best is not None and finding.best.slip is not None:
-            return f"{stated}; {slip_words(finding.best.slip)}", (
+            return f"{stated}; {_slips(finding, finding.best.slip)}", (
                 "look the entry up at the source; until it is corrected do not use the tensor"
             )
         case "crystal" if finding.crystal is not None:
@@ -104,6 +104,12 @@ _LINES = {
     "cannot-tell": _cannot_tell,
     "no-constraint": _no_constraint,
 }
+
+
+def _slips(finding: Finding, likeliest: Slip) -> str:
+    """The likeliest slip, and those that explain the values as well."""
+    others = [slip_words(rival.slip) for rival in finding.rivals if rival.slip is not None]
+    return ", or ".join([slip_words(likeliest), *others[:2]])
 
 
 def slip_words(slip: Slip) -> str:
