@@ -53,7 +53,7 @@ def screen_text(document: Document) -> str:
     """The table of structures, the failures with their reasons, and the counts."""
     rows = document["rows"]
     facts = [
-        labelled("structures", ", ".join(document["inputs"])),
+        labelled("inputs", ", ".join(document["inputs"])),
         labelled("tolerance", _tolerance(document)),
     ]
     blocks = ["\n".join(facts)]

@@ -6,6 +6,7 @@ it is safe. It knows how its children have ended, and ends itself when the calli
 
 from __future__ import annotations
 
+import gc
 import os
 import signal
 import subprocess
@@ -112,6 +113,8 @@ def main(descriptor: int) -> None:
         # Imported here, in the process that forks, and not by the program that starts it.
         worker = import_module("sitesym.screening.worker")
         reader = worker.prepared(task)
+        # What is loaded stays: workers need not look through it for garbage.
+        gc.freeze()
         connection.send(True)
         while True:
             try:
