@@ -122,35 +122,33 @@ def _axes_error(what: str, value: str) -> AxesError:
 def _lattice_wishes(symmetry: CrystalSymmetry) -> tuple[FloatArray, str]:
     """Directions (rows X, Y, Z) that the lattice rules of the standard ask for, and the note that says so."""
     group, lattice = symmetry.point_group, symmetry.conventional_lattice
+    ordered = lattice[:0]
     match group.system:
         case "triclinic":
-            wishes, rule = (
-                _from_cell(_triclinic_cell(lattice)),
-                "reduced cell with c < a < b, alpha and beta obtuse, Z || c, Y normal to (010)",
-            )
+            cell = _triclinic_cell(lattice)
+            wishes, ordered = _from_cell(cell), np.array(cell)
+            rule = "reduced cell with c < a < b, alpha and beta obtuse, Z || c, Y normal to (010)"
         case "monoclinic":
-            unique = _unique_axis(symmetry)
-            wishes, rule = (
-                _from_cell(_monoclinic_cell(lattice, unique)),
-                "unique axis || Y, shortest c < a across it, beta obtuse, Z || c",
-            )
+            cell = _monoclinic_cell(lattice, _unique_axis(symmetry))
+            wishes, ordered = _from_cell(cell), np.array(cell)[[0, 2]]
+            rule = "unique axis || Y, shortest c < a across it, beta obtuse, Z || c"
         case "orthorhombic" if group.symbol == "mm2":
             wishes, rule = _mm2_wishes(lattice, group.polar_directions[0]), "twofold axis || Z, then a < b"
+            ordered = wishes[:2]
         case "orthorhombic":
             order = np.argsort(np.linalg.norm(lattice, axis=1), kind="stable")
             wishes, rule = _right_handed(lattice[order[[1, 2, 0]]]), "c < a < b, X || a, Y || b, Z || c"
+            ordered = lattice
         case "cubic":
             wishes, rule = lattice, "X, Y, Z || a, b, c"
         case _:
             wishes, rule = _lattice_frame(lattice), "main axis || Z; X as the operations fix it, else || a"
-    return wishes, f"{rule}; {_SENSE_NOTE}{_equal_length_note(symmetry)}"
+    return wishes, f"{rule}; {_SENSE_NOTE}{_equal_length_note(ordered)}"
 
 
-def _equal_length_note(symmetry: CrystalSymmetry) -> str:
-    """A warning where the rules order lengths that are equal."""
-    if symmetry.point_group.system != "orthorhombic":
-        return ""
-    lengths = sorted(np.linalg.norm(symmetry.conventional_lattice, axis=1))
+def _equal_length_note(ordered: FloatArray) -> str:
+    """A warning where cell vectors (rows) that the rules order by length are equally long."""
+    lengths = sorted(np.linalg.norm(ordered, axis=1))
     if any(longer - shorter < _EQUAL_LENGTHS * longer for shorter, longer in pairwise(lengths)):
         return "; two cell edges are equal within 0.01 %, so their order is open"
     return ""

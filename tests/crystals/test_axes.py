@@ -150,6 +150,18 @@ def test_equal_edges_of_an_orthorhombic_cell_are_said_to_leave_the_order_open(st
     assert axes_for(symmetry, "ieee").edition == "IEEE Std 176-1978"
 
 
+def test_only_edges_that_the_rules_order_are_compared():
+    four = np.array([[0.1, 0.2, 0.3], [0.9, 0.8, 0.3], [0.1, 0.8, 0.3], [0.9, 0.2, 0.3]])
+    polar = Crystal.from_tuple((np.diag([5.0, 6.0, 5.0]), [*four, [0.0, 0.0, 0.75]], [8] * 4 + [22]))
+    assert find_symmetry(polar).point_group.symbol == "mm2"
+    assert "order is open" not in axes_for(find_symmetry(polar), "ieee").note
+    skew = np.array([[5.0, 0, 0], [0, 6.0, 0], [5 * np.cos(1.7), 0, 5 * np.sin(1.7)]])
+    places = [[0.1, 0.2, 0.3], [-0.1, 0.2, -0.3], [0.23, 0.61, 0.41], [-0.23, 0.61, -0.41]]
+    monoclinic = find_symmetry(Crystal.from_tuple((skew, places, [13, 13, 15, 15])))
+    assert monoclinic.point_group.symbol == "2"
+    assert "order is open" in axes_for(monoclinic, "ieee").note
+
+
 def test_file_axes_are_the_files_and_say_where_they_come_from(structures):
     cif = axes_for(find_symmetry(read_crystal(structures / "quartz_SiO2.cif")), "file")
     vasp = axes_for(find_symmetry(read_crystal(structures / "quartz_SiO2.vasp")), "file")
