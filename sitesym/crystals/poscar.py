@@ -48,7 +48,7 @@ def read_poscar(text: str, file: str) -> Crystal:
     factor = _factor(scales, lattice)
     symbols, counts = _symbols(lines[5]), _counts(lines[6], lines[5])
     start = 8 if lines[7].strip()[:1].lower() == "s" else 7
-    style = lines[start].strip()[:1].lower() if len(lines) > start else ""
+    style = _style(lines[start] if len(lines) > start else "")
     rows = lines[start + 1 : start + 1 + sum(counts)]
     if len(rows) < sum(counts):
         _count_mismatch(f"{len(rows)} lines of coordinates for {sum(counts)} atoms")
@@ -129,6 +129,19 @@ def _counts(line: str, symbols_line: str) -> list[int]:
             "the structure has no atoms", line.strip(), "a crystal has at least one atom", "correct line 7"
         )
     return counts
+
+
+def _style(line: str) -> str:
+    """First letter of the line before the coordinates; c and k mean Cartesian, any other letter Direct."""
+    style = line.strip()[:1].lower()
+    if not style.isalpha():
+        raise ReadingError(
+            "the POSCAR does not say what its coordinates are",
+            f"'{line.strip()}' stands before the coordinates",
+            "a line Direct or Cartesian follows the counts",
+            "insert the line",
+        )
+    return style
 
 
 def _numbers(lines: list[str], count: int, what: str) -> FloatArray:

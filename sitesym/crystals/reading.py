@@ -120,6 +120,10 @@ def read_each(
 def _parts(path: str | os.PathLike[str], file_format: str | None, choices: ReadingChoices) -> list[Part]:
     location = Path(path)
     with _errors_of(path):
+        if location.is_dir():
+            raise ReadingError(
+                "this is a folder", location.name, "one structure file", "name a file, or screen the folder"
+            )
         if not location.is_file():
             raise ReadingError(
                 "there is no such file", location.name, "a path to a structure file", "look at the path"

@@ -82,6 +82,8 @@ def test_exponents_with_d_checksums_and_deuterium_are_read():
         ({"symbols": "?"}, ROWS, "unreadable"),
         ({"symbols": ""}, ROWS, "unreadable"),
         ({"symbols": "Ti"}, ROWS, "count-mismatch"),
+        ({"style": "0.25 0.25 0.25"}, ROWS, "unreadable"),
+        ({"style": ""}, ROWS, "unreadable"),
         ({"counts": "1 x"}, ROWS, "count-mismatch"),
         ({"counts": "-1 2"}, ROWS, "count-mismatch"),
         ({"counts": "0 0"}, ROWS, "empty"),

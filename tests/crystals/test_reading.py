@@ -157,3 +157,10 @@ def test_the_broken_demo_file_overlaps(structures):
     with pytest.raises(ReadingError) as caught:
         read_crystal(broken)
     assert caught.value.code == "overlap"
+
+
+def test_a_folder_and_a_missing_file_are_told_apart(tmp_path):
+    with pytest.raises(ReadingError, match="this is a folder"):
+        read_crystal(tmp_path)
+    with pytest.raises(ReadingError, match="there is no such file"):
+        read_crystal(tmp_path / "none.cif")
