@@ -27,17 +27,30 @@ def allowed_document(
     ``group`` stands in the axes of the answer (``group.rotated(R)``); ``axes`` has name, edition, note and
     rotation_from_file, ``crystal`` and ``site`` what the answer refers to, or None.
     """
+    asked = list(kinds)
     return {
         "schema": SCHEMA,
         "group": group_entry(group),
         "crystal": dict(crystal) if crystal is not None else None,
         "site": dict(site) if site is not None else None,
         "axes": dict(axes),
-        "properties": [property_entry(kind, group) for kind in kinds],
-        "remarks": list(remarks),
+        "properties": [property_entry(kind, group) for kind in asked],
+        "remarks": [*remarks, *_time_remarks(asked, group)],
         "versions": library_versions(),
         "caution": CAUTION,
     }
+
+
+def _time_remarks(kinds: Iterable[TensorKind], group: PointGroup) -> list[str]:
+    """What a form of a kind odd under time reversal stands for in a group without any time reversal."""
+    odd = [kind.name for kind in kinds if kind.time_odd]
+    if not odd or group.time_reversal.any():
+        return []
+    return [
+        f"odd under time reversal: {', '.join(odd)}. The form is that of a magnetically ordered crystal "
+        "whose magnetic point group is this one, without time reversal; where there is no magnetic order, "
+        "every component is zero"
+    ]
 
 
 def group_entry(group: PointGroup) -> dict[str, Any]:

@@ -17,6 +17,7 @@ _LATEX = {
     "\\": r"\textbackslash{}", "{": r"\{", "}": r"\}", "$": r"\$", "&": r"\&", "#": r"\#", "_": r"\_",
     "%": r"\%",
     "~": r"\textasciitilde{}", "^": r"\textasciicircum{}", "<": r"\textless{}", ">": r"\textgreater{}",
+    "|": r"\textbar{}",
 }  # fmt: skip
 _MARKDOWN = str.maketrans({character: "\\" + character for character in "\\|*_`<>[]#"})
 

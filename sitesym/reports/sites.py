@@ -124,6 +124,6 @@ def _axis_entry(axis: SiteAxis) -> dict[str, Any]:
         "name": axis.symbol,
         "order": axis.order,
         "improper": axis.improper,
-        "direction_file": axis.direction_file.tolist(),
+        "direction_file": (axis.direction_file + 0.0).tolist(),  # adding zero turns -0.0 into 0.0
         "direction_lattice": axis.direction_lattice,
     }

@@ -6,11 +6,15 @@ import csv
 import io
 from typing import Any
 
+import numpy as np
 import pytest
 
+from sitesym.groups import PointGroup
+from sitesym.reports.allowed import allowed_document
 from sitesym.reports.component_matrix import component_matrix, relations
 from sitesym.reports.expressions import combination, latex_combination, latex_namer, text_namer
 from sitesym.reports.render import render
+from sitesym.tensors import kind, kind_from_jahn
 
 Document = dict[str, Any]
 
@@ -132,3 +136,13 @@ def test_markdown_has_a_head_for_every_column(allowed: Document) -> None:
 def test_a_combination_is_written_over_one_denominator(terms: dict[str, str], text: str, latex: str) -> None:
     assert combination(terms, text_namer("d")) == text
     assert latex_combination(terms, latex_namer("d")) == latex
+
+
+def test_a_kind_odd_under_time_reversal_says_what_its_form_stands_for() -> None:
+    axes = {"name": "lattice", "edition": None, "note": "", "rotation_from_file": np.eye(3).tolist()}
+    group = PointGroup.from_symbol("32")
+    odd = allowed_document(group, [kind_from_jahn("aeV[V2]"), kind("permittivity")], axes)
+    assert len(odd["remarks"]) == 1
+    assert "magnetic order" in odd["remarks"][0]
+    assert "permittivity" not in odd["remarks"][0]
+    assert allowed_document(group, [kind("permittivity")], axes)["remarks"] == []
