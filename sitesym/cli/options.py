@@ -75,14 +75,21 @@ def emit(document: Document, format_name: str, output: str | None) -> None:
 
 
 def write(text: str, output: str | None) -> None:
-    """Write a text to standard output or to a file. Raises UsageError when the file cannot be written."""
-    if output is None:
-        click.echo(text, nl=False)
-        return
+    """Write a text to standard output or to a file. Raises UsageError when it cannot be written."""
     try:
-        Path(output).write_text(text, encoding="utf-8")
+        if output is None:
+            click.echo(text, nl=False)
+        else:
+            Path(output).write_text(text, encoding="utf-8")
+    except BrokenPipeError:
+        # Whoever read the output has seen enough; click ends the program.
+        raise
     except OSError as error:
         reason = error.strerror or str(error)
         raise UsageError(
-            "the output cannot be written", reason, "a path that can be written", "correct --output", output
+            "the output cannot be written",
+            reason,
+            "a place that can be written",
+            "correct --output",
+            output or "",
         ) from error

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import subprocess
 import sys
+from pathlib import Path
 
 import pytest
 from click.testing import CliRunner
@@ -68,3 +69,13 @@ def test_an_unknown_command_is_a_usage_error() -> None:
 
 def test_version_is_printed() -> None:
     assert CliRunner().invoke(main, ["--version"]).output.startswith("sitesym, version ")
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="no device that is always full")
+def test_standard_output_that_takes_nothing_is_an_error_and_no_answer() -> None:
+    code = "from sitesym.cli.main import main; main(['conventions'], prog_name='sitesym')"
+    with open("/dev/full", "w", encoding="utf-8") as full:
+        run = subprocess.run([sys.executable, "-c", code], stdout=full, stderr=subprocess.PIPE, text=True)
+    assert run.returncode == 2
+    assert "the output cannot be written" in run.stderr
+    assert "Traceback" not in run.stderr
