@@ -180,7 +180,8 @@ def summary_text(document: Document) -> str:
     missing = f"{unknown} state no axes or no order" if unknown else ""
     failing = summary["cross_checks_failing"]
     crossed = f"{failing} of {summary['cross_checks']} cross-checks fail" if summary["cross_checks"] else ""
-    head = f"{summary['records']} records: {', '.join(filter(None, (counted, errors)))}"
+    count = f"{summary['records']} record{'' if summary['records'] == 1 else 's'}"
+    head = f"{count}: {', '.join(filter(None, (counted, errors)))}"
     return "; ".join(filter(None, (head, alone, missing, crossed)))
 
 

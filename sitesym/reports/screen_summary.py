@@ -12,7 +12,9 @@ def counts_line(tally: Tally) -> str:
     counted = ", ".join(
         f"{number} {status}" for status, number in sorted(tally.statuses.items(), reverse=True)
     )
-    return f"{tally.rows} structures ({counted})" if counted else "0 structures"
+    if not counted:
+        return "0 structures: no input holds a file whose name stands for a structure format"
+    return f"{tally.rows} structure{'' if tally.rows == 1 else 's'} ({counted})"
 
 
 def verdicts_line(tally: Tally) -> str:

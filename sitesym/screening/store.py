@@ -69,6 +69,13 @@ class Store:
     def reading(cls, path: str | os.PathLike[str]) -> Store:
         """Open a store to read it, also while a run writes to it. Raises StoreError."""
         name = os.fspath(path)
+        if not os.path.exists(name):
+            raise StoreError(
+                "there is no such store",
+                name,
+                "a file that `sitesym screen --store` has written",
+                "look at the path, or screen with --store first",
+            )
         with _store_errors(name):
             connection = sqlite3.connect(f"file:{quote(os.path.abspath(name))}?mode=ro", uri=True)
             check_version(connection, name)

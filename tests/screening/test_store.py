@@ -201,3 +201,9 @@ def test_a_store_of_a_later_version_is_refused(path: Path) -> None:
     for opened in (Store.reading, lambda name: Store.writing(name, SETTINGS)):
         with pytest.raises(StoreError, match="later version"):
             opened(path)
+
+
+def test_a_store_that_is_not_there_is_said_to_be_missing_and_is_not_made(path: Path) -> None:
+    with pytest.raises(StoreError, match="there is no such store"):
+        Store.reading(path)
+    assert not path.exists()
