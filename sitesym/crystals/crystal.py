@@ -177,9 +177,11 @@ def _ase_marks(atoms: Atoms) -> Marks:
     """Moments the file gives: those of a calculation, else those it started from."""
     calculated = atoms.calc.results.get("magmoms") if atoms.calc is not None else None
     moments = calculated if calculated is not None else atoms.arrays.get("initial_magmoms")
-    if moments is None or len(moments) != len(atoms):
+    values = np.asarray(() if moments is None else moments)
+    # A column of that name may hold anything, and a frame no atoms: neither gives moments.
+    if not values.size or values.dtype.kind not in "iuf" or values.shape[0:1] != (len(atoms),):
         return {}
-    texts = moment_texts(np.asarray(moments))
+    texts = moment_texts(values)
     return {"moment": texts} if any(texts) else {}
 
 

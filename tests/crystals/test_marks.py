@@ -6,7 +6,7 @@ import pytest
 from ase import Atoms
 
 from sitesym.crystals import Crystal, find_symmetry, read_crystal
-from sitesym.errors import CountMismatchError, UsageError
+from sitesym.errors import CountMismatchError, EmptyStructureError, UsageError
 from sitesym.reports.sites import crystal_remarks, sites_document
 
 CUBIC = "data_x\n_cell_length_a 4\n_cell_length_b 4\n_cell_length_c 4\n_cell_angle_alpha 90\n" + (
@@ -160,3 +160,17 @@ def test_moments_of_a_frame_are_marks(tmp_path):
     assert crystal.marks["moment"] == ("2.2", "-2.2")
     assert find_symmetry(crystal).space_group_symbol == "Pm-3m"
     assert find_symmetry(read_crystal(tmp_path / "a.traj")).space_group_symbol == "Im-3m"
+
+
+@pytest.mark.parametrize("column", ["magmoms:R:1", "magmoms:R:3"])
+def test_a_frame_without_atoms_is_empty_also_where_it_has_a_column_of_moments(tmp_path, column):
+    head = 'Lattice="4 0 0 0 4 0 0 0 4" pbc="T T T" Properties=species:S:1:pos:R:3:'
+    (tmp_path / "none.extxyz").write_text(f"0\n{head}{column}\n")
+    with pytest.raises(EmptyStructureError):
+        read_crystal(tmp_path / "none.extxyz")
+
+
+def test_a_column_of_words_gives_no_moments():
+    atoms = Atoms("Fe", cell=[4, 4, 4], pbc=True)
+    atoms.arrays["initial_magmoms"] = np.array(["up"])
+    assert "moment" not in Crystal.from_ase(atoms).marks
