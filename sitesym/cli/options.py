@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from functools import wraps
-from pathlib import Path
 from typing import Any, TypeVar, cast
 
 import click
@@ -12,8 +11,8 @@ import click
 from sitesym.cli.choices import reliability_options as reliability_options
 from sitesym.cli.choices import split_names as split_names
 from sitesym.cli.choices import tolerance_option as tolerance_option
+from sitesym.cli.output import write as write
 from sitesym.crystals import MARKS, STATEMENTS, ReadingChoices
-from sitesym.errors import UsageError
 from sitesym.reports.markup import Document
 from sitesym.reports.render import FORMATS, render
 
@@ -72,24 +71,3 @@ def reading_options(command: _Command) -> _Command:
 def emit(document: Document, format_name: str, output: str | None) -> None:
     """Write the document in a format to standard output or to a file. Raises UsageError as `write` does."""
     write(render(document, format_name), output)
-
-
-def write(text: str, output: str | None) -> None:
-    """Write a text to standard output or to a file. Raises UsageError when it cannot be written."""
-    try:
-        if output is None:
-            click.echo(text, nl=False)
-        else:
-            Path(output).write_text(text, encoding="utf-8")
-    except BrokenPipeError:
-        # Whoever read the output has seen enough; click ends the program.
-        raise
-    except OSError as error:
-        reason = error.strerror or str(error)
-        raise UsageError(
-            "the output cannot be written",
-            reason,
-            "a place that can be written",
-            "correct --output",
-            output or "",
-        ) from error

@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-import sys
 import threading
 from collections.abc import Callable, Iterable, Iterator
 from time import monotonic
 from typing import Final
 
+from sitesym.cli.output import say
 from sitesym.screening import Row, Screening
 
 #: Seconds between lines where there is no terminal, and between changes of the bar.
@@ -28,7 +28,7 @@ def _with_lines(rows: Iterable[Row], run: Screening) -> Iterator[Row]:
         now = monotonic()
         if now - last >= LINE_SECONDS:
             last = now
-            sys.stderr.write(f"{_state(run, now - start)}\n")
+            say(_state(run, now - start))
 
 
 def _with_bar(rows: Iterable[Row], run: Screening, count: Callable[[], int]) -> Iterator[Row]:

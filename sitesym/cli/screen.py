@@ -11,6 +11,7 @@ from signal import Signals
 import click
 
 from sitesym.cli.choices import reliability_options, split_names, spreadsheet_option
+from sitesym.cli.output import say, write
 from sitesym.cli.progress import watched
 from sitesym.screening import Row, Screening, Settings, Store, Task, WorkItem, available_cores
 from sitesym.screening.engine import DEFAULT_LIMIT_MEGABYTES, DEFAULT_LIMIT_SECONDS, Crew
@@ -120,7 +121,7 @@ def command(
     else:
         _screen_to_store(run, _Target(inputs, format_name, output, spreadsheet_safe), store_path, retry)
     if run.stopped_by:
-        click.echo(f"stopped by {run.stopped_by}; what is done is kept", err=True)
+        say(f"stopped by {run.stopped_by}; what is done is kept")
         sys.exit(128 + Signals[run.stopped_by])
 
 
@@ -164,7 +165,9 @@ def _watched(rows: Iterable[Row], run: Screening, target: _Target, *, bar: bool)
 def _summarise(run: Screening, *, to_standard_error: bool) -> None:
     from sitesym.reports.screen_summary import summary_lines
 
-    if run.already_done:
-        click.echo(f"{run.already_done} done before, {run.done} now", err=to_standard_error)
-    for line in summary_lines(run.tally):
-        click.echo(line, err=to_standard_error)
+    lines = [f"{run.already_done} done before, {run.done} now"] if run.already_done else []
+    text = "\n".join((*lines, *summary_lines(run.tally)))
+    if to_standard_error:
+        say(text)
+    else:
+        write(f"{text}\n", None)

@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-import sys
 from collections.abc import Iterable, Sequence
 
 import click
 
 from sitesym.cli.choices import split_names, spreadsheet_option
+from sitesym.cli.output import output_errors, write_pieces
 from sitesym.errors import UsageError
 from sitesym.reports.table import TABLE_FORMATS, default_columns, table_lines
 from sitesym.reports.table_parquet import write_parquet
@@ -75,32 +75,12 @@ def write_rows(
 ) -> None:
     """Write a table in one of `TABLE_FORMATS` to standard output or to a file, row by row where it can be.
 
-    Raises UsageError when the file cannot be written, and for Parquet without one.
+    Raises UsageError when it cannot be written, and for Parquet without a file.
     """
-    try:
-        if format_name == "parquet":
-            _write_parquet(rows, columns, output)
-        else:
-            _write(table_lines(rows, columns, format_name, spreadsheet_safe=spreadsheet_safe), output)
-    except OSError as error:
-        if output is None:
-            raise
-        raise UsageError(
-            "the output cannot be written",
-            error.strerror or str(error),
-            "a path that can be written",
-            "correct --output",
-            output,
-        ) from error
-
-
-def _write(lines: Iterable[str], output: str | None) -> None:
-    """Write pieces of text as they come; line ends stay as they are."""
-    if output is None:
-        sys.stdout.writelines(lines)
-        return
-    with open(output, "w", encoding="utf-8", newline="") as stream:
-        stream.writelines(lines)
+    if format_name == "parquet":
+        _write_parquet(rows, columns, output)
+    else:
+        write_pieces(table_lines(rows, columns, format_name, spreadsheet_safe=spreadsheet_safe), output)
 
 
 def _write_parquet(rows: Iterable[Row], columns: Sequence[Column], output: str | None) -> None:
@@ -108,4 +88,5 @@ def _write_parquet(rows: Iterable[Row], columns: Sequence[Column], output: str |
         raise UsageError(
             "Parquet is not for a terminal", "no --output", "a Parquet file is binary", "add --output PATH"
         )
-    write_parquet(rows, columns, output)
+    with output_errors(output):
+        write_parquet(rows, columns, output)
