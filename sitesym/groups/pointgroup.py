@@ -230,10 +230,10 @@ class PointGroup:
         return f"PointGroup({self.oriented!r}, order={self.order})"
 
 
-def _signature(rotations_cart: FloatArray) -> tuple[tuple[int, int], ...]:
-    """Trace and determinant of every element, sorted: it tells the 32 classes apart."""
-    traces = np.rint(np.trace(rotations_cart, axis1=1, axis2=2) * 1e4).astype(int)
-    determinants = np.rint(np.linalg.det(rotations_cart)).astype(int)
+def _signature(rotations: FloatArray | IntArray) -> tuple[tuple[int, int], ...]:
+    """Trace and determinant of every element in any basis, sorted: it tells the 32 classes apart."""
+    traces = np.rint(np.trace(rotations, axis1=1, axis2=2) * 1e4).astype(int)
+    determinants = np.rint(np.linalg.det(rotations)).astype(int)
     return tuple(sorted(zip(traces.tolist(), determinants.tolist(), strict=True)))
 
 
@@ -242,11 +242,18 @@ def _matrix_set(rotations: IntArray) -> frozenset[bytes]:
 
 
 @lru_cache(maxsize=1)
+def _groups_by_spelling() -> dict[str, IntArray]:
+    """The integer matrices of every oriented spelling, of each class the standard one first."""
+    spellings = [s for symbol in SCHOENFLIES for s in ORIENTED.get(symbol, (symbol,))]
+    return {spelling: generated(read_symbol(spelling).generators) for spelling in spellings}
+
+
+@lru_cache(maxsize=1)
 def _class_symbols() -> dict[tuple[tuple[int, int], ...], str]:
-    return {_signature(PointGroup.from_symbol(symbol).rotations_cart): symbol for symbol in SCHOENFLIES}
+    groups = _groups_by_spelling()
+    return {_signature(groups[ORIENTED.get(symbol, (symbol,))[0]]): symbol for symbol in SCHOENFLIES}
 
 
 @lru_cache(maxsize=1)
 def _oriented_symbols() -> dict[frozenset[bytes], str]:
-    spellings = [s for symbol in SCHOENFLIES for s in ORIENTED.get(symbol, (symbol,))]
-    return {_matrix_set(generated(read_symbol(s).generators)): s for s in spellings}
+    return {_matrix_set(rotations): spelling for spelling, rotations in _groups_by_spelling().items()}

@@ -100,12 +100,12 @@ def generated(generators: IntArray) -> IntArray:
             if product.tobytes() not in found:
                 found[product.tobytes()] = product
                 frontier.append(product)
-    return np.array(sorted(found.values(), key=_place))
-
-
-def _place(matrix: IntArray) -> tuple[int, int, list[int]]:
-    determinant = round(float(np.linalg.det(matrix)))
-    return -determinant, -determinant * int(np.trace(matrix)), (-matrix).ravel().tolist()
+    matrices = np.array(list(found.values()))
+    determinants = np.rint(np.linalg.det(matrices)).astype(np.int64)
+    angles = determinants * np.trace(matrices, axis1=1, axis2=2)
+    # The last key counts first.
+    sequence = np.lexsort((*-matrices.reshape(-1, 9).T[::-1], -angles, -determinants))
+    return np.asarray(matrices[sequence])
 
 
 def class_of_spelling(oriented: str) -> str:
