@@ -6,7 +6,6 @@ import json
 from dataclasses import dataclass
 from functools import cached_property
 from hashlib import blake2b
-from importlib.metadata import PackageNotFoundError, version
 from math import isfinite
 from typing import Any, Final
 
@@ -75,6 +74,9 @@ class Settings:
 
 def versions() -> dict[str, str]:
     """Version of sitesym and of each library that is installed."""
+    # Loads the reader of mail headers, which no worker needs.
+    from importlib.metadata import PackageNotFoundError, version
+
     found = {"sitesym": __version__}
     for name in LIBRARIES:
         try:
