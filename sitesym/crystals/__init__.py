@@ -1,6 +1,7 @@
 """Crystals: reading, validation, space group, sites and named axes."""
 
 from sitesym.crystals.axes import AXES_NAMES, Axes, axes_for
+from sitesym.crystals.choices import ReadingChoices
 from sitesym.crystals.cif_symmetry import STATEMENTS
 from sitesym.crystals.crystal import Crystal, Source
 from sitesym.crystals.finders import DEFAULT_FINDER, FINDERS
@@ -8,7 +9,6 @@ from sitesym.crystals.idealisation import Idealisation
 from sitesym.crystals.marks import MARKS
 from sitesym.crystals.reading import (
     FORMATS,
-    ReadingChoices,
     named_format,
     read_crystal,
     read_crystals,

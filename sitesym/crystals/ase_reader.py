@@ -6,8 +6,10 @@ import sqlite3
 import struct
 import warnings
 import zlib
+from collections.abc import Iterator
+from itertools import islice
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, TypeAlias
 
 from sitesym.errors import CountMismatchError, EmptyStructureError, ReadingError, UnknownFormatError
 
@@ -39,42 +41,59 @@ _CONTENT_ERRORS = (
 _OPTIONS: dict[str, dict[str, Any]] = {"castep-cell": {"calculator_args": {"keyword_tolerance": 3}}}
 
 
-def read_frames(path: Path, ase_format: str, index: int | None) -> tuple[list[Atoms], tuple[str, ...]]:
-    """All structures of a file, in its order, or the one with an index (-1 the last); ``ase_format`` is ASE's
-    name of the format. The texts are warnings of ASE.
+#: A structure, and what ASE warned of while it read it.
+Frame: TypeAlias = tuple["Atoms", tuple[str, ...]]
 
-    Raises ReadingError, and EmptyStructureError where there is no such structure.
+
+def read_frames(path: Path, ase_format: str, index: int | None) -> Iterator[Frame]:
+    """All structures of a file, in its order, or the one with an index (-1 the last); ``ase_format`` is ASE's
+    name of the format. They are read one by one where the format allows it.
+
+    Raises ReadingError where the file or its next structure cannot be read, EmptyStructureError where there
+    is none.
     """
+    if ase_format == "extxyz":
+        _check_counts(path)
+    frames, found = _iterated(path, ase_format, index), False
+    while True:
+        with warnings.catch_warnings(record=True) as caught:
+            warnings.simplefilter("always")
+            atoms = _next(frames, ase_format, index)
+        if atoms is None:
+            break
+        found = True
+        # What ASE plans for its own interface says nothing about the file.
+        warned = (
+            entry for entry in caught if not issubclass(entry.category, (FutureWarning, DeprecationWarning))
+        )
+        yield atoms, tuple(dict.fromkeys(f"ASE warns: {entry.message}" for entry in warned))
+    if not found:
+        raise _no_structure(ase_format, index)
+
+
+def _iterated(path: Path, ase_format: str, index: int | None) -> Iterator[Atoms]:
     import ase.io
+    from ase.io.formats import get_ioformat
+
+    if index not in (None, 0, -1) and get_ioformat(ase_format).single:
+        return iter(())
+    chosen = ":" if index is None else index
+    return ase.io.iread(str(path), index=chosen, format=ase_format, **_OPTIONS.get(ase_format, {}))
+
+
+def _next(frames: Iterator[Atoms], ase_format: str, index: int | None) -> Atoms | None:
+    """The next structure, None after the last one."""
     from ase.io import ParseError
     from ase.io.formats import UnknownFileTypeError
 
-    if ase_format == "extxyz":
-        _check_counts(path)
-    options = _OPTIONS.get(ase_format, {})
-    with warnings.catch_warnings(record=True) as caught:
-        warnings.simplefilter("always")
-        try:
-            chosen = ":" if index is None else index
-            frames = list(ase.io.iread(str(path), index=chosen, format=ase_format, **options))
-        except IndexError as error:
-            if index is None:
-                raise _unreadable(ase_format, error) from error
-            frames = []
-        except (ParseError, UnknownFileTypeError, *_CONTENT_ERRORS) as error:
+    try:
+        return next(frames, None)
+    except IndexError as error:
+        if index is None:
             raise _unreadable(ase_format, error) from error
-    if not frames:
-        raise EmptyStructureError(
-            "the file holds no structure" if index is None else "the file holds no such structure",
-            f"format {ase_format}" + ("" if index is None else f", structure {index + 1 or 'last'}"),
-            "a file holds at least one; they are counted from 1",
-            "look for the missing structure",
-        )
-    # What ASE plans for its own interface says nothing about the file.
-    warned = (
-        entry for entry in caught if not issubclass(entry.category, (FutureWarning, DeprecationWarning))
-    )
-    return frames, tuple(dict.fromkeys(f"ASE warns: {entry.message}" for entry in warned))
+        return None
+    except (ParseError, UnknownFileTypeError, *_CONTENT_ERRORS) as error:
+        raise _unreadable(ase_format, error) from error
 
 
 def detected_format(path: Path) -> str:
@@ -94,23 +113,34 @@ def detected_format(path: Path) -> str:
 
 def _check_counts(path: Path) -> None:
     """Each frame of an extxyz file has as many lines as it says: ASE would read on for ever."""
-    lines = path.read_text(encoding="utf-8", errors="replace").splitlines()
-    place = 0
-    while place < len(lines) and lines[place].strip():
-        word = lines[place].strip()
-        # What is no number is left to ASE, which names the fault.
-        if not word.isdecimal():
-            return
-        place += 2 + int(word)
-        if place > len(lines):
-            raise CountMismatchError(
-                "a frame ends before its atoms",
-                f"{word} atoms announced, {len(lines) - place + int(word)} lines follow",
-                "one line for each atom",
-                "complete the frame, or correct the number",
-            )
-        while place < len(lines) and lines[place].lstrip().startswith("VEC"):
-            place += 1
+    with path.open(encoding="utf-8", errors="replace") as lines:
+        line = next(lines, "")
+        while word := line.strip():
+            # What is no number is left to ASE, which names the fault.
+            if not word.isdecimal():
+                return
+            # So many digits are more lines than any file has.
+            wanted = 1 + int(word[:18])
+            present = sum(1 for _ in islice(lines, wanted))
+            if present < wanted:
+                raise CountMismatchError(
+                    "a frame ends before its atoms",
+                    f"{word} atoms announced, {max(present - 1, 0)} lines follow",
+                    "one line for each atom",
+                    "complete the frame, or correct the number",
+                )
+            line = next(lines, "")
+            while line.lstrip().startswith("VEC"):
+                line = next(lines, "")
+
+
+def _no_structure(ase_format: str, index: int | None) -> EmptyStructureError:
+    return EmptyStructureError(
+        "the file holds no structure" if index is None else "the file holds no such structure",
+        f"format {ase_format}" + ("" if index is None else f", structure {index + 1 or 'last'}"),
+        "a file holds at least one; they are counted from 1",
+        "look for the missing structure",
+    )
 
 
 def _unreadable(ase_format: str, error: Exception) -> ReadingError:

@@ -111,14 +111,19 @@ def stated_symmetry(
     return StatedSymmetry(stated, name, tuple(remarks))
 
 
-def _only(declared: _Declared, symmetry_from: str) -> _Declared:
-    if symmetry_from not in STATEMENTS:
+def check_statement(name: str) -> None:
+    """Return for one of `STATEMENTS`; else UsageError."""
+    if name not in STATEMENTS:
         raise UsageError(
             "there is no such statement of symmetry",
-            symmetry_from,
+            name,
             f"one of {', '.join(STATEMENTS)}",
             "name one of these",
         )
+
+
+def _only(declared: _Declared, symmetry_from: str) -> _Declared:
+    check_statement(symmetry_from)
     if not declared[symmetry_from]:
         made = ", ".join(name for name, value in declared.items() if value) or "none"
         raise SpaceGroupStatementError(

@@ -7,20 +7,22 @@ from __future__ import annotations
 
 import os
 import re
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from fnmatch import translate
 from functools import partial
+from itertools import chain, islice
 from pathlib import Path
-from typing import Final, TypeAlias, TypedDict, Unpack
+from typing import Final, TypeAlias, Unpack
 
-from sitesym.crystals.ase_reader import detected_format, read_frames
+from sitesym.crystals.ase_reader import Frame, detected_format, read_frames
+from sitesym.crystals.choices import ReadingChoices, frame_index, refuse_block, refuse_symmetry_from
 from sitesym.crystals.cif import blocks_with_atoms, cif_document, crystal_from_block
 from sitesym.crystals.crystal import Crystal, Source
 from sitesym.crystals.files import LARGEST_FILE_MEGABYTES, content, content_name, plain_file
 from sitesym.crystals.poscar import read_poscar
 from sitesym.crystals.vacuum import vacuum_remarks
-from sitesym.errors import EmptyStructureError, ReadingError, SitesymError, UnknownFormatError, UsageError
+from sitesym.errors import EmptyStructureError, ReadingError, SitesymError, UnknownFormatError
 
 #: File names (lower case patterns) and the format they stand for; no other file of a folder is opened.
 FILE_NAMES: Final = (
@@ -55,24 +57,11 @@ FORMATS: Final = tuple(dict.fromkeys(name for _, name in FILE_NAMES))
 _NAME_MATCHERS: Final = tuple((re.compile(translate(pattern)).match, name) for pattern, name in FILE_NAMES)
 
 
-class ReadingChoices(TypedDict, total=False):
-    """What may be chosen on reading; each may be left out.
-
-    ``frame``: number of one structure of the file, from 1, or "last". ``block``: name of a data block of a
-    CIF. ``symmetry_from``: the only statement of a CIF to believe, where its statements contradict each
-    other: operations, hall, hm or number. ``distinguish``: what tells atoms apart beside element and
-    occupancy: isotope, oxidation, label, moment. ``largest_megabytes``: limit of the file's size.
-    """
-
-    frame: int | str | None
-    block: str | None
-    symmetry_from: str | None
-    distinguish: Iterable[str]
-    largest_megabytes: float
-
-
 #: One structure of a file: its name in the file, and what makes the crystal or raises why it cannot be made.
 Part: TypeAlias = tuple[str, Callable[[], Crystal]]
+
+#: So many structures of a file are named where one was expected.
+_NAMED: Final = 6
 
 
 def read_crystal(
@@ -81,13 +70,15 @@ def read_crystal(
     """The one structure of a file; ``choices`` are those of `ReadingChoices`.
 
     ``file_format`` (one of `FORMATS`) overrides the file name. Raises ReadingError and its subclasses, also
-    when the file holds several structures: then they are named, and `read_crystals` gives them all.
+    when the file holds several structures: then they are named, and `read_crystals` gives them all; and
+    UsageError for a choice that means nothing for the format.
     """
-    parts = _parts(path, file_format, choices)
+    parts = list(islice(_parts(path, file_format, choices, refuse_symmetry_from), _NAMED + 1))
     if len(parts) > 1:
+        names = [name for name, _ in parts[:_NAMED]]
         raise ReadingError(
             "the file holds several structures",
-            "; ".join(name for name, _ in parts[:6]) + ("; ..." if len(parts) > 6 else ""),
+            "; ".join((*names, "...") if len(parts) > _NAMED else names),
             "one structure, where one is asked for",
             "choose one with --frame (last or its number) or --block (its name)",
             str(path),
@@ -100,52 +91,79 @@ def read_crystals(
 ) -> tuple[Crystal, ...]:
     """All structures of a file: data blocks of a CIF, frames of a trajectory, rows of a database.
 
-    Raises ReadingError and its subclasses for the first that is faulty; the error names the file.
+    Raises ReadingError and its subclasses for the first that is faulty; the error names the file. UsageError
+    for a choice that means nothing for the format.
     """
-    return tuple(_made(path, make, choices) for _, make in _parts(path, file_format, choices))
+    parts = _parts(path, file_format, choices, refuse_symmetry_from)
+    return tuple(_made(path, make, choices) for _, make in parts)
 
 
 def read_each(
     path: str | os.PathLike[str], file_format: str | None = None, **choices: Unpack[ReadingChoices]
 ) -> Iterator[tuple[str, Crystal | SitesymError]]:
     """Name and crystal of each structure of a file, or the error in its place, so that one faulty data block
-    or frame does not hide the others. Raises ReadingError where the file as a whole cannot be read."""
-    for name, make in _parts(path, file_format, choices):
+    or frame does not hide the others. Where the format tells frames one by one, only two are held.
+
+    One set of choices serves files of many formats: ``symmetry_from`` counts in a CIF and nowhere else.
+    Raises ReadingError where the file as a whole cannot be read. What cannot be read after some of its
+    structures ends them with the error.
+    """
+    parts, number = _parts(path, file_format, choices), 0
+    while True:
+        try:
+            name, make = next(parts)
+        except StopIteration:
+            return
+        except SitesymError as error:
+            if number == 0:
+                raise
+            yield f"structure {number + 1}", error
+            return
+        number += 1
         try:
             yield name, _made(path, make, choices)
         except SitesymError as error:
             yield name, error
 
 
-def _parts(path: str | os.PathLike[str], file_format: str | None, choices: ReadingChoices) -> list[Part]:
+def _parts(
+    path: str | os.PathLike[str],
+    file_format: str | None,
+    choices: ReadingChoices,
+    refuse: Callable[[ReadingChoices, str], None] | None = None,
+) -> Iterator[Part]:
+    """The structures, one or more; ``refuse`` objects to choices that mean nothing for a format."""
     location = Path(path)
     with _errors_of(path):
-        if location.is_dir():
-            raise ReadingError(
-                "this is a folder", location.name, "one structure file", "name a file, or screen the folder"
-            )
-        if not location.is_file():
-            raise ReadingError(
-                "there is no such file", location.name, "a path to a structure file", "look at the path"
-            )
-        chosen = file_format or named_format(location) or detected_format(location)
-        if chosen not in FORMATS:
-            raise UnknownFormatError(
-                "the format is not known", chosen, f"one of {', '.join(FORMATS)}", "name one of these formats"
-            )
-        index = _frame_index(choices.get("frame"))
+        chosen = _format(location, file_format)
+        index = frame_index(choices.get("frame"))
         if chosen == "cif":
-            return _selected(_cif_parts(location, choices), index)
-        if choices.get("block") is not None:
-            raise UsageError(
-                "only a CIF has data blocks",
-                f"format {chosen}",
-                "a block is chosen in a CIF",
-                "choose a frame",
-            )
+            yield from _selected(_cif_parts(location, choices), index)
+            return
+        refuse_block(choices, chosen)
+        if refuse is not None:
+            refuse(choices, chosen)
         if chosen == "vasp":
-            return _selected([_poscar_part(location, _limit(choices))], index)
-        return _ase_parts(location, chosen, index, _limit(choices))
+            yield from _selected([_poscar_part(location, _limit(choices))], index)
+        else:
+            yield from _ase_parts(location, chosen, index, _limit(choices))
+
+
+def _format(path: Path, named: str | None) -> str:
+    if path.is_dir():
+        raise ReadingError(
+            "this is a folder", path.name, "one structure file", "name a file, or screen the folder"
+        )
+    if not path.is_file():
+        raise ReadingError(
+            "there is no such file", path.name, "a path to a structure file", "look at the path"
+        )
+    chosen = named or named_format(path) or detected_format(path)
+    if chosen not in FORMATS:
+        raise UnknownFormatError(
+            "the format is not known", chosen, f"one of {', '.join(FORMATS)}", "name one of these formats"
+        )
+    return chosen
 
 
 def _cif_parts(path: Path, choices: ReadingChoices) -> list[Part]:
@@ -165,19 +183,29 @@ def _poscar_part(path: Path, limit: float) -> Part:
     return "", partial(read_poscar, text, path.name)
 
 
-def _ase_parts(path: Path, chosen: str, index: int | None, limit: float) -> list[Part]:
+def _ase_parts(path: Path, chosen: str, index: int | None, limit: float) -> Iterator[Part]:
     with plain_file(path, limit) as plain:
-        frames, remarks = read_frames(plain, chosen, index)
+        frames = read_frames(plain, chosen, index)
+        for name, (atoms, remarks) in _named_frames(frames, index):
+            yield name, partial(Crystal.from_ase, atoms, Source(path.name, chosen, name), remarks)
+
+
+def _named_frames(frames: Iterator[Frame], index: int | None) -> Iterator[tuple[str, Frame]]:
+    """Frames with their names: the one chosen by its index, an only one without a name, else numbered."""
+    first = next(frames)
     if index is not None:
-        names = ["last structure" if index == -1 else f"structure {index + 1}"]
-    elif len(frames) == 1:
-        names = [""]
-    else:
-        names = [f"structure {number} of {len(frames)}" for number in range(1, len(frames) + 1)]
-    return [
-        (name, partial(Crystal.from_ase, atoms, Source(path.name, chosen, name), remarks))
-        for name, atoms in zip(names, frames, strict=True)
-    ]
+        yield "last structure" if index == -1 else f"structure {index + 1}", first
+        return
+    try:
+        second = next(frames, None)
+    except ReadingError:
+        yield "structure 1", first
+        raise
+    if second is None:
+        yield "", first
+        return
+    for number, frame in enumerate(chain((first, second), frames), start=1):
+        yield f"structure {number}", frame
 
 
 def _made(path: str | os.PathLike[str], make: Callable[[], Crystal], choices: ReadingChoices) -> Crystal:
@@ -186,19 +214,6 @@ def _made(path: str | os.PathLike[str], make: Callable[[], Crystal], choices: Re
         crystal = make().distinguished_by(*choices.get("distinguish", ()))
         vacuum = vacuum_remarks(crystal.lattice, crystal.positions_frac)
         return crystal.with_remarks(*vacuum) if vacuum else crystal
-
-
-def _frame_index(frame: int | str | None) -> int | None:
-    """Index of a frame given as its number from 1 or as "last"; None for all. Raises UsageError."""
-    if frame is None:
-        return None
-    if frame == "last":
-        return -1
-    if str(frame).isdecimal() and int(frame) > 0:
-        return int(frame) - 1
-    raise UsageError(
-        "there is no such frame", str(frame), "last, or a number from 1", "name a frame of the file"
-    )
 
 
 def _selected(parts: list[Part], index: int | None) -> list[Part]:

@@ -4,6 +4,7 @@ import gzip
 import lzma
 import shutil
 import sys
+import weakref
 
 import ase.io
 import numpy as np
@@ -146,9 +147,61 @@ def test_a_faulty_frame_does_not_hide_the_others(tmp_path):
     flat = Atoms("Po2", positions=[[0, 0, 0], [0, 0, 0.01]], cell=[3.3] * 3, pbc=True)
     ase.io.write(tmp_path / "a.extxyz", [good, flat, good])
     parts = list(read_each(tmp_path / "a.extxyz"))
-    assert [name for name, _ in parts] == [f"structure {number} of 3" for number in (1, 2, 3)]
+    assert [name for name, _ in parts] == [f"structure {number}" for number in (1, 2, 3)]
     assert [isinstance(part, Crystal) for _, part in parts] == [True, False, True]
     assert parts[1][1].code == "overlap"
+
+
+@pytest.mark.parametrize("good", [1, 2])
+def test_what_cannot_be_read_keeps_the_frames_before_and_names_the_place(frames, good):
+    path = frames("a.extxyz")
+    lines = path.read_text().splitlines(keepends=True)
+    lines[4 * good + 2] = "Cs 0.0 zero 0.0\n"
+    path.write_text("".join(lines))
+    parts = list(read_each(path))
+    assert [name for name, _ in parts] == [f"structure {number + 1}" for number in range(good + 1)]
+    assert [isinstance(part, Crystal) for _, part in parts] == [True] * good + [False]
+    with pytest.raises(ReadingError):
+        read_crystals(path)
+
+
+def test_frames_are_read_one_by_one(tmp_path, monkeypatch):
+    """Of 60 frames no more than three are alive at any moment."""
+    references, most = [], 0
+    made = Crystal.from_ase
+
+    def watched(atoms, *arguments):
+        nonlocal most
+        references.append(weakref.ref(atoms))
+        most = max(most, sum(reference() is not None for reference in references))
+        return made(atoms, *arguments)
+
+    monkeypatch.setattr(Crystal, "from_ase", watched)
+    for name in ("a.traj", "a.extxyz", "a.db"):
+        ase.io.write(tmp_path / name, [bulk("Po", "sc", a=3.3 + step / 100) for step in range(60)])
+        edges = [part.lattice[0, 0] for _, part in read_each(tmp_path / name)]
+        assert edges == pytest.approx([3.3 + step / 100 for step in range(60)])
+    assert len(references) == 180
+    assert 1 <= most <= 3
+
+
+@pytest.mark.parametrize("name", ["POSCAR", "a.extxyz", "a.traj"])
+def test_only_a_cif_has_statements_of_symmetry(frames, structures, tmp_path, name):
+    """One structure: an error that says so. Files of many formats: it counts in a CIF alone."""
+    path = frames(name) if "." in name else tmp_path / name
+    path.exists() or path.write_text((structures / "quartz_SiO2.vasp").read_text())
+    with pytest.raises(UsageError) as caught:
+        read_crystal(path, frame="last", symmetry_from="hall")
+    assert (caught.value.file, "format" in caught.value.value) == (str(path), True)
+    assert all(isinstance(part, Crystal) for _, part in read_each(path, symmetry_from="hall"))
+
+
+@pytest.mark.parametrize("frame", [2, "3"])
+def test_a_format_of_one_structure_has_no_second(tmp_path, frame):
+    ase.io.write(tmp_path / "a.gen", bulk("Po", "sc", a=3.3))
+    assert read_crystal(tmp_path / "a.gen", frame=1).source.part == "structure 1"
+    with pytest.raises(EmptyStructureError):
+        read_crystal(tmp_path / "a.gen", frame=frame)
 
 
 def test_a_frame_that_announces_more_atoms_than_follow_is_refused_at_once(tmp_path):
