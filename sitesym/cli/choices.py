@@ -1,15 +1,19 @@
-"""Options about how symmetry is found, in a module that loads nothing of the package but its constants."""
+"""Options about reading and about how symmetry is found; loads nothing of the package but constants."""
 
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import Any, TypeVar
+from typing import Any, Final, TypeVar
 
 import click
 
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
 _Command = TypeVar("_Command", bound=Callable[..., Any])
+
+#: `sitesym.crystals.STATEMENTS` and `MARKS`, without loading them; the tests hold them equal.
+STATEMENTS: Final = ("operations", "hall", "hm", "number")
+MARKS: Final = ("isotope", "oxidation", "label", "moment")
 
 tolerance_option = click.option(
     "--tolerance",
@@ -39,6 +43,37 @@ def reliability_options(command: _Command) -> _Command:
         help="Try other tolerances, and measure the distance from inversion and a reversed polar axis.",
     )
     return tolerance_option(finder(ladder(command)))
+
+
+def frame_option(which: str) -> Callable[[_Command], _Command]:
+    """``--frame``; ``which`` begins its help."""
+    return click.option(
+        "--frame", metavar="last|N", help=f"{which} with several structures: the last, or number N from 1."
+    )
+
+
+def symmetry_from_option(which: str) -> Callable[[_Command], _Command]:
+    """``--symmetry-from``; ``which`` begins its help."""
+    return click.option(
+        "--symmetry-from",
+        type=click.Choice(STATEMENTS),
+        help=f"{which}: the only statement of symmetry to believe.",
+    )
+
+
+distinguish_option = click.option(
+    "--distinguish",
+    multiple=True,
+    metavar="MARKS",
+    help=f"Tell atoms apart also by these: {', '.join(MARKS)}; several separated by commas.",
+)
+
+
+def batch_reading_options(command: _Command) -> _Command:
+    """``--frame``, ``--symmetry-from`` and ``--distinguish`` for many files."""
+    frame = frame_option("One row a file; of one")
+    symmetry = symmetry_from_option("Of each CIF (other files have none)")
+    return frame(symmetry(distinguish_option(command)))
 
 
 spreadsheet_option = click.option(

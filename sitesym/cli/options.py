@@ -8,11 +8,12 @@ from typing import Any, TypeVar, cast
 
 import click
 
+from sitesym.cli.choices import distinguish_option, frame_option, symmetry_from_option
 from sitesym.cli.choices import reliability_options as reliability_options
 from sitesym.cli.choices import split_names as split_names
 from sitesym.cli.choices import tolerance_option as tolerance_option
 from sitesym.cli.output import write as write
-from sitesym.crystals import MARKS, STATEMENTS, ReadingChoices
+from sitesym.crystals import ReadingChoices
 from sitesym.reports.markup import Document
 from sitesym.reports.render import FORMATS, render
 
@@ -50,22 +51,10 @@ def reading_options(command: _Command) -> _Command:
         )
         return command(*args, reading=reading, **others)
 
-    frame_choice = click.option(
-        "--frame", metavar="last|N", help="Of a file with several structures: the last, or number N from 1."
-    )
-    block_choice = click.option("--block", metavar="NAME", help="Of a CIF: the data block of this name.")
-    symmetry = click.option(
-        "--symmetry-from",
-        type=click.Choice(STATEMENTS),
-        help="Of a CIF that contradicts itself: the only statement of symmetry to believe.",
-    )
-    told_apart = click.option(
-        "--distinguish",
-        multiple=True,
-        metavar="MARKS",
-        help=f"Tell atoms apart also by these: {', '.join(MARKS)}; several separated by commas.",
-    )
-    return cast(_Command, frame_choice(block_choice(symmetry(told_apart(collected)))))
+    frame = frame_option("Of a file")
+    block = click.option("--block", metavar="NAME", help="Of a CIF: the data block of this name.")
+    symmetry = symmetry_from_option("Of a CIF that contradicts itself")
+    return cast(_Command, frame(block(symmetry(distinguish_option(collected)))))
 
 
 def emit(document: Document, format_name: str, output: str | None) -> None:

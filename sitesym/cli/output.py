@@ -77,7 +77,7 @@ def _write_all(pieces: Iterable[str], stream: IO[str], output: str | None = None
 
 
 def _drop_standard_output() -> None:
-    """What is still in the buffer goes nowhere; the interpreter would try once more to write it at its end."""
+    """What is left in the buffer goes nowhere; the interpreter would try to write it again at its end."""
     with contextlib.suppress(OSError, ValueError):
         place, nowhere = sys.stdout.fileno(), os.open(os.devnull, os.O_WRONLY)
         os.dup2(nowhere, place)

@@ -10,10 +10,11 @@ from signal import Signals
 
 import click
 
-from sitesym.cli.choices import reliability_options, split_names, spreadsheet_option
+from sitesym.cli.choices import batch_reading_options, reliability_options, split_names, spreadsheet_option
 from sitesym.cli.output import say, write
 from sitesym.cli.progress import watched
 from sitesym.screening import Row, Screening, Settings, Store, Task, WorkItem, available_cores
+from sitesym.screening.columns import DEFAULT_PROPERTIES
 from sitesym.screening.engine import DEFAULT_LIMIT_MEGABYTES, DEFAULT_LIMIT_SECONDS, Crew
 from sitesym.screening.pool import Pool
 
@@ -25,15 +26,27 @@ _TABLES = (*_STREAMED, "parquet")
 
 
 @dataclass(frozen=True)
-class _Target:
-    """Where rows go: the format (None for none), the file (None for the terminal)."""
+class _Table:
+    """What is read, and where rows go: the format (None for none), the file (None for the terminal)."""
 
     inputs: tuple[str, ...]
+    settings: Settings
     format_name: str | None
     output: str | None
     spreadsheet_safe: bool
 
-    def write(self, rows: Iterable[Row], settings: Settings) -> None:
+    def items(self) -> Iterator[WorkItem]:
+        """The units of work of all inputs."""
+        # Knows every format, so that it takes long to load: the workers are on their way meanwhile.
+        from sitesym.screening.sources import work_items
+
+        yield from work_items(self.inputs, split=self.settings.frame is None)
+
+    def watched(self, rows: Iterable[Row], run: Screening, *, bar: bool) -> Iterator[Row]:
+        """The same rows, with progress on standard error."""
+        return watched(rows, run, lambda: sum(1 for _ in self.items()), bar=bar and sys.stderr.isatty())
+
+    def write(self, rows: Iterable[Row]) -> None:
         """Write all rows, as they come where the format can."""
         # Not needed to start a run, and long to load.
         from sitesym.cli.options import emit
@@ -41,11 +54,10 @@ class _Target:
         from sitesym.reports.screen_report import screen_document
 
         if self.format_name in _TABLES:
-            write_rows(
-                rows, settings.columns, self.format_name, self.output, spreadsheet_safe=self.spreadsheet_safe
-            )
+            columns = self.settings.columns
+            write_rows(rows, columns, self.format_name, self.output, spreadsheet_safe=self.spreadsheet_safe)
         elif self.format_name is not None:
-            emit(screen_document(self.inputs, settings, rows), self.format_name, self.output)
+            emit(screen_document(self.inputs, self.settings, rows), self.format_name, self.output)
 
 
 @click.command("screen")
@@ -83,6 +95,7 @@ class _Target:
 )
 @click.option("--properties", multiple=True, metavar="NAMES", help="Tensors whose components are counted.")
 @reliability_options
+@batch_reading_options
 @click.option("--format", "format_name", type=click.Choice(FORMATS), help="Format; text without --store.")
 @click.option("--output", metavar="PATH", help="Write to this file and not to the terminal.")
 @spreadsheet_option
@@ -98,6 +111,9 @@ def command(
     tolerance_angstrom: float,
     finder: str,
     ladder: str,
+    frame: str | None,
+    symmetry_from: str | None,
+    distinguish: tuple[str, ...],
     format_name: str | None,
     output: str | None,
     spreadsheet_safe: bool,
@@ -106,20 +122,31 @@ def command(
 
     An INPUT is a folder (with those below it), a structure file, an ASE database, JSON Lines with inline
     structures, an archive (.tar, .zip), a list of paths (.txt), or a shell pattern of these. What cannot be
-    read, crashes or takes too much is a row with its error, and the run goes on.
+    read, crashes or takes too much is a row with its error, and the run goes on. A file with several
+    structures has a row for each, unless --frame chooses one. The commands for one file also choose a data
+    block by its name (--block), which would mean nothing in many files.
 
     With --store, rows are kept in FILE as they come. A run that was stopped goes on there; only what is new
     or has changed (content, settings, versions) is done again. Rows are read with `sitesym table FILE`, or
     with --format. Formats csv and jsonl are written row by row; the others hold all rows in memory.
     """
-    chosen = split_names(properties)
-    settings = Settings(tolerance_angstrom, finder, ladder == "on", *([tuple(chosen)] if chosen else []))
+    settings = Settings(
+        tolerance_angstrom,
+        finder,
+        ladder == "on",
+        tuple(split_names(properties)) or DEFAULT_PROPERTIES,
+        frame,
+        symmetry_from,
+        tuple(split_names(distinguish)),
+    )
     task = Task(settings, limit_seconds, limit_memory, hashed=store_path is not None)
     run = Screening(task, _crew(workers, cluster))
+    shown = format_name or ("text" if store_path is None else None)
+    table = _Table(inputs, settings, shown, output, spreadsheet_safe)
     if store_path is None:
-        _screen_to_output(run, _Target(inputs, format_name or "text", output, spreadsheet_safe))
+        _screen_to_output(run, table)
     else:
-        _screen_to_store(run, _Target(inputs, format_name, output, spreadsheet_safe), store_path, retry)
+        _screen_to_store(run, table, store_path, retry)
     if run.stopped_by:
         say(f"stopped by {run.stopped_by}; what is done is kept")
         sys.exit(128 + Signals[run.stopped_by])
@@ -134,32 +161,20 @@ def _crew(workers: int, cluster: str | None) -> Callable[[Task], Crew]:
     return partial(ClusterPool, address=cluster)
 
 
-def _screen_to_output(run: Screening, target: _Target) -> None:
+def _screen_to_output(run: Screening, table: _Table) -> None:
     with run:
-        to_terminal = target.format_name in _STREAMED and target.output is None and sys.stdout.isatty()
-        rows = _watched(run.rows(_items(target.inputs)), run, target, bar=not to_terminal)
-        target.write(rows, run.task.settings)
-    if target.format_name in _TABLES:
+        to_terminal = table.format_name in _STREAMED and table.output is None and sys.stdout.isatty()
+        table.write(table.watched(run.rows(table.items()), run, bar=not to_terminal))
+    if table.format_name in _TABLES:
         _summarise(run, to_standard_error=True)
 
 
-def _screen_to_store(run: Screening, target: _Target, path: str, retry: bool) -> None:
-    with Store.writing(path, run.task.settings) as store, run:
-        for _ in _watched(run.into(store, _items(target.inputs), retry), run, target, bar=True):
+def _screen_to_store(run: Screening, table: _Table, path: str, retry: bool) -> None:
+    with Store.writing(path, table.settings) as store, run:
+        for _ in table.watched(run.into(store, table.items(), retry), run, bar=True):
             pass
-        target.write(store.rows(), run.task.settings)
-    _summarise(run, to_standard_error=target.format_name is not None)
-
-
-def _items(inputs: tuple[str, ...]) -> Iterator[WorkItem]:
-    # Knows every format, so that it takes long to load: the workers are on their way meanwhile.
-    from sitesym.screening.sources import work_items
-
-    yield from work_items(inputs)
-
-
-def _watched(rows: Iterable[Row], run: Screening, target: _Target, *, bar: bool) -> Iterator[Row]:
-    return watched(rows, run, lambda: sum(1 for _ in _items(target.inputs)), bar=bar and sys.stderr.isatty())
+        table.write(store.rows())
+    _summarise(run, to_standard_error=table.format_name is not None)
 
 
 def _summarise(run: Screening, *, to_standard_error: bool) -> None:

@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
+import os
 import sqlite3
 import struct
 import warnings
 import zlib
 from collections.abc import Iterator
+from contextlib import closing
 from itertools import islice
 from pathlib import Path
 from typing import TYPE_CHECKING, Any, TypeAlias
+from urllib.parse import quote
 
 from sitesym.errors import CountMismatchError, EmptyStructureError, ReadingError, UnknownFormatError
 
@@ -54,6 +57,8 @@ def read_frames(path: Path, ase_format: str, index: int | None) -> Iterator[Fram
     """
     if ase_format == "extxyz":
         _check_counts(path)
+    if ase_format == "db":
+        _check_tables(path)
     frames, found = _iterated(path, ase_format, index), False
     while True:
         with warnings.catch_warnings(record=True) as caught:
@@ -111,6 +116,26 @@ def detected_format(path: Path) -> str:
         ) from error
 
 
+def require_ase_tables(path: str | os.PathLike[str]) -> None:
+    """Return for an ASE database in SQLite.
+
+    ASE adds its tables to any SQLite file it opens: this looks first, without the right to write.
+
+    Raises ReadingError for any other database, sqlite3.Error for what is none.
+    """
+    with closing(sqlite3.connect(f"file:{quote(os.fsencode(path))}?mode=ro", uri=True)) as connection:
+        names = {
+            name for (name,) in connection.execute("SELECT name FROM sqlite_master WHERE type = 'table'")
+        }
+    if "systems" not in names:
+        raise ReadingError(
+            "the file is no ASE database",
+            f"tables: {', '.join(sorted(names)) or 'none'}",
+            "a table 'systems', as ASE writes it",
+            "leave the file out, or convert it",
+        )
+
+
 def _check_counts(path: Path) -> None:
     """Each frame of an extxyz file has as many lines as it says: ASE would read on for ever."""
     with path.open(encoding="utf-8", errors="replace") as lines:
@@ -132,6 +157,13 @@ def _check_counts(path: Path) -> None:
             line = next(lines, "")
             while line.lstrip().startswith("VEC"):
                 line = next(lines, "")
+
+
+def _check_tables(path: Path) -> None:
+    try:
+        require_ase_tables(path)
+    except sqlite3.Error as error:
+        raise _unreadable("db", error) from error
 
 
 def _no_structure(ase_format: str, index: int | None) -> EmptyStructureError:

@@ -4,8 +4,13 @@ from __future__ import annotations
 
 import numpy as np
 
+from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.symmetry import CrystalSymmetry
 
+LEFT_HANDED = (
+    "the cell vectors a, b, c are left-handed (their triple product is below zero); the conventional cell is "
+    "right-handed, and tensors and directions are in the file's right-handed x, y, z"
+)
 AVERAGE_STRUCTURE = "average structure: mixed or partly filled sites count as species of their own"
 
 # Operations are counted in whole multiples; half way to the next lower or higher one.
@@ -15,14 +20,24 @@ _LOWERED = 0.999
 
 
 def symmetry_remarks(symmetry: CrystalSymmetry) -> tuple[str, ...]:
-    """Remarks of reading, then what follows from the crystal's contents and its symmetry."""
-    crystal = symmetry.crystal
+    """Remarks on the crystal, then on its symmetry."""
+    return (
+        *remarks_on_crystal(symmetry.crystal),
+        *finder_remarks(symmetry),
+        *_declared_remarks(symmetry),
+    )
+
+
+def remarks_on_crystal(crystal: Crystal) -> tuple[str, ...]:
+    """Remarks of reading, then what the crystal is by its cell and its atoms."""
     remarks = list(crystal.remarks)
+    if np.linalg.det(crystal.lattice) < 0.0:
+        remarks.append(LEFT_HANDED)
     if not crystal.is_ordered:
         remarks.append(AVERAGE_STRUCTURE)
     if crystal.distinguish:
         remarks.append(f"atoms are told apart by element, occupancy, {', '.join(crystal.distinguish)}")
-    return (*remarks, *finder_remarks(symmetry), *_declared_remarks(symmetry))
+    return tuple(remarks)
 
 
 def finder_remarks(symmetry: CrystalSymmetry) -> tuple[str, ...]:

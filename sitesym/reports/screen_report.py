@@ -43,6 +43,9 @@ def screen_document(inputs: Sequence[str], settings: Settings, rows: Iterable[Ro
         "tolerance_angstrom": settings.tolerance_angstrom,
         "finder": settings.finder,
         "ladder": settings.ladder,
+        "frame": settings.frame,
+        "symmetry_from": settings.symmetry_from,
+        "distinguished_by": ["element", "occupancy", *sorted(settings.distinguish)],
         "columns": [asdict(column) for column in settings.columns],
         "rows": list(rows),
         "versions": library_versions(),
@@ -55,6 +58,7 @@ def screen_text(document: Document) -> str:
     facts = [
         labelled("inputs", ", ".join(document["inputs"])),
         labelled("tolerance", _tolerance(document)),
+        labelled("settings", _settings(document)),
     ]
     blocks = ["\n".join(facts)]
     good = [row for row in rows if row["status"] == "ok" and row.get("stability") != "fragile"]
@@ -85,14 +89,14 @@ def screen_csv(document: Document) -> str:
 
 def screen_markdown(document: Document) -> str:
     """The table a person sees, failures included, and the counts."""
-    facts = f"{_summary(document)}. Tolerance: {_tolerance(document)}."
+    facts = _facts(document)
     drawn = markdown_table(*_with_status(document))
     return "\n\n".join(["# Screening", facts, drawn, markdown_footer(document)])
 
 
 def screen_latex(document: Document) -> str:
     """The same as a tabular."""
-    facts = latex_escape(f"{_summary(document)}. Tolerance: {_tolerance(document)}.")
+    facts = latex_escape(_facts(document))
     return "\n\n".join([latex_table(*_with_status(document)), facts, latex_footer(document)])
 
 
@@ -124,6 +128,25 @@ def _failure(row: Document) -> str:
 
 def _tolerance(document: Document) -> str:
     return f"{document['tolerance_angstrom']:g} angstrom"
+
+
+def _settings(document: Document) -> str:
+    """What was asked for beside the tolerance; choices of reading only where they were made."""
+    said = [
+        f"finder {document['finder']}",
+        f"tolerance ladder {'on' if document['ladder'] else 'off'}",
+        f"atoms told apart by {', '.join(document['distinguished_by'])}",
+    ]
+    if document["frame"] is not None:
+        frame = document["frame"]
+        said.append(f"of several structures in a file {'the last' if frame == 'last' else f'number {frame}'}")
+    if document["symmetry_from"] is not None:
+        said.append(f"symmetry of CIFs from {document['symmetry_from']} alone")
+    return "; ".join(said)
+
+
+def _facts(document: Document) -> str:
+    return f"{_summary(document)}. Tolerance: {_tolerance(document)}; {_settings(document)}."
 
 
 def _summary(document: Document) -> str:

@@ -8,6 +8,7 @@ from contextlib import contextmanager
 from tempfile import TemporaryDirectory
 from typing import TypeAlias
 
+from sitesym.crystals.choices import ReadingChoices
 from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.reading import read_each
 from sitesym.errors import ReadingError, SitesymError
@@ -17,16 +18,19 @@ from sitesym.screening.work import WorkItem
 Structures: TypeAlias = Iterator[tuple[str, Crystal | SitesymError]]
 
 
-def read_item(item: WorkItem) -> Structures:
-    """The structures of an item. Raises ReadingError and its subclasses where it cannot be read at all."""
+def read_item(item: WorkItem, choices: ReadingChoices) -> Structures:
+    """The structures of an item, or the one of its structures that is chosen.
+
+    Raises ReadingError and its subclasses where it cannot be read at all.
+    """
     if item.error is not None:
         raise item.error
     if item.kind == "path":
         _require_regular(item.source)
-        yield from _named(read_each(item.source, item.file_format or None))
+        yield from _named(read_each(item.source, item.file_format or None, **choices))
         return
     with file_in_memory(item.content, item.name or "structure") as path:
-        yield from _named(read_each(path, item.file_format or None))
+        yield from _named(read_each(path, item.file_format or None, **choices))
 
 
 def _named(structures: Structures) -> Structures:

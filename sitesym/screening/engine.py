@@ -131,7 +131,7 @@ def screen(
         # Knows every format, so that it takes long to load: the workers are on their way meanwhile.
         from sitesym.screening.sources import work_items
 
-        yield from run.rows(work_items(names))
+        yield from run.rows(work_items(names, split=task.settings.frame is None))
 
 
 def available_cores() -> int:

@@ -8,6 +8,7 @@ from __future__ import annotations
 from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.found import FoundSymmetry
 from sitesym.crystals.reliability import examined_symmetry
+from sitesym.crystals.remarks import remarks_on_crystal
 from sitesym.crystals.symmetry import CrystalSymmetry
 from sitesym.errors import SymmetryError
 from sitesym.screening.columns import Row
@@ -78,7 +79,4 @@ def _sites(found: FoundSymmetry) -> Row:
 def _remarks(symmetry: CrystalSymmetry) -> tuple[str, ...]:
     """What was noticed on reading and by the finders, and what makes the symmetry less than certain."""
     said = (f"the finder says: {line}" for line in symmetry.found.messages)
-    remarks = [*symmetry.crystal.remarks, *said]
-    if not symmetry.crystal.is_ordered:
-        remarks.append("average structure: sites are mixed or partly vacant")
-    return (*remarks, *reliability_remarks(symmetry.reliability))
+    return (*remarks_on_crystal(symmetry.crystal), *said, *reliability_remarks(symmetry.reliability))

@@ -7,12 +7,15 @@ from dataclasses import dataclass
 from functools import cached_property
 from hashlib import blake2b
 from math import isfinite
-from typing import Any, Final
+from typing import TYPE_CHECKING, Any, Final
 
 from sitesym import __version__
 from sitesym.errors import UsageError
 from sitesym.screening.columns import DEFAULT_PROPERTIES, Column, columns_for
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
+
+if TYPE_CHECKING:
+    from sitesym.crystals.choices import ReadingChoices
 
 #: Libraries whose version may change a row.
 LIBRARIES: Final = ("spglib", "moyopy", "gemmi", "ase", "numpy")
@@ -21,26 +24,44 @@ LIBRARIES: Final = ("spglib", "moyopy", "gemmi", "ase", "numpy")
 @dataclass(frozen=True)
 class Settings:
     """``finder``: spglib, moyo or both. ``ladder``: whether to climb the tolerance ladder and to measure the
-    distance from inversion. ``properties``: kinds of tensors whose independent components are counted."""
+    distance from inversion. ``properties``: kinds of tensors whose independent components are counted.
+
+    ``frame`` (of each file that holds several structures, the one with this number, or "last"; None for all),
+    ``symmetry_from`` (counts for CIFs alone) and ``distinguish`` as in `sitesym.crystals.ReadingChoices`.
+    """
 
     tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM
     finder: str = "spglib"
     ladder: bool = True
     properties: tuple[str, ...] = DEFAULT_PROPERTIES
+    frame: str | None = None
+    symmetry_from: str | None = None
+    distinguish: tuple[str, ...] = ()
 
     @cached_property
     def columns(self) -> tuple[Column, ...]:
         """The columns of a row, in order."""
         return columns_for(self.properties)
 
+    @property
+    def reading(self) -> ReadingChoices:
+        """What is chosen on reading a file."""
+        return {
+            "frame": self.frame,
+            "symmetry_from": self.symmetry_from,
+            "distinguish": self.distinguish,
+        }
+
     def check(self) -> None:
         """Return when every name means something; else UsageError with what there is."""
         # Loads most of the package, which workers do at the same time.
+        from sitesym.crystals.choices import check_choices
         from sitesym.crystals.reliability import FINDER_CHOICES
         from sitesym.tensors import kind
 
         for name in self.properties:
             kind(name)
+        check_choices(self.reading)
         if self.finder not in FINDER_CHOICES:
             raise UsageError(
                 "unknown symmetry finder",
@@ -63,6 +84,9 @@ class Settings:
             "finder": self.finder,
             "ladder": self.ladder,
             "properties": list(self.properties),
+            "frame": self.frame,
+            "symmetry_from": self.symmetry_from,
+            "distinguish": sorted(self.distinguish),
             "versions": versions(),
         }
 

@@ -18,6 +18,7 @@ from multiprocessing.connection import Connection
 from time import perf_counter
 from typing import TypeAlias
 
+from sitesym.crystals.choices import ReadingChoices
 from sitesym.crystals.spglib_finder import setting
 from sitesym.errors import SitesymError
 from sitesym.screening.columns import Row
@@ -28,7 +29,7 @@ from sitesym.screening.row import crystal_row
 from sitesym.screening.task import MOST_WORDS, Answer, Task
 from sitesym.screening.work import WorkItem, content_hash, storable
 
-Reader: TypeAlias = Callable[[WorkItem], Structures]
+Reader: TypeAlias = Callable[[WorkItem, ReadingChoices], Structures]
 
 
 def prepared(task: Task) -> Reader:
@@ -82,7 +83,7 @@ def answered(item: WorkItem, task: Task, reader: Reader) -> Answer:
 
 def _rows(item: WorkItem, task: Task, reader: Reader) -> Iterator[Row]:
     """A row for each structure of an item; limits and times are those of one structure."""
-    structures = iter(reader(item))
+    structures = iter(reader(item, task.settings.reading))
     try:
         while True:
             start = perf_counter()

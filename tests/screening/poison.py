@@ -9,11 +9,12 @@ import time
 from collections.abc import Callable
 from pathlib import Path
 
+from sitesym.crystals.choices import ReadingChoices
 from sitesym.screening.contents import Structures, read_item
 from sitesym.screening.work import WorkItem
 
 
-def read(item: WorkItem) -> Structures:
+def read(item: WorkItem, choices: ReadingChoices) -> Structures:
     """Structures of the item, unless its file begins with the name of a poison. What only warns, or crashes
     the first time alone, is read from the file of the same name that ends in .good."""
     path = Path(item.source)
@@ -21,7 +22,7 @@ def read(item: WorkItem) -> Structures:
     if word in POISONS:
         POISONS[word](path)
         item = WorkItem.of_path(path.with_suffix(".good"), item.identity, "vasp")
-    yield from read_item(item)
+    yield from read_item(item, choices)
 
 
 def _crash(_: Path) -> None:

@@ -28,7 +28,7 @@ FAST = Settings(ladder=False)
 def row_of(path: Path, settings: Settings = FAST) -> Row:
     """The row of the only structure of a file."""
     item = WorkItem.of_path(path, path.name)
-    ((name, crystal),) = read_item(item)
+    ((name, crystal),) = read_item(item, {})
     assert not isinstance(crystal, SitesymError)
     return crystal_row(item, name, crystal, settings)
 

@@ -5,10 +5,9 @@ from __future__ import annotations
 import os
 import sqlite3
 from collections.abc import Iterator
-from contextlib import closing
 from typing import Any, Final
-from urllib.parse import quote
 
+from sitesym.crystals.ase_reader import require_ase_tables
 from sitesym.errors import ReadingError
 from sitesym.screening.sources.texts import storable
 from sitesym.screening.work import WorkItem
@@ -33,7 +32,7 @@ def database_items(path: str, identity: str) -> Iterator[WorkItem]:
     source = os.path.abspath(path)
     last = 0
     try:
-        _require_ase_tables(path)
+        require_ase_tables(path)
         while page := _page(source, last):
             for row in page:
                 last = int(row.id)
@@ -41,21 +40,6 @@ def database_items(path: str, identity: str) -> Iterator[WorkItem]:
     except (ReadingError, *_CONTENT_ERRORS) as error:
         yield WorkItem.of_error(
             source, f"after row {last}" if last else "", identity, _unreadable(error, path)
-        )
-
-
-def _require_ase_tables(path: str) -> None:
-    """ASE adds its tables to any SQLite file it opens: look first, without the right to write."""
-    with closing(sqlite3.connect(f"file:{quote(os.fsencode(path))}?mode=ro", uri=True)) as connection:
-        names = {
-            name for (name,) in connection.execute("SELECT name FROM sqlite_master WHERE type = 'table'")
-        }
-    if "systems" not in names:
-        raise ReadingError(
-            "the file is no ASE database",
-            f"tables: {', '.join(sorted(names)) or 'none'}",
-            "a table 'systems', as ASE writes it",
-            "leave the file out, or convert it",
         )
 
 

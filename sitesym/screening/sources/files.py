@@ -1,4 +1,4 @@
-"""One structure file: a single unit, or one for each row or frame where these can be streamed.
+"""One structure file: a single unit, or one for each row or frame where these can be told apart unread.
 
 ASE databases and extended XYZ are streamed entry by entry. Other files with several structures (data blocks
 of a CIF, trajectories, logs of a relaxation) are one unit, and the worker makes a row for each structure.
@@ -7,13 +7,17 @@ of a CIF, trajectories, logs of a relaxation) are one unit, and the worker makes
 from __future__ import annotations
 
 import os
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
+from typing import TypeAlias
 
 from sitesym.crystals.reading import named_format
 from sitesym.screening.sources.databases import database_items
 from sitesym.screening.sources.frames import frame_items
 from sitesym.screening.sources.texts import COMPRESSIONS
 from sitesym.screening.work import WorkItem
+
+#: Units of a structure file by its path and its name in the column ``id``.
+FileItems: TypeAlias = Callable[[str, str], Iterator[WorkItem]]
 
 
 def file_items(path: str, identity: str) -> Iterator[WorkItem]:
@@ -24,7 +28,12 @@ def file_items(path: str, identity: str) -> Iterator[WorkItem]:
             return database_items(path, identity)
         if file_format == "extxyz":
             return frame_items(path, identity)
-    return iter((WorkItem.of_path(path, identity, file_format or "", _size(path)),))
+    return whole_file(path, identity)
+
+
+def whole_file(path: str, identity: str) -> Iterator[WorkItem]:
+    """A structure file as one unit, whatever it holds."""
+    yield WorkItem.of_path(path, identity, named_format(path) or "", _size(path))
 
 
 def _size(path: str) -> int:

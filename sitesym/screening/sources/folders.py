@@ -13,7 +13,7 @@ from typing import Final, Literal
 
 from sitesym.crystals.reading import named_format
 from sitesym.errors import ReadingError, UsageError
-from sitesym.screening.sources.files import file_items
+from sitesym.screening.sources.files import FileItems, file_items
 from sitesym.screening.sources.texts import broken_stream, storable
 from sitesym.screening.work import WorkItem
 
@@ -23,14 +23,14 @@ DEEPEST: Final = 200
 _MAGIC: Final = frozenset("*?[")
 
 
-def folder_items(folder: str | os.PathLike[str]) -> Iterator[WorkItem]:
+def folder_items(folder: str | os.PathLike[str], items_of: FileItems = file_items) -> Iterator[WorkItem]:
     """Units of every structure file below a folder, ``id`` the path below it, in the order of these texts.
 
     Files are taken by their names (`sitesym.crystals.reading.FILE_NAMES`); hidden files and folders are left
     out, links to folders are not followed. A folder that cannot be opened, and one that has the name of a
-    structure file and holds no structures, are units with their errors.
+    structure file and holds no structures, are units with their errors. ``items_of`` gives those of a file.
     """
-    return _below(os.fspath(folder), "")
+    return _below(os.fspath(folder), "", items_of)
 
 
 def pattern_paths(pattern: str) -> Iterator[str]:
@@ -55,7 +55,7 @@ def has_magic(text: str) -> bool:
     return not _MAGIC.isdisjoint(text)
 
 
-def _below(folder: str, prefix: str) -> Iterator[WorkItem]:
+def _below(folder: str, prefix: str, items_of: FileItems) -> Iterator[WorkItem]:
     try:
         if prefix.count("/") > DEEPEST:
             raise OSError(f"more than {DEEPEST} folders inside each other")
@@ -67,10 +67,10 @@ def _below(folder: str, prefix: str) -> Iterator[WorkItem]:
     for name, is_folder in entries:
         path = os.path.join(folder, name)
         if not is_folder:
-            yield from file_items(path, storable(prefix + name))
+            yield from items_of(path, storable(prefix + name))
             continue
         found = False
-        for item in _below(path, f"{prefix}{name}/"):
+        for item in _below(path, f"{prefix}{name}/", items_of):
             found = True
             yield item
         if not found and named_format(name):

@@ -4,12 +4,13 @@ from __future__ import annotations
 
 import os
 from collections.abc import Iterable, Iterator
+from functools import partial
 from itertools import chain
 from typing import Final
 
 from sitesym.errors import ReadingError, UsageError
 from sitesym.screening.sources.archives import TAR_NAMES, ZIP_NAMES, archive_items
-from sitesym.screening.sources.files import file_items
+from sitesym.screening.sources.files import FileItems, file_items, whole_file
 from sitesym.screening.sources.folders import folder_items, has_magic, pattern_paths
 from sitesym.screening.sources.lines import jsonl_items, listed_items
 from sitesym.screening.sources.texts import COMPRESSIONS, storable
@@ -20,19 +21,22 @@ JSONL_NAMES: Final = tuple(end + packed for end in (".jsonl", ".ndjson") for pac
 LIST_NAMES: Final = (".txt", ".list")
 
 
-def work_items(names: Iterable[str | os.PathLike[str]]) -> Iterator[WorkItem]:
+def work_items(names: Iterable[str | os.PathLike[str]], *, split: bool = True) -> Iterator[WorkItem]:
     """Units of everything named, in the order of the names: folders, structure files, ASE databases,
     archives, JSON Lines, lists of paths (.txt, .list), and shell patterns of these.
+
+    ``split``: whether databases and extended XYZ are streamed as one unit a row or frame, or left whole.
 
     Lazy: an entry is looked at when its unit is asked for. Raises ReadingError, before any unit, where a name
     stands for nothing; UsageError for a pattern that is ambiguous.
     """
-    return chain.from_iterable([_named(os.fspath(name)) for name in names])
+    items_of = partial(_items_but_lists, file_items if split else whole_file)
+    return chain.from_iterable([_named(os.fspath(name), items_of) for name in names])
 
 
-def _named(name: str) -> Iterator[WorkItem]:
+def _named(name: str, items_of: FileItems) -> Iterator[WorkItem]:
     if os.path.lexists(name):
-        return _items(name, storable(name))
+        return _items(name, storable(name), items_of)
     paths = pattern_paths(name) if has_magic(name) else iter(())
     first = next(paths, None)
     if first is None:
@@ -42,18 +46,18 @@ def _named(name: str) -> Iterator[WorkItem]:
             "a path, or a pattern that something matches",
             "look at the path",
         )
-    return chain.from_iterable(_items(path, storable(path)) for path in chain((first,), paths))
+    return chain.from_iterable(_items(path, storable(path), items_of) for path in chain((first,), paths))
 
 
-def _items(path: str, identity: str) -> Iterator[WorkItem]:
+def _items(path: str, identity: str, items_of: FileItems) -> Iterator[WorkItem]:
     if os.path.isfile(path) and path.lower().endswith(LIST_NAMES):
-        return listed_items(path, _items_but_lists)
-    return _items_but_lists(path, identity)
+        return listed_items(path, items_of)
+    return items_of(path, identity)
 
 
-def _items_but_lists(path: str, identity: str) -> Iterator[WorkItem]:
+def _items_but_lists(files: FileItems, path: str, identity: str) -> Iterator[WorkItem]:
     if os.path.isdir(path):
-        return folder_items(path)
+        return folder_items(path, files)
     lowered = path.lower()
     if os.path.isfile(path):
         if lowered.endswith(LIST_NAMES):
@@ -62,7 +66,7 @@ def _items_but_lists(path: str, identity: str) -> Iterator[WorkItem]:
             return archive_items(path)
         if lowered.endswith(JSONL_NAMES):
             return jsonl_items(path)
-    return file_items(path, identity)
+    return files(path, identity)
 
 
 def _nested_list(path: str, identity: str) -> WorkItem:

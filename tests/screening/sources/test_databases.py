@@ -15,6 +15,8 @@ from ase.db import connect
 from ase.io import write
 
 from sitesym.crystals.reading import read_crystals
+from sitesym.errors import ReadingError
+from sitesym.screening.contents import read_item
 from sitesym.screening.sources import databases, work_items
 from sitesym.screening.work import WorkItem
 
@@ -66,6 +68,7 @@ def test_rows_hold_the_structures_of_the_database_exactly(
 
 
 def test_a_database_of_another_program_is_an_error_and_stays_untouched(tmp_path: Path) -> None:
+    """Whether its rows are streamed, or it is read whole."""
     path = tmp_path / "other.db"
     with sqlite3.connect(path) as connection:
         connection.execute("CREATE TABLE things (x)")
@@ -73,7 +76,23 @@ def test_a_database_of_another_program_is_an_error_and_stays_untouched(tmp_path:
     before = path.read_bytes()
     (item,) = work_items([path])
     assert "things" in str(item.error)
+    (whole,) = work_items([path], split=False)
+    with pytest.raises(ReadingError, match="things"):
+        list(read_item(whole, {"frame": "last"}))
     assert path.read_bytes() == before
+
+
+def test_left_whole_each_file_is_one_unit(tmp_path: Path, frames: list[Atoms]) -> None:
+    """In folders, lists and by its own name alike; the last frame is then that of the file."""
+    for name in ("s.db", "s.extxyz", "s.traj"):
+        write(tmp_path / name, frames[:2])
+    (tmp_path / "list.txt").write_text("s.db\ns.extxyz\ns.traj\n")
+    inputs = [tmp_path, tmp_path / "list.txt", tmp_path / "s.db"]
+    items = list(work_items(inputs, split=False))
+    assert [item.identity for item in items[:6]] == ["s.db", "s.extxyz", "s.traj"] * 2
+    assert {(item.kind, item.frame) for item in items} == {("path", "")}
+    last = [crystal.formula for item in items for _, crystal in read_item(item, {"frame": "last"})]
+    assert last == ["Si"] * 7
 
 
 def test_a_file_that_is_no_database_is_an_error(tmp_path: Path, in_short: InShort) -> None:
