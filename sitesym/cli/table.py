@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+import json
 from collections.abc import Iterable, Sequence
 
 import click
 
 from sitesym.cli.choices import split_names, spreadsheet_option
-from sitesym.cli.output import output_errors, write_pieces
+from sitesym.cli.output import output_errors, say, write_pieces
 from sitesym.errors import UsageError
 from sitesym.reports.table import TABLE_FORMATS, default_columns, table_lines
 from sitesym.reports.table_parquet import write_parquet
@@ -23,6 +24,12 @@ from sitesym.screening.table import Table
 )
 @click.option(
     "--columns", multiple=True, metavar="NAMES", help="Columns wanted, separated by commas, or all."
+)
+@click.option(
+    "--settings",
+    "settings_wanted",
+    is_flag=True,
+    help="The settings and library versions that rows were made with, as JSON Lines, and no rows.",
 )
 @click.option("--limit", type=click.IntRange(min=0), metavar="N", help="At most so many rows.")
 @click.option(
@@ -40,6 +47,7 @@ def command(
     where: tuple[str, ...],
     sort: tuple[str, ...],
     columns: tuple[str, ...],
+    settings_wanted: bool,
     limit: int | None,
     format_name: str,
     output: str | None,
@@ -59,6 +67,12 @@ def command(
     dtype=str, keep_default_na=False: a column of point groups may hold -1 only, and NaN is a formula.
     """
     table = Table.of(store)
+    settings = table.settings()
+    if settings_wanted:
+        write_pieces((f"{json.dumps(entry)}\n" for entry in settings), output)
+        return
+    if len(settings) > 1:
+        say(f"rows were made with {len(settings)} different settings; --settings shows them")
     named = split_names(columns)
     names = [] if named == ["all"] else named or default_columns(table.columns, format_name)
     query = table.query(where, sort, names, limit)

@@ -71,9 +71,9 @@ class FoundSymmetry:
     translations of the lattice; ``positions_frac`` (n, 3) are the atoms as read.
     ``orbits`` (n,): equal for atoms related by the space group, translations of a supercell included.
     ``primitive_atoms`` (n,): equal for atoms related by a lattice translation, numbered from 0.
-    ``multiplicities`` (n,): atoms of the orbit in the conventional cell. ``wyckoffs`` and ``site_symbols``:
-    one for each atom. ``finder``: name and version of the library. ``tolerance_used_angstrom``: what the
-    finder says it ended with; some lower the tolerance by themselves. ``messages``: what it had to say.
+    ``wyckoffs`` and ``site_symbols``: one for each atom. ``finder``: name and version of the library.
+    ``tolerance_used_angstrom``: what the finder says it ended with; some lower the tolerance by themselves.
+    ``messages``: what it had to say.
     """
 
     setting: SpaceGroupSetting
@@ -83,12 +83,31 @@ class FoundSymmetry:
     ideal_positions: Callable[[], FloatArray]
     orbits: IntArray
     primitive_atoms: IntArray
-    multiplicities: IntArray
     wyckoffs: tuple[str, ...]
     site_symbols: tuple[str, ...]
     finder: str
     tolerance_used_angstrom: float
     messages: tuple[str, ...] = ()
+
+    def __post_init__(self) -> None:
+        """Take what a library gives as read-only arrays and tuples."""
+        for name in ("transformation", "origin_shift"):
+            object.__setattr__(self, name, frozen(np.asarray(getattr(self, name), dtype=np.float64)))
+        for name in ("orbits", "primitive_atoms"):
+            object.__setattr__(self, name, frozen(np.asarray(getattr(self, name), dtype=np.int64)))
+        for name in ("wyckoffs", "site_symbols"):
+            object.__setattr__(self, name, tuple(getattr(self, name)))
+
+    @cached_property
+    def multiplicities(self) -> IntArray:
+        """(n,): atoms of each file atom's orbit in the conventional cell.
+
+        They are those of a primitive cell, times its centring.
+        """
+        orbit_of = np.zeros(int(self.primitive_atoms.max()) + 1, dtype=np.int64)
+        orbit_of[self.primitive_atoms] = self.orbits
+        centring = len(self.setting.rotations) // len(self.setting.point_rotations)
+        return frozen(np.asarray(np.bincount(orbit_of)[self.orbits] * centring, dtype=np.int64))
 
     @cached_property
     def conventional_positions(self) -> FloatArray:
@@ -99,12 +118,3 @@ class FoundSymmetry:
         steps = (self.ideal_positions() - measured) @ np.linalg.inv(basis)
         steps -= np.rint(steps)
         return frozen(measured + steps @ basis)
-
-
-def orbit_multiplicities(orbits: IntArray, primitive_atoms: IntArray, setting: SpaceGroupSetting) -> IntArray:
-    """(n,): atoms of each file atom's orbit in the conventional cell: those of a primitive cell, times its
-    centring."""
-    orbit_of = np.zeros(int(primitive_atoms.max()) + 1, dtype=np.int64)
-    orbit_of[primitive_atoms] = orbits
-    centring = len(setting.rotations) // len(setting.point_rotations)
-    return frozen(np.asarray(np.bincount(orbit_of)[orbits] * centring, dtype=np.int64))

@@ -15,9 +15,9 @@ from typing import Any
 
 import numpy as np
 
-from sitesym.arrays import FloatArray, IntArray, frozen
+from sitesym.arrays import FloatArray, IntArray
 from sitesym.crystals.crystal import Crystal
-from sitesym.crystals.found import FoundSymmetry, orbit_multiplicities
+from sitesym.crystals.found import FoundSymmetry
 from sitesym.crystals.spglib_finder import setting
 from sitesym.errors import SymmetryNotFoundError
 
@@ -28,12 +28,10 @@ def find_with_moyo(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmetry
 
     with _warnings_kept() as messages:
         dataset = _dataset(crystal, tolerance_angstrom)
-    found = setting(dataset.hall_number)
     # moyo gives the way back: x_file = linear x_conventional + shift, and the same for its primitive cell.
     transformation = np.linalg.inv(dataset.std_linear)
     origin_shift = -transformation @ dataset.std_origin_shift
-    primitive_atoms = np.array(dataset.mapping_std_prim, dtype=np.int64)
-    orbits = np.array(dataset.orbits, dtype=np.int64)
+    primitive_atoms = np.asarray(dataset.mapping_std_prim, dtype=np.int64)
 
     def ideal_positions() -> FloatArray:
         primitive = np.array(dataset.prim_std_cell.positions) @ np.transpose(dataset.prim_std_linear)
@@ -41,16 +39,15 @@ def find_with_moyo(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmetry
         return shifted[primitive_atoms]
 
     return FoundSymmetry(
-        found,
-        frozen(transformation),
-        frozen(origin_shift),
+        setting(dataset.hall_number),
+        transformation,
+        origin_shift,
         crystal.positions_frac,
         ideal_positions,
-        frozen(orbits),
-        frozen(primitive_atoms),
-        orbit_multiplicities(orbits, primitive_atoms, found),
-        tuple(dataset.wyckoffs),
-        tuple(dataset.site_symmetry_symbols),
+        dataset.orbits,
+        primitive_atoms,
+        dataset.wyckoffs,
+        dataset.site_symmetry_symbols,
         f"moyo {moyopy.__version__}",
         float(dataset.symprec),
         tuple(messages),

@@ -61,11 +61,6 @@ class Species:
         return cls(tuple(sorted((element, float(value)) for element, value in occupancies.items())))
 
     @property
-    def total_occupancy(self) -> float:
-        """Sum of the occupancies; below one where part of the site is vacant."""
-        return sum(occupancy for _, occupancy in self.parts)
-
-    @property
     def is_ordered(self) -> bool:
         """True for one element that fills the site."""
         return len(self.parts) == 1 and self.parts[0][1] == 1.0

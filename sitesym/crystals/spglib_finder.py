@@ -14,7 +14,7 @@ import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.crystals.crystal import Crystal
-from sitesym.crystals.found import FoundSymmetry, SpaceGroupSetting, orbit_multiplicities
+from sitesym.crystals.found import FoundSymmetry, SpaceGroupSetting
 from sitesym.errors import SymmetryNotFoundError
 
 _ANGLE_TOLERANCE = -1.0
@@ -23,11 +23,7 @@ _ANGLE_TOLERANCE = -1.0
 def find_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmetry:
     """Space group and orbits of a crystal. Raises SymmetryNotFoundError when the library gives no answer."""
     dataset = _dataset(crystal, tolerance_angstrom)
-    found = setting(int(dataset.hall_number))
-    transformation = np.asarray(dataset.transformation_matrix, dtype=np.float64)
-    origin_shift = np.asarray(dataset.origin_shift, dtype=np.float64)
     primitive_atoms = np.asarray(dataset.mapping_to_primitive, dtype=np.int64)
-    orbits = np.asarray(dataset.crystallographic_orbits, dtype=np.int64)
 
     def ideal_positions() -> FloatArray:
         # Of each atom of the primitive cell one standardised position; the others are copies of it.
@@ -36,16 +32,15 @@ def find_with_spglib(crystal: Crystal, tolerance_angstrom: float) -> FoundSymmet
         return ideal[primitive_atoms]
 
     return FoundSymmetry(
-        found,
-        frozen(transformation),
-        frozen(origin_shift),
+        setting(int(dataset.hall_number)),
+        dataset.transformation_matrix,
+        dataset.origin_shift,
         crystal.positions_frac,
         ideal_positions,
-        frozen(orbits),
-        frozen(primitive_atoms),
-        orbit_multiplicities(orbits, primitive_atoms, found),
-        tuple(dataset.wyckoffs),
-        tuple(dataset.site_symmetry_symbols),
+        dataset.crystallographic_orbits,
+        primitive_atoms,
+        dataset.wyckoffs,
+        dataset.site_symmetry_symbols,
         f"spglib {_spglib().__version__}",
         tolerance_angstrom,
     )

@@ -149,9 +149,10 @@ class Store:
             yield typed_row(columns, values)
 
     def settings_documents(self) -> list[dict[str, Any]]:
-        """Settings and versions that rows of the store were made with."""
+        """Settings and versions that rows of the store were made with, oldest first."""
         found = self._connection.execute(
-            "SELECT document FROM settings WHERE id IN (SELECT settings FROM items) ORDER BY id"
+            "SELECT document FROM settings"
+            " WHERE EXISTS (SELECT 1 FROM items WHERE items.settings = settings.id) ORDER BY id"
         )
         return [json.loads(text) for (text,) in found]
 

@@ -5,8 +5,9 @@ from __future__ import annotations
 import os
 import sqlite3
 from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 from dataclasses import dataclass
-from typing import Self
+from typing import Any, Self
 
 from sitesym.errors import StoreError
 from sitesym.screening.columns import Column, Row
@@ -43,9 +44,19 @@ class Table:
     def rows(self, query: Query) -> Iterator[Row]:
         """Rows that the query finds, with its columns. Raises StoreError for a store that is damaged."""
         statement, parameters = query.sql("screened", ORDER)
-        try:
+        with self._errors():
             for values in self.store.connection.execute(statement, parameters):
                 yield typed_row(query.columns, values)
+
+    def settings(self) -> list[dict[str, Any]]:
+        """Settings and versions that its rows were made with, oldest first. Raises StoreError."""
+        with self._errors():
+            return self.store.settings_documents()
+
+    @contextmanager
+    def _errors(self) -> Iterator[None]:
+        try:
+            yield
         except sqlite3.Error as error:
             raise StoreError(
                 "the store cannot be read",

@@ -5,15 +5,18 @@ from __future__ import annotations
 import csv
 import io
 import json
+import shutil
 from collections.abc import Callable
 from pathlib import Path
 
 import pytest
 from click.testing import Result
 
-from sitesym.screening import Screening, Settings, Store, Task
+from sitesym.screening import Screening, Settings, Store, Task, WorkItem
+from sitesym.screening.failures import blank_row
 from sitesym.screening.pool import Pool
 from sitesym.screening.sources import work_items
+from sitesym.screening.work import content_hash
 
 Run = Callable[..., Result]
 
@@ -123,6 +126,23 @@ def test_options_that_cannot_be_followed_say_why(
     result = run("table", store, *arguments)
     assert result.exit_code == 2
     assert said in result.output
+
+
+def test_the_settings_of_rows_are_shown_on_request(run: Run, store: str, tmp_path: Path) -> None:
+    (made,) = map(json.loads, output(run, store, "--settings").splitlines())
+    assert (made["tolerance_angstrom"], made["ladder"], made["properties"]) == (0.01, False, ["permittivity"])
+    assert {"sitesym", "spglib", "numpy"} <= set(made["versions"])
+    assert "different settings" not in run("table", store).stderr
+    both = tmp_path / "both"
+    shutil.copy(store, both)
+    other = Settings(tolerance_angstrom=0.1, distinguish=("label",))
+    item = WorkItem.of_text("lines", "", "salt", SALT, "vasp")
+    with Store.writing(both, other) as changed:
+        changed.put(item, content_hash(item), [blank_row(item, "", other) | {"status": "ok"}])
+        changed.commit()
+    assert "rows were made with 2 different settings" in run("table", str(both)).stderr
+    shown = [json.loads(line) for line in output(run, str(both), "--settings").splitlines()]
+    assert [entry["distinguish"] for entry in shown] == [[], ["label"]]
 
 
 def test_what_is_no_store_is_refused_and_not_touched(run: Run, tmp_path: Path) -> None:
