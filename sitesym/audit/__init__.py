@@ -15,6 +15,7 @@ from sitesym.audit.measurement import Layout, Measurement
 from sitesym.audit.orders import STANDARD_ORDER, Order, order_text, read_order
 from sitesym.audit.result import (
     VERDICTS,
+    Ambiguity,
     AuditResult,
     Deviation,
     EntryPair,
@@ -32,6 +33,7 @@ __all__ = [
     "DEFAULT_NOISE",
     "STANDARD_ORDER",
     "VERDICTS",
+    "Ambiguity",
     "AuditResult",
     "AuditRun",
     "AuditedRecord",

@@ -6,8 +6,9 @@ from dataclasses import replace
 
 import numpy as np
 
+from sitesym.audit.ambiguities import ambiguities
 from sitesym.audit.components import deviations
-from sitesym.audit.equivalents import equivalent_axes, undetected_variants
+from sitesym.audit.equivalents import equivalent_axes
 from sitesym.audit.frames import Frames, Subject, frames_of
 from sitesym.audit.indexcheck import check_index_symmetry
 from sitesym.audit.measurement import Measurement
@@ -18,7 +19,7 @@ from sitesym.audit.result import AuditResult, Deviation, IndexFinding, Reading
 from sitesym.audit.search import Field, orientations, search, stated_orientation
 from sitesym.audit.uncertainty import Noise, noise_of
 from sitesym.audit.variants import Variant, variants_of
-from sitesym.audit.verdicts import Finding, as_stated, explained
+from sitesym.audit.verdicts import Finding, as_stated, explained, left_open
 from sitesym.errors import UsageError
 
 DEFAULT_NOISE = 0.01
@@ -84,7 +85,7 @@ def _bare(
         frames.group,
         noise,
         finding.verdict,
-        message(measurement, frames.group, noise, index, finding),
+        message(measurement, frames.group, index, finding),
         index,
         finding.cause,
         constraints=spaces.constraints,
@@ -97,6 +98,8 @@ def _detailed(field: Field, index: IndexFinding, finding: Finding) -> AuditResul
     measurement, frames, spaces = field.measurement, field.frames, field.spaces
     if finding.cause == "unexplained" and not index.holds:
         finding = replace(finding, cause="index-symmetry")
+    cannot_tell = ambiguities(field, finding.best) if finding.best and finding.obeys else ()
+    finding = left_open(finding, measurement, cannot_tell)
     shown = finding.best or finding.stated
     rotation = field.orientations[0].rotation if shown is None else shown.rotation
     number = 0 if shown is None else _variant_of(field, shown)
@@ -107,7 +110,7 @@ def _detailed(field: Field, index: IndexFinding, finding: Finding) -> AuditResul
         frames.group,
         field.noise,
         finding.verdict,
-        message(measurement, frames.group, field.noise, index, finding),
+        message(measurement, frames.group, index, finding, cannot_tell),
         index,
         finding.cause,
         finding.stated,
@@ -115,8 +118,8 @@ def _detailed(field: Field, index: IndexFinding, finding: Finding) -> AuditResul
         finding.rivals,
         forbidden,
         relations,
-        equivalent_axes(measurement.kind, frames.standard),
-        undetected_variants(field, rotation, number) if finding.verdict.startswith("consistent") else (),
+        equivalent_axes(measurement.kind, frames.standard, frames.standard_from_file @ rotation.T),
+        cannot_tell,
         tensor_symmetry(spaces, field.moved(rotation, variant), float(field.tolerances[number])),
         spaces.constraints,
         spaces.independent,

@@ -11,11 +11,10 @@ from typing import TypeAlias
 import numpy as np
 
 from sitesym.arrays import FloatArray, frozen
-from sitesym.audit.neumann import about_z
+from sitesym.audit.rotation_words import turn_text
 from sitesym.crystals import Crystal, CrystalSymmetry, axes_for, find_symmetry
 from sitesym.groups import PointGroup, standard_rotation
-from sitesym.groups.elements import classify
-from sitesym.groups.symbols import SCHOENFLIES
+from sitesym.groups.symbols import SCHOENFLIES, rotation_about
 from sitesym.tolerances import SAME_MATRIX
 
 #: What an audit takes as the crystal.
@@ -138,17 +137,11 @@ def tried_turns() -> tuple[NamedTurn, ...]:
 
 
 def turn_words(matrix: FloatArray) -> str:
-    """A turn of axes in words: ``turned by 60 degrees about [001]`` of the old axes; '' for none."""
-    angle = round(float(np.degrees(np.arccos(np.clip((np.trace(matrix) - 1.0) / 2.0, -1.0, 1.0)))), 4)
-    if angle == 0.0:
-        return ""
-    # The rows of the matrix are the new axes: the turn itself is the transposed matrix.
-    element = classify(matrix.T)
-    sign = "-" if element.sense < 0 else ""
-    return f"turned by {sign}{angle:g} degrees about {element.direction}"
+    """A turn of axes in words: ``turned by 60 degrees about [001]``; '' for none."""
+    turn = turn_text(matrix)
+    return f"turned by {turn}" if turn else ""
 
 
 def _about(axis: int, degrees: float) -> FloatArray:
-    cycle = [(2 - axis + place) % 3 for place in range(3)]
-    turn: FloatArray = about_z(degrees)[np.ix_(cycle, cycle)]
-    return turn
+    """Turn of axes about x, y or z, new axes as rows."""
+    return rotation_about(np.eye(3)[axis], -float(np.radians(degrees)))

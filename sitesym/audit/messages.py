@@ -1,10 +1,13 @@
-"""The two lines of a verdict: what it is, and what to do."""
+"""The two lines of a verdict: what it is, with what symmetry cannot tell, and what to do."""
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from itertools import groupby
+
 from sitesym.audit.measurement import Measurement
 from sitesym.audit.orders import STANDARD_ORDER, order_text
-from sitesym.audit.result import IndexFinding, Reading, Slip
+from sitesym.audit.result import Ambiguity, IndexFinding, Reading, Slip
 from sitesym.audit.verdicts import Finding
 from sitesym.groups import PointGroup
 
@@ -13,30 +16,66 @@ _ROUNDING = 1e-12
 
 
 def message(
-    measurement: Measurement, group: PointGroup, noise: float, index: IndexFinding, finding: Finding
+    measurement: Measurement,
+    group: PointGroup,
+    index: IndexFinding,
+    finding: Finding,
+    cannot_tell: Sequence[Ambiguity] = (),
 ) -> str:
     """Verdict with its evidence in the first line, the next step in the second."""
     subject = f"{measurement.kind.name} in class {group.oriented}"
-    first, second = _LINES[finding.verdict](finding, index)
-    return f"{finding.verdict}: {subject} {first}\n{second}"
+    first, second = _LINES[finding.verdict](finding, index, _not_stated(measurement))
+    return f"{finding.verdict}: {subject} {first}{_clause(cannot_tell)}\n{second}"
 
 
-def _consistent(finding: Finding, index: IndexFinding) -> tuple[str, str]:
+#: What each sort of ambiguity is called in the first line.
+_SORTS = {
+    "order": "another order of columns",
+    "layout": "another layout",
+    "factor": "other shear factors",
+    "axes": "other axes",
+    "hand": "the other hand",
+    "entry": "a slip in a free entry",
+}
+#: Sorts that are shown with an example; more would make the line long.
+_WITH_EXAMPLE = ("order", "axes")
+
+
+def _clause(cannot_tell: Sequence[Ambiguity]) -> str:
+    """The sorts of ambiguity in a few words."""
+    named = []
+    for sort, alike in groupby(cannot_tell, key=lambda one: one.sort):
+        example = next(alike).reading.removeprefix("order ").removeprefix("axes ")
+        named.append(f"{_SORTS[sort]} ({example})" if sort in _WITH_EXAMPLE else _SORTS[sort])
+    if not named:
+        return ""
+    listed = " or ".join(filter(None, (", ".join(named[:-1]), named[-1])))
+    return f"; symmetry cannot tell this from {listed}"
+
+
+def _not_stated(measurement: Measurement) -> str:
+    """What the search had to supply: the order, the axes or both."""
+    no_axes = isinstance(measurement.axes, str) and measurement.axes == "unknown"
+    missing = (["order"] if measurement.order is None else []) + (["axes"] if no_axes else [])
+    return " and ".join(missing)
+
+
+def _consistent(finding: Finding, index: IndexFinding, missing: str) -> tuple[str, str]:
     reading = finding.best
     if reading is None:
         return "must vanish, and does", "nothing to do"
     if finding.stated is None:
         return (
             f"obeys when read in axes {reading.axes}{_departures(reading)} ({_residual(reading)})",
-            "axes or order were not stated: state those found, and look at the equivalent choices of axes",
+            f"state the {missing} found: the source does not, but every choice that fits gives this tensor",
         )
     return (
         f"obeys as stated ({_residual(reading)})",
-        "nothing to do; signs and axes that symmetry leaves open are listed as equivalent axes",
+        "nothing to do; what symmetry cannot tell, the source has to state",
     )
 
 
-def _otherwise(finding: Finding, index: IndexFinding) -> tuple[str, str]:
+def _otherwise(finding: Finding, index: IndexFinding, missing: str) -> tuple[str, str]:
     reading = finding.best
     assert reading is not None
     stated = f"; as stated {_residual(finding.stated)}" if finding.stated else ""
@@ -48,7 +87,7 @@ def _otherwise(finding: Finding, index: IndexFinding) -> tuple[str, str]:
     return first, f"check the axes, order and factors at the source; state those found{turn}{others}"
 
 
-def _violates(finding: Finding, index: IndexFinding) -> tuple[str, str]:
+def _violates(finding: Finding, index: IndexFinding, missing: str) -> tuple[str, str]:
     stated = (
         f"fails as stated ({_residual(finding.stated)})" if finding.stated else "fails in every reading tried"
     )
@@ -82,18 +121,21 @@ def _violates(finding: Finding, index: IndexFinding) -> tuple[str, str]:
     )
 
 
-def _cannot_tell(finding: Finding, index: IndexFinding) -> tuple[str, str]:
-    if finding.best is None:
+def _cannot_tell(finding: Finding, index: IndexFinding, missing: str) -> tuple[str, str]:
+    reading = finding.best
+    if reading is None:
         return "is zero within its uncertainty", "give more digits, or measure again: nothing can be tested"
-    readings = [finding.best, *finding.rivals]
-    listed = "; ".join(f"axes {r.axes}{_departures(r)}" for r in readings[:3])
+    first = f"obeys when read in axes {reading.axes}{_departures(reading)} ({_residual(reading)})"
+    elsewhere = [r for r in finding.rivals if r.axes != reading.axes]
+    others = " or ".join(f"axes {r.axes}{_departures(r)}" for r in elsewhere[:2])
+    rivals = f", and as well in {others}" if others else ""
     return (
-        f"obeys in {len(readings)} readings that give different tensors: {listed}",
-        "state the axes and the order of the source",
+        f"{first}{rivals}, but the source does not state its {missing}",
+        f"state the {missing} of the source: other choices give another tensor, which obeys as well",
     )
 
 
-def _no_constraint(finding: Finding, index: IndexFinding) -> tuple[str, str]:
+def _no_constraint(finding: Finding, index: IndexFinding, missing: str) -> tuple[str, str]:
     return "may take any values: symmetry forbids nothing", "nothing was tested; a pass here says nothing"
 
 

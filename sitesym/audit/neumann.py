@@ -66,60 +66,44 @@ def element_signs(kind: TensorKind, group: PointGroup) -> FloatArray:
     return signs
 
 
-@lru_cache(maxsize=512)
-def equivalent_actions(kind: TensorKind, group: PointGroup) -> FloatArray:
-    """What equivalent choices of axes do to the allowed coefficients, the identity first, shape (m, k, k).
-
-    ``group`` in the standard orientation. The turns of `turns_of_normaliser`, each also with the opposite
-    hand.
-    """
-    spaces = subspaces(kind, group)
-    turns = np.array([np.eye(3), *turns_of_normaliser(group)])
-    moved = spaces.space.rotated(turns, spaces.allowed.T)
-    actions = spaces.allowed @ moved
-    return frozen(actions if inversion_sign(kind) > 0 else np.concatenate([actions, -actions]))
-
-
 def inversion_sign(kind: TensorKind) -> int:
     """Sign a tensor of this kind takes when the hand of the axes changes: -1 for piezoelectricity."""
     return -1 if (kind.rank + int(kind.axial)) % 2 else 1
 
 
-@lru_cache(maxsize=512)
-def turns_of_normaliser(group: PointGroup) -> tuple[FloatArray, ...]:
-    """Turns (3, 3) that map a group in the standard orientation onto itself and are none of its elements.
+def acting_group(kind: TensorKind, group: PointGroup) -> PointGroup:
+    """The group as tensors of a kind see it: the proper parts alone where the inversion changes nothing.
 
-    Besides those of the cube and the hexagonal prism: 45 degrees about z (422, 4mm, 4/mmm) and 30 degrees
-    (622, 6mm, 6/mmm), where the twofold axes or mirrors of two sorts change places.
+    A stiffness does not tell -42m from 422, so that turns by 45 degrees are equivalent for it in both.
     """
-    finer = (about_z(45.0), about_z(30.0))
-    return (*equivalent_turns(group), *(turn for turn in finer if normalises(group, turn)))
+    return _proper_parts(group) if inversion_sign(kind) > 0 else group
 
 
-@lru_cache(maxsize=512)
-def equivalent_rotations(group: PointGroup) -> FloatArray:
-    """Products of a turn of `turns_of_normaliser` (or none) and a proper part of an element, (m, 3, 3)."""
+@lru_cache(maxsize=128)
+def _proper_parts(group: PointGroup) -> PointGroup:
     proper = group.rotations_cart * group.determinants[:, None, None]
-    turns = np.array([np.eye(3), *turns_of_normaliser(group)])
-    return frozen((turns[:, None] @ proper[None]).reshape(-1, 3, 3))
+    distance = np.abs(proper[:, None] - proper[None]).max(axis=(2, 3))
+    first = np.argmax(distance < SAME_MATRIX, axis=1) == np.arange(len(proper))
+    return group if first.all() and group.is_chiral else PointGroup.from_cartesian(proper[first])
 
 
 @lru_cache(maxsize=512)
-def is_continuous(group: PointGroup) -> bool:
-    """Whether turns by any angle about some axis x, y or z map the group onto itself."""
-    arbitrary = about_z(17.0)
-    turns = [arbitrary[np.ix_(cycle, cycle)] for cycle in ([0, 1, 2], [1, 2, 0], [2, 0, 1])]
-    return any(normalises(group, turn) for turn in turns)
+def equivalent_actions(kind: TensorKind, group: PointGroup) -> FloatArray:
+    """What equivalent choices of axes do to the allowed coefficients, the identity first, shape (m, k, k).
+
+    ``group`` in the standard orientation. The turns of `equivalent_turns`, each also with the opposite
+    hand.
+    """
+    spaces = subspaces(kind, group)
+    turns = np.array([np.eye(3), *equivalent_turns(acting_group(kind, group))])
+    moved = spaces.space.rotated(turns, spaces.allowed.T)
+    actions = spaces.allowed @ moved
+    return frozen(actions if inversion_sign(kind) > 0 else np.concatenate([actions, -actions]))
 
 
-def normalises(group: PointGroup, turn: FloatArray, within: float = SAME_MATRIX) -> bool:
-    """Whether a turn maps the operations of a group onto themselves, entries equal ``within`` so much."""
-    images = turn @ group.rotations_cart @ turn.T
-    distance = np.abs(images[:, None] - group.rotations_cart[None]).max(axis=(2, 3))
-    return bool((distance.min(axis=1) < within).all())
-
-
-def about_z(degrees: float) -> FloatArray:
-    """Turn of axes by an angle about z, new axes as rows."""
-    cosine, sine = np.cos(np.radians(degrees)), np.sin(np.radians(degrees))
-    return np.array([[cosine, sine, 0.0], [-sine, cosine, 0.0], [0.0, 0.0, 1.0]])
+@lru_cache(maxsize=512)
+def equivalent_rotations(kind: TensorKind, group: PointGroup) -> FloatArray:
+    """Products of a turn of `equivalent_turns` (or none) and a proper part of an element, (m, 3, 3)."""
+    proper = group.rotations_cart * group.determinants[:, None, None]
+    turns = np.array([np.eye(3), *equivalent_turns(acting_group(kind, group))])
+    return frozen((turns[:, None] @ proper[None]).reshape(-1, 3, 3))

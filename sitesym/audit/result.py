@@ -147,6 +147,33 @@ class EquivalentAxes:
     mixes: bool
 
 
+AmbiguitySort: TypeAlias = Literal["order", "layout", "factor", "axes", "hand", "entry"]
+
+
+@dataclass(frozen=True, eq=False)
+class Ambiguity:
+    """Another way to read the array, which gives another tensor that obeys as well: symmetry cannot tell.
+
+    ``sort``: what is read otherwise: the order of the pairs, the layout, the factors, the axes, their hand,
+    or single entries. ``reading``: in words. ``rotation`` (3, 3), ``order``, ``layout``, ``factor``: of the
+    other reading, as in `Reading`; all as found for a sort of ``entry``. ``any_angle``: whether every angle
+    about the axis of the turn will do, ``rotation`` being one of them. ``flips``: entries that change sign,
+    for a turn or a change of hand that does nothing else; ``mixes``: whether it does more. ``entries``: names
+    of the entries that stand in no relation to others, each alone free in size and sign.
+    """
+
+    sort: AmbiguitySort
+    reading: str
+    rotation: FloatArray
+    order: Order
+    layout: Layout
+    factor: str
+    any_angle: bool = False
+    flips: tuple[str, ...] = ()
+    mixes: bool = False
+    entries: tuple[str, ...] = ()
+
+
 @dataclass(frozen=True)
 class TensorSymmetry:
     """The largest point group that leaves the tensor unchanged within noise, in the axes of the crystal.
@@ -170,9 +197,10 @@ class AuditResult:
     ``stated``: the reading as stated (None where order or axes are unknown). ``best``: the reading that
     explains the tensor, or the slip; None when nothing does. ``rivals``: others that do about as well.
     ``cause``: what the verdict is put down to: another reading, a slip, a crystal of another class, broken
-    index symmetry, nothing found, or '' where nothing is wrong. ``undetected``: changes of axes, order,
-    layout or factor that leave the tensor as obedient as it is: symmetry cannot exclude them. ``message``:
-    two lines, the verdict and what to do.
+    index symmetry, nothing found, or '' where nothing is wrong. ``equivalent_axes``: changes of axes that no
+    tensor of the kind can show in this class. ``cannot_tell``: everything that gives another tensor than the
+    reading the verdict rests on and obeys as well; empty where nothing obeys. ``message``: two lines, the
+    verdict and what to do.
     """
 
     measurement: Measurement
@@ -188,7 +216,7 @@ class AuditResult:
     forbidden: tuple[Deviation, ...] = ()
     relations: tuple[Deviation, ...] = ()
     equivalent_axes: tuple[EquivalentAxes, ...] = ()
-    undetected: tuple[str, ...] = ()
+    cannot_tell: tuple[Ambiguity, ...] = ()
     tensor_symmetry: TensorSymmetry | None = None
     constraints: int = 0
     independent: int = 0

@@ -13,6 +13,7 @@ import numpy as np
 
 from sitesym.arrays import FloatArray, frozen
 from sitesym.audit.neumann import Subspaces
+from sitesym.groups.symbols import rotation_about
 
 _GRID_POINTS = 600
 _STARTS = 16
@@ -88,14 +89,9 @@ def _forbidden(spaces: Subspaces, rotations: FloatArray, coordinates: FloatArray
 
 
 def rotation_of(vector: FloatArray) -> FloatArray:
-    """The rotation (3, 3) by |vector| radians about the vector (Rodrigues)."""
+    """The rotation (3, 3) by |vector| radians about the vector."""
     angle = float(np.linalg.norm(vector))
-    if angle < 1e-15:
-        return np.eye(3)
-    x, y, z = vector / angle
-    cross = np.array([[0.0, -z, y], [z, 0.0, -x], [-y, x, 0.0]])
-    rotation: FloatArray = np.eye(3) + np.sin(angle) * cross + (1.0 - np.cos(angle)) * cross @ cross
-    return rotation
+    return np.eye(3) if angle < 1e-15 else rotation_about(vector, angle)
 
 
 @lru_cache(maxsize=1)

@@ -20,16 +20,15 @@ from sitesym.audit.layouts import orders_of
 from sitesym.audit.measurement import Measurement
 from sitesym.audit.neumann import (
     Subspaces,
+    acting_group,
     equivalent_actions,
     equivalent_rotations,
-    is_continuous,
-    normalises,
 )
 from sitesym.audit.orders import STANDARD_ORDER, order_text
 from sitesym.audit.result import IndexFinding, Reading, Residual
 from sitesym.audit.uncertainty import judged, noise_of
 from sitesym.audit.variants import Variant
-from sitesym.groups import PointGroup
+from sitesym.groups.normaliser import directions_of_any_turn, normalises
 
 #: A residual below this fraction of the noise level is not taken for better than another one.
 _FLOOR = 0.1
@@ -124,7 +123,8 @@ def orientations(measurement: Measurement, frames: Frames) -> tuple[Orientation,
     rotations = np.array([turn.matrix for turn in turns])[:, None] @ bases[None]
     labels = [f"{name}, {turn.words}" if turn.words else name for turn in turns for name in named]
     flat = rotations.reshape(-1, 3, 3)
-    first, member = _classes_of_axes(frames.standard_from_file @ np.swapaxes(flat, 1, 2), frames.standard)
+    equivalent = equivalent_rotations(measurement.kind, frames.standard)
+    first, member = _classes_of_axes(frames.standard_from_file @ np.swapaxes(flat, 1, 2), equivalent)
     together: list[list[str]] = [[] for _ in first]
     for number, label in zip(member.tolist(), labels, strict=True):
         together[number].append(label)
@@ -147,12 +147,12 @@ def _axes_choices(place: int, named: int, unknown: bool) -> int:
     return named if place < named else named * len(tried_turns())
 
 
-def _classes_of_axes(to_standard: FloatArray, group: PointGroup) -> tuple[IntArray, IntArray]:
-    """First member of each class of rotations (m, 3, 3) that lead to equivalent axes, and the class of each.
+def _classes_of_axes(to_standard: FloatArray, turns: FloatArray) -> tuple[IntArray, IntArray]:
+    """First member of each class of rotations (m, 3, 3) that ``turns`` (t, 3, 3) make equivalent, and the
+    class of each.
 
-    A fixed linear function of the matrices, its largest value over all equivalent turns, names the class.
+    A fixed linear function of the matrices, its largest value over all turns, names the class.
     """
-    turns = equivalent_rotations(group)
     images = (turns[:, None] @ to_standard[None]).reshape(len(turns), -1, 9)
     marks = np.round(images @ _MARK, 6).max(axis=0)
     _, first, member = np.unique(marks, return_index=True, return_inverse=True)
@@ -358,7 +358,8 @@ def _same_tensor(field: Field, leader: Candidate, places: IntArray) -> BoolArray
     images = equivalent_actions(field.spaces.space.kind, field.spaces.group) @ leader.coefficients
     distance = np.linalg.norm(own[:, None, :] - images[None], axis=2).min(axis=1)
     same: BoolArray = distance <= 2.0 * field.tolerances[places[:, 1]]
-    if not is_continuous(field.spaces.group):
+    acting = acting_group(field.spaces.space.kind, field.spaces.group)
+    if not len(directions_of_any_turn(acting)):
         return same
     to_standard = field.frames.standard_from_file
     for number in np.flatnonzero(~same):
@@ -366,5 +367,5 @@ def _same_tensor(field: Field, leader: Candidate, places: IntArray) -> BoolArray
         if field.variants[variant] is leader.variant:
             turn = to_standard @ field.orientations[orientation].rotation.T
             back = leader.orientation.rotation @ to_standard.T
-            same[number] = normalises(field.spaces.group, turn @ back, _SAME_AXES)
+            same[number] = normalises(acting, turn @ back, _SAME_AXES)
     return same

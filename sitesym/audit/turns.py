@@ -11,6 +11,7 @@ import numpy as np
 from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.audit.frames import Frames
 from sitesym.audit.result import Turn
+from sitesym.audit.rotation_words import angle_and_axis
 from sitesym.groups.elements import direction_text
 
 _LARGEST_INDEX = 3
@@ -33,17 +34,6 @@ def turn_of(rotation: FloatArray, base: FloatArray, frames: Frames) -> Turn:
     turn = rotation.T @ base
     angle, axis = angle_and_axis(turn)
     return Turn(angle, frozen(axis), tuple(_nearest(row, frames.lattice) for row in rotation))
-
-
-def angle_and_axis(turn: FloatArray) -> tuple[float, FloatArray]:
-    """Angle in degrees (0 to 180) and unit axis of a proper rotation."""
-    cosine = float(np.clip((np.trace(turn) - 1.0) / 2.0, -1.0, 1.0))
-    vector = np.array([turn[2, 1] - turn[1, 2], turn[0, 2] - turn[2, 0], turn[1, 0] - turn[0, 1]]) / 2.0
-    angle = float(np.degrees(np.arctan2(np.linalg.norm(vector), cosine)))
-    # The eigenvector keeps its accuracy near 180 degrees, where the antisymmetric part vanishes.
-    _, _, rows = np.linalg.svd(turn - np.eye(3))
-    axis = rows[2]
-    return angle, axis * (-1.0 if axis @ vector < 0.0 else 1.0)
 
 
 def _nearest(direction: FloatArray, lattice: FloatArray | None) -> tuple[str, float]:

@@ -6,8 +6,9 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from sitesym.audit.measurement import Measurement
 from sitesym.audit.other_crystal import OtherCrystal, other_crystal
-from sitesym.audit.result import Cause, Reading, Verdict
+from sitesym.audit.result import Ambiguity, Cause, Reading, Verdict
 from sitesym.audit.rotation_search import best_rotation
 from sitesym.audit.search import (
     EARNED,
@@ -43,6 +44,11 @@ class Finding:
     rivals: tuple[Reading, ...] = ()
     crystal: OtherCrystal | None = None
 
+    @property
+    def obeys(self) -> bool:
+        """Whether the tensor obeys in some reading, with no slip to be put right first."""
+        return self.verdict in ("consistent", "consistent-otherwise", "cannot-tell")
+
 
 def as_stated(field: Field) -> Finding:
     """Whether a tensor obeys as stated: long enough to be judged, in a crystal that constrains it.
@@ -75,6 +81,19 @@ def _unstated(field: Field) -> Finding:
     rivals = tuple(judged_reading(field, o) for o in others if o.score <= best.score + RIVAL)
     verdict: Verdict = "cannot-tell" if rivals else "consistent"
     return Finding(verdict, "", None, judged_reading(field, best), rivals)
+
+
+def left_open(
+    finding: Finding, measurement: Measurement, cannot_tell: tuple[Ambiguity, ...]
+) -> Finding:
+    """The finding; where the order or the axes were not stated and others obey as well, it cannot tell."""
+    open_sorts = {"axes"} if isinstance(measurement.axes, str) and measurement.axes == "unknown" else set()
+    open_sorts |= {"order"} if measurement.order is None else set()
+    if finding.verdict != "consistent" or finding.best is None or not open_sorts:
+        return finding
+    as_read = finding.best.layout, finding.best.factor
+    undecided = any(one.sort in open_sorts and (one.layout, one.factor) == as_read for one in cannot_tell)
+    return replace(finding, verdict="cannot-tell") if undecided else finding
 
 
 def _explained(field: Field, fits: list[Candidate]) -> Finding:

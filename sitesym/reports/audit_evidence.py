@@ -9,6 +9,7 @@ import numpy as np
 
 from sitesym.audit.orders import order_text
 from sitesym.audit.result import (
+    Ambiguity,
     AuditResult,
     Deviation,
     IndexFinding,
@@ -23,7 +24,7 @@ from sitesym.audit.stability import Stability
 def evidence(result: AuditResult | None) -> dict[str, Any]:
     """The fields of a record that come from its result; empty where there is none."""
     if result is None:
-        lists = ("rivals", "forbidden", "relations", "equivalent_axes", "undetected", "message")
+        lists = ("rivals", "forbidden", "relations", "equivalent_axes", "cannot_tell", "message")
         nothing = (
             "stated",
             "best",
@@ -46,7 +47,7 @@ def evidence(result: AuditResult | None) -> dict[str, Any]:
             {"turn": axes.turn, "flips": list(axes.flips), "mixes": axes.mixes}
             for axes in result.equivalent_axes
         ],
-        "undetected": list(result.undetected),
+        "cannot_tell": [_ambiguity_entry(one) for one in result.cannot_tell],
         "tensor_symmetry": None if symmetry is None else _symmetry_entry(symmetry),
         "cause": result.cause or None,
         "message": result.message.splitlines(),
@@ -136,6 +137,22 @@ def _deviation_entry(deviation: Deviation) -> dict[str, Any]:
         "tolerance": deviation.tolerance,
         "relation": deviation.relation or None,
     }
+
+
+def _ambiguity_entry(one: Ambiguity) -> dict[str, Any]:
+    """The sort and the reading in words, and beside them only what applies to the sort."""
+    entry: dict[str, Any] = {"sort": one.sort, "reading": one.reading}
+    match one.sort:
+        case "axes":
+            rotation = {} if one.any_angle else {"rotation": one.rotation.tolist()}
+            return entry | {"flips": list(one.flips), "mixes": one.mixes} | rotation
+        case "hand":
+            return entry | {"flips": list(one.flips), "mixes": one.mixes}
+        case "entry":
+            return entry | {"entries": list(one.entries)}
+        case _:
+            read = {"order": order_text(one.order), "layout": one.layout, "factor": one.factor or None}
+            return entry | read
 
 
 def _symmetry_entry(symmetry: TensorSymmetry) -> dict[str, Any]:

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
+from itertools import groupby
 from typing import Any
 
 from sitesym.reports.layout import vector_text
@@ -90,6 +91,22 @@ def symmetry_text(symmetry: Entry) -> str:
     }
     own = f"symmetry {symmetry['symbol']} ({symmetry['system']}) within the noise"
     return f"{own}, {words[symmetry['relation']]}"
+
+
+def ambiguity_lines(ambiguities: Sequence[Entry]) -> Iterator[str]:
+    """What symmetry cannot tell, one line a sort; a turn of axes with what it does to the components."""
+    yield "read in one of these ways the array is another tensor, which obeys as well:"
+    for sort, alike in groupby(ambiguities, key=lambda one: one["sort"]):
+        yield f"{sort}: {cut([_ambiguity_text(one) for one in alike])}"
+
+
+def _ambiguity_text(one: Entry) -> str:
+    if one["sort"] == "entry":
+        return f"any size and sign of {' '.join(one['entries'])}: free, in no relation to other entries"
+    said = one["reading"].removeprefix(f"{one['sort']} ")
+    if one.get("mixes"):
+        return f"{said} mixes components"
+    return f"{said} reverses {' '.join(one['flips'])}" if one.get("flips") else said
 
 
 def cut(items: Sequence[str], most: int = MOST_ITEMS) -> str:

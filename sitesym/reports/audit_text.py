@@ -7,7 +7,7 @@ from collections.abc import Iterator, Sequence
 from sitesym.reports.audit_phrases import (
     MOST_ITEMS,
     Entry,
-    cut,
+    ambiguity_lines,
     index_text,
     percent,
     reading_text,
@@ -96,10 +96,8 @@ def _evidence(one: Entry) -> Iterator[str]:
         yield _line("axes" if as_stated else "its axes", _rows(one["best"]["rotation"]))
     for rival in one["rivals"][:MOST_ITEMS]:
         yield _line("rival", reading_text(rival))
-    if one["equivalent_axes"]:
-        yield _line("equivalent", "\n".join(_equivalent_lines(one)))
-    if one["undetected"]:
-        yield _line("undetected", f"symmetry cannot exclude: {cut(one['undetected'])}")
+    if one["cannot_tell"]:
+        yield _line("cannot tell", "\n".join(ambiguity_lines(one["cannot_tell"])))
     if one["tensor_symmetry"] is not None:
         yield _line("tensor has", symmetry_text(one["tensor_symmetry"]))
     if one["stability"] is not None:
@@ -146,14 +144,6 @@ def _deviations(label: str, deviations: Sequence[Entry]) -> Iterator[str]:
 def _rows(rotation: Sequence[Sequence[float]]) -> str:
     first, *rest = (f"{name} = {vector_text(row)}" for name, row in zip("xyz", rotation, strict=True))
     return "\n".join([f"{first}  in the file's Cartesian axes", *rest])
-
-
-def _equivalent_lines(one: Entry) -> Iterator[str]:
-    yield "a zero residual does not tell these from the axes above:"
-    symbol = one["measurement"]["symbol"]
-    for axes in one["equivalent_axes"][:MOST_ITEMS]:
-        flips = ", ".join(f"{symbol}{name}" for name in axes["flips"])
-        yield f"{axes['turn']}: " + ("mixes components" if axes["mixes"] else f"reverses {flips}")
 
 
 def cross_checks_text(checks: Sequence[Entry]) -> str:

@@ -199,14 +199,6 @@ def test_without_a_stated_order_a_telling_class_gives_the_order_and_another_cann
     assert unknown.rivals
 
 
-def test_an_order_that_symmetry_cannot_exclude_is_listed() -> None:
-    group = PointGroup.from_symbol("mmm")
-    values = to_matrix(STIFFNESS, obeying(STIFFNESS, group))
-    result = audit(Measurement("c", STIFFNESS, values, axes="lattice"), group)
-    assert result.verdict == "consistent"
-    assert "order 11 22 33 12 23 13" in result.undetected
-
-
 @pytest.mark.parametrize(
     ("values", "text"),
     [(np.zeros((4, 6)), "shape"), (np.full((3, 6), np.nan), "finite")],
