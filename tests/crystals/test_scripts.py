@@ -1,6 +1,7 @@
 """Samples of the long checks: settings of space groups found and read back, and mutated texts."""
 
 import importlib.util
+import subprocess
 import sys
 from collections import Counter
 from importlib.machinery import SourceFileLoader
@@ -10,6 +11,7 @@ import numpy as np
 import pytest
 
 SCRIPTS = Path(__file__).parents[2] / "scripts"
+INTAKE = ("bench_intake", "check_open_structures", "check_settings", "compare_finders", "fuzz_intake")
 
 
 def script(name):
@@ -34,6 +36,15 @@ def test_structures_in_sampled_settings_are_found_and_read_back(tmp_path, part):
             assert "e" in check_settings.hm_symbol(hall_number)
             del faults["hm"]
         assert faults == {}, hall_number
+
+
+@pytest.mark.parametrize("name", INTAKE)
+def test_a_script_explains_itself(name):
+    command = [sys.executable, str(SCRIPTS / name), "--help"]
+    run = subprocess.run(command, capture_output=True, text=True, env={"PYTHONPATH": str(SCRIPTS.parent)})
+    assert run.returncode == 0, run.stderr
+    assert run.stdout.startswith(f"usage: {name} ")
+    assert not run.stderr
 
 
 @pytest.mark.parametrize("file_format", ["cif", "vasp", "extxyz"])
