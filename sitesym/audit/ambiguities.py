@@ -86,7 +86,9 @@ def _obeying_variants(base: _Base) -> list[int]:
     distances = np.linalg.norm(coordinates - base.variant.coordinates, axis=1)
     moved = field.spaces.space.rotated(base.to_standard[None], coordinates.T)[0]
     left = np.linalg.norm(field.spaces.forbidden_part(moved), axis=0)
-    near = np.flatnonzero((distances > _DIFFERENT * base.tolerance) & (left <= field.tolerances))
+    # The noise is that of the array as it stands, also where a factor makes the tensor smaller.
+    within = left <= np.maximum(field.tolerances, base.tolerance)
+    near = np.flatnonzero((distances > _DIFFERENT * base.tolerance) & within)
     return [n for n in near.tolist() if _accepted(base, field.variants[n])]
 
 
