@@ -7,7 +7,7 @@ import pytest
 
 from sitesym.groups import PointGroup, standard_rotation
 from sitesym.groups.symbols import ORIENTED, SCHOENFLIES, rotation_about
-from sitesym.tensors import TensorKind, all_kinds, allowed_form, contraction, kind, turned
+from sitesym.tensors import TensorKind, all_kinds, allowed_form, contraction, kind, kind_from_jahn, turned
 
 SPELLINGS = [spelling for symbol in SCHOENFLIES for spelling in ORIENTED.get(symbol, (symbol,))]
 UP_TO_FOUR = [k for k in all_kinds() if k.rank <= 4]
@@ -122,3 +122,15 @@ def test_axes_tilted_a_little_change_no_count_and_keep_coefficients_small(tilt: 
             form = allowed_form(tensor_kind, tilted)
             assert form.independent_count == allowed_form(tensor_kind, group).independent_count
             assert np.abs(form.coefficients).max(initial=0.0) < 20, (symbol, tensor_kind.name)
+
+
+@pytest.mark.parametrize("symbol", ["mm2", "mmm", "-6m2", "32"])
+@pytest.mark.parametrize("seed", [0, 4, 5, 28])
+def test_many_components_in_any_axes_lose_none_of_their_number(symbol: str, seed: int) -> None:
+    # over a hundred components: solving in the wished order alone would lose all digits in some of these axes
+    group = PointGroup.from_symbol(symbol)
+    turned_group = group.rotated(random_turn(seed))
+    for tensor_kind in (kind("fourth-order-elastic"), kind_from_jahn("[[V2]2]V2"), kind_from_jahn("[V2]3")):
+        form = allowed_form(tensor_kind, turned_group)
+        assert form.independent_count == allowed_form(tensor_kind, group).independent_count
+        assert np.abs(form.coefficients).max() < 60, tensor_kind.name
