@@ -25,7 +25,7 @@ MAY_IMPORT = {
 }
 
 #: Modules under everything; they may import each other and nothing else of the package.
-FOUNDATION = {"errors", "tolerances", "arrays", "__init__"}
+FOUNDATION = {"errors", "tolerances", "arrays", "choices", "formats", "__init__"}
 
 
 def imported_modules(source: str, module: str) -> Iterator[str]:

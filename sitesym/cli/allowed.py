@@ -7,9 +7,10 @@ from typing import Any, Final
 import click
 import numpy as np
 
+from sitesym.choices import ReadingChoices
 from sitesym.cli.options import emit, output_options, reading_options, reliability_options, split_names
 from sitesym.cli.subject import Subject, read_matrix, subject_arguments, subject_of
-from sitesym.crystals import AXES_NAMES, ReadingChoices, Site
+from sitesym.crystals import AXES_NAMES, Site
 from sitesym.errors import TensorInputError, UsageError
 from sitesym.reports.allowed import allowed_document
 from sitesym.reports.sites import site_entry

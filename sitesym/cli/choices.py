@@ -3,17 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import Any, Final, TypeVar
+from typing import Any, TypeVar
 
 import click
 
+from sitesym.choices import DEFAULT_FINDER, FINDER_CHOICES, MARKS, STATEMENTS
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
 _Command = TypeVar("_Command", bound=Callable[..., Any])
-
-#: `sitesym.crystals.STATEMENTS` and `MARKS`, without loading them; the tests hold them equal.
-STATEMENTS: Final = ("operations", "hall", "hm", "number")
-MARKS: Final = ("isotope", "oxidation", "label", "moment")
 
 tolerance_option = click.option(
     "--tolerance",
@@ -30,8 +27,8 @@ def reliability_options(command: _Command) -> _Command:
     """``--tolerance``, ``--finder`` and ``--ladder``."""
     finder = click.option(
         "--finder",
-        type=click.Choice(("spglib", "moyo", "both")),
-        default="spglib",
+        type=click.Choice(FINDER_CHOICES),
+        default=DEFAULT_FINDER,
         show_default=True,
         help="Library that finds the symmetry; both: the first, with the second as second opinion.",
     )

@@ -5,9 +5,9 @@ from __future__ import annotations
 import click
 import numpy as np
 
+from sitesym.choices import ReadingChoices
 from sitesym.cli.options import output_options, reading_options, tolerance_option, write
 from sitesym.cli.subject import subject_arguments, subject_of
-from sitesym.crystals import ReadingChoices
 from sitesym.groups import character_table
 from sitesym.reports.irreps import irreps_document
 from sitesym.reports.irreps_report import irreps_text

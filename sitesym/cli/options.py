@@ -8,12 +8,12 @@ from typing import Any, TypeVar, cast
 
 import click
 
+from sitesym.choices import ReadingChoices
 from sitesym.cli.choices import distinguish_option, frame_option, symmetry_from_option
 from sitesym.cli.choices import reliability_options as reliability_options
 from sitesym.cli.choices import split_names as split_names
 from sitesym.cli.choices import tolerance_option as tolerance_option
 from sitesym.cli.output import write as write
-from sitesym.crystals import ReadingChoices
 from sitesym.reports.markup import Document
 from sitesym.reports.render import FORMATS, render
 

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 import click
 
+from sitesym.choices import ReadingChoices
 from sitesym.cli.options import emit, output_options, reading_options, reliability_options
 from sitesym.cli.subject import symmetry_of_file
-from sitesym.crystals import ReadingChoices
 from sitesym.reports.sites import sites_document
 
 

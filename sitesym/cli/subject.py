@@ -11,11 +11,10 @@ import click
 import numpy as np
 
 from sitesym.arrays import FloatArray
+from sitesym.choices import DEFAULT_FINDER, ReadingChoices
 from sitesym.crystals import (
     AXES_NAMES,
-    DEFAULT_FINDER,
     CrystalSymmetry,
-    ReadingChoices,
     axes_for,
     examined_symmetry,
     read_crystal,

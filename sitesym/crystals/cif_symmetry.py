@@ -8,9 +8,10 @@ errors that name the choices. A file is never taken for P 1 because it is silent
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import TYPE_CHECKING, Final, TypeAlias
+from typing import TYPE_CHECKING, TypeAlias
 
 from sitesym.arrays import FloatArray, IntArray
+from sitesym.choices import check_statement
 from sitesym.crystals.cif_magnetic import magnetic_operations
 from sitesym.crystals.cif_settings import (
     REMEDY,
@@ -24,14 +25,11 @@ from sitesym.crystals.cif_settings import (
 )
 from sitesym.crystals.cif_values import first_column, first_text
 from sitesym.crystals.operations import StatedOperations, cell_text, metric_misfit
-from sitesym.errors import SpaceGroupStatementError, UsageError
+from sitesym.errors import SpaceGroupStatementError
 from sitesym.tolerances import CELL_METRIC
 
 if TYPE_CHECKING:
     import gemmi
-
-#: Statements a file can make of its space group, the most telling first.
-STATEMENTS: Final = ("operations", "hall", "hm", "number")
 
 OPERATION_TAGS = (
     "_space_group_symop_operation_xyz",
@@ -109,17 +107,6 @@ def stated_symmetry(
     setting = _fitting_setting(chosen, lattice, remarks)
     stated = StatedOperations(setting.rotations, setting.translations, _stated_by(chosen, setting))
     return StatedSymmetry(stated, name, tuple(remarks))
-
-
-def check_statement(name: str) -> None:
-    """Return for one of `STATEMENTS`; else UsageError."""
-    if name not in STATEMENTS:
-        raise UsageError(
-            "there is no such statement of symmetry",
-            name,
-            f"one of {', '.join(STATEMENTS)}",
-            "name one of these",
-        )
 
 
 def _only(declared: _Declared, symmetry_from: str) -> _Declared:

@@ -12,7 +12,8 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from sitesym.arrays import FloatArray, IntArray, frozen
-from sitesym.crystals.marks import Marks, checked_marks, kinds_of_atoms, marks_remarks, moment_texts
+from sitesym.choices import checked_marks
+from sitesym.crystals.marks import Marks, kinds_of_atoms, marks_remarks, moment_texts
 from sitesym.crystals.species import SYMBOLS, Species, reduced_formula
 from sitesym.crystals.validation import check_structure, fractional
 from sitesym.errors import CountMismatchError, NotPeriodicError, ReadingError

@@ -15,6 +15,7 @@ from tempfile import TemporaryDirectory
 from typing import IO, Final, TypeAlias, cast
 
 from sitesym.errors import FileTooLargeError, ReadingError, UnknownFormatError
+from sitesym.formats import content_name
 
 #: Default limit of a file, before and after decompression (megabytes of 10^6 bytes).
 LARGEST_FILE_MEGABYTES: Final = 500.0
@@ -45,11 +46,6 @@ def content(path: Path, largest_megabytes: float) -> bytes:
     if len(raw) > limit:
         raise _too_large(path, largest_megabytes, " once decompressed")
     return raw
-
-
-def content_name(path: Path) -> str:
-    """The name of the content: that of the file without the suffix of its compression."""
-    return path.stem if path.suffix.lower() in _OPENERS else path.name
 
 
 @contextmanager

@@ -13,7 +13,6 @@ from sitesym.errors import UsageError
 _FINDERS: Final = {"spglib": find_with_spglib, "moyo": find_with_moyo}
 
 FINDERS: Final = tuple(_FINDERS)
-DEFAULT_FINDER: Final = "spglib"
 
 
 def find_with(finder: str, crystal: Crystal, tolerance_angstrom: float) -> FoundSymmetry:

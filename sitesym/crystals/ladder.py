@@ -15,8 +15,8 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Final
 
+from sitesym.choices import DEFAULT_FINDER
 from sitesym.crystals.crystal import Crystal
-from sitesym.crystals.finders import DEFAULT_FINDER
 from sitesym.crystals.moyo_finder import hall_number_with_moyo
 from sitesym.crystals.spglib_finder import hall_number_with_spglib, setting
 from sitesym.crystals.symmetry import CrystalSymmetry

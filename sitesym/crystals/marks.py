@@ -6,39 +6,21 @@ are asked for: then atoms with different marks are atoms of different kinds to t
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
-from typing import Final, TypeAlias
+from collections.abc import Mapping, Sequence
+from typing import TypeAlias
 
 import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.crystals.species import Species
-from sitesym.errors import UsageError
 
-#: Marks that can be asked for. Atoms have equal marks when the texts are equal.
-MARKS: Final = ("isotope", "oxidation", "label", "moment")
-
-#: Name of a mark to its texts, one for each atom, empty where an atom has none.
+#: Name of a mark to its texts, one for each atom, empty where an atom has none; equal marks are equal texts.
 Marks: TypeAlias = Mapping[str, tuple[str, ...]]
 
 _MOMENTS_UNUSED = (
     "magnetic moments are read and not used: the groups given are those without time reversal; "
     "distinguish moment tells atoms apart by them"
 )
-
-
-def checked_marks(names: Iterable[str]) -> tuple[str, ...]:
-    """The names in the order of `MARKS`, each once. Raises UsageError for any other name."""
-    asked = set(names)
-    unknown = sorted(asked - set(MARKS))
-    if unknown:
-        raise UsageError(
-            "atoms cannot be told apart by this",
-            ", ".join(unknown),
-            f"any of {', '.join(MARKS)}",
-            "name these",
-        )
-    return tuple(name for name in MARKS if name in asked)
 
 
 def kinds_of_atoms(species: Sequence[Species], marks: Marks, distinguish: Sequence[str]) -> IntArray:

@@ -6,56 +6,22 @@ CIF goes through gemmi, POSCAR is read here, all else goes through ASE.
 from __future__ import annotations
 
 import os
-import re
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
-from fnmatch import translate
 from functools import partial
 from itertools import chain, islice
 from pathlib import Path
 from typing import Final, TypeAlias, Unpack
 
+from sitesym.choices import ReadingChoices, frame_index, refuse_block, refuse_symmetry_from
 from sitesym.crystals.ase_reader import Frame, detected_format, read_frames
-from sitesym.crystals.choices import ReadingChoices, frame_index, refuse_block, refuse_symmetry_from
 from sitesym.crystals.cif import blocks_with_atoms, cif_document, crystal_from_block
 from sitesym.crystals.crystal import Crystal, Source
-from sitesym.crystals.files import LARGEST_FILE_MEGABYTES, content, content_name, plain_file
+from sitesym.crystals.files import LARGEST_FILE_MEGABYTES, content, plain_file
 from sitesym.crystals.poscar import read_poscar
 from sitesym.crystals.vacuum import vacuum_remarks
 from sitesym.errors import EmptyStructureError, ReadingError, SitesymError, UnknownFormatError
-
-#: File names (lower case patterns) and the format they stand for; no other file of a folder is opened.
-FILE_NAMES: Final = (
-    ("*.cif", "cif"),
-    ("poscar", "vasp"),
-    ("poscar[_-]*", "vasp"),
-    ("*[._-]poscar", "vasp"),
-    ("contcar", "vasp"),
-    ("contcar[_-]*", "vasp"),
-    ("*[._-]contcar", "vasp"),
-    ("*.vasp", "vasp"),
-    ("vasprun*.xml", "vasp-xml"),
-    ("outcar", "vasp-out"),
-    ("outcar[_-]*", "vasp-out"),
-    ("*[._-]outcar", "vasp-out"),
-    ("*.extxyz", "extxyz"),
-    ("*.xyz", "extxyz"),
-    ("*.db", "db"),
-    ("*.json", "json"),
-    ("*.traj", "traj"),
-    ("*.pwi", "espresso-in"),
-    ("*.pwo", "espresso-out"),
-    ("geometry.in*", "aims"),
-    ("*.cell", "castep-cell"),
-    ("*.castep", "castep-castep"),
-    ("*.xsf", "xsf"),
-    ("*.gen", "gen"),
-    ("*.res", "res"),
-    ("*.cube", "cube"),
-)
-FORMATS: Final = tuple(dict.fromkeys(name for _, name in FILE_NAMES))
-_NAME_MATCHERS: Final = tuple((re.compile(translate(pattern)).match, name) for pattern, name in FILE_NAMES)
-
+from sitesym.formats import FORMATS, named_format
 
 #: One structure of a file: its name in the file, and what makes the crystal or raises why it cannot be made.
 Part: TypeAlias = tuple[str, Callable[[], Crystal]]
@@ -248,12 +214,3 @@ def _errors_of(path: str | os.PathLike[str]) -> Iterator[None]:
         ) from error
     except SitesymError as error:
         raise error.in_file(str(path)) from error.__cause__
-
-
-def named_format(path: str | os.PathLike[str]) -> str | None:
-    """The format a file name stands for, or None: such a file is left alone in a folder.
-
-    A suffix of compression (.gz, .xz, .zst) is left out of account.
-    """
-    name = content_name(Path(path)).lower()
-    return next((file_format for matches, file_format in _NAME_MATCHERS if matches(name)), None)

@@ -3,18 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import Final
 
+from sitesym.choices import DEFAULT_FINDER
 from sitesym.crystals.crystal import Crystal
-from sitesym.crystals.finders import DEFAULT_FINDER
 from sitesym.crystals.ladder import Ladder, tolerance_ladder
 from sitesym.crystals.pseudosymmetry import Pseudosymmetry, pseudosymmetry
 from sitesym.crystals.second_opinion import SecondOpinion, second_opinion
 from sitesym.crystals.symmetry import CrystalSymmetry, find_symmetry
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
-
-#: What can be asked for by name: one finder, or spglib with moyo as second opinion.
-FINDER_CHOICES: Final = ("spglib", "moyo", "both")
 
 
 @dataclass(frozen=True, eq=False)
@@ -34,8 +30,8 @@ def examined_symmetry(
 ) -> CrystalSymmetry:
     """The symmetry of a crystal with its `Reliability`.
 
-    ``finder`` is one of `FINDER_CHOICES`. ``ladder``: also climb the tolerance ladder, and measure how far a
-    crystal without inversion is from having it. Raises as `find_symmetry` does.
+    ``finder`` is one of `sitesym.choices.FINDER_CHOICES`. ``ladder``: also climb the tolerance ladder, and
+    measure how far a crystal without inversion is from having it. Raises as `find_symmetry` does.
     """
     first = DEFAULT_FINDER if finder == "both" else finder
     symmetry = find_symmetry(crystal, tolerance_angstrom, first)

@@ -14,8 +14,9 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from sitesym.arrays import FloatArray, frozen
+from sitesym.choices import DEFAULT_FINDER
 from sitesym.crystals.crystal import Crystal
-from sitesym.crystals.finders import DEFAULT_FINDER, find_with
+from sitesym.crystals.finders import find_with
 from sitesym.crystals.found import FoundSymmetry, SpaceGroupSetting
 from sitesym.crystals.idealisation import Idealisation, idealisation_of, nearest_symmetric_lattice
 from sitesym.crystals.sites import Site, build_sites

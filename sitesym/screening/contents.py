@@ -8,7 +8,7 @@ from contextlib import contextmanager
 from tempfile import TemporaryDirectory
 from typing import TypeAlias
 
-from sitesym.crystals.choices import ReadingChoices
+from sitesym.choices import ReadingChoices
 from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.reading import read_each
 from sitesym.errors import ReadingError, SitesymError

@@ -7,15 +7,13 @@ from dataclasses import dataclass
 from functools import cached_property
 from hashlib import blake2b
 from math import isfinite
-from typing import TYPE_CHECKING, Any, Final
+from typing import Any, Final
 
 from sitesym import __version__
+from sitesym.choices import ReadingChoices, check_choices, check_finder
 from sitesym.errors import UsageError
 from sitesym.screening.columns import DEFAULT_PROPERTIES, Column, columns_for
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
-
-if TYPE_CHECKING:
-    from sitesym.crystals.choices import ReadingChoices
 
 #: Libraries whose version may change a row.
 LIBRARIES: Final = ("spglib", "moyopy", "gemmi", "ase", "numpy")
@@ -27,7 +25,7 @@ class Settings:
     distance from inversion. ``properties``: kinds of tensors whose independent components are counted.
 
     ``frame`` (of each file that holds several structures, the one with this number, or "last"; None for all),
-    ``symmetry_from`` (counts for CIFs alone) and ``distinguish`` as in `sitesym.crystals.ReadingChoices`.
+    ``symmetry_from`` (counts for CIFs alone) and ``distinguish`` as in `sitesym.choices.ReadingChoices`.
     """
 
     tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM
@@ -54,21 +52,14 @@ class Settings:
 
     def check(self) -> None:
         """Return when every name means something; else UsageError with what there is."""
-        # Loads most of the package, which workers do at the same time.
-        from sitesym.crystals.choices import check_choices
-        from sitesym.crystals.reliability import FINDER_CHOICES
-        from sitesym.tensors import kind
-
-        for name in self.properties:
-            kind(name)
+        check_finder(self.finder)
         check_choices(self.reading)
-        if self.finder not in FINDER_CHOICES:
-            raise UsageError(
-                "unknown symmetry finder",
-                self.finder,
-                f"one of {', '.join(FINDER_CHOICES)}",
-                "name one of these",
-            )
+        if not set(self.properties) <= set(DEFAULT_PROPERTIES):
+            # Loads numpy and most of the package, which workers do at the same time.
+            from sitesym.tensors import kind
+
+            for name in self.properties:
+                kind(name)
         if not (isfinite(self.tolerance_angstrom) and self.tolerance_angstrom > 0.0):
             raise UsageError(
                 "the tolerance is not a length",

@@ -32,7 +32,7 @@ class WorkItem:
     database. ``identity`` is the text of the column ``id``. Which of the other fields count depends on
     ``kind``. `path`: the file at ``source``. `text`: ``content``, in UTF-8. `bytes`: ``content`` of a file
     called ``name``. `error`: ``error`` says why there is nothing to read. ``file_format`` is one of
-    `sitesym.crystals.FORMATS`, empty where the name tells it. ``atoms_hint``: about how many atoms.
+    `sitesym.formats.FORMATS`, empty where the name tells it. ``atoms_hint``: about how many atoms.
     """
 
     source: str

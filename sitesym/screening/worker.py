@@ -18,7 +18,7 @@ from multiprocessing.connection import Connection
 from time import perf_counter
 from typing import TypeAlias
 
-from sitesym.crystals.choices import ReadingChoices
+from sitesym.choices import ReadingChoices
 from sitesym.crystals.spglib_finder import setting
 from sitesym.errors import SitesymError
 from sitesym.screening.columns import Row

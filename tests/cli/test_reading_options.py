@@ -11,9 +11,6 @@ from ase.build import bulk
 from ase.io import write
 from click.testing import Result
 
-from sitesym.cli import choices
-from sitesym.crystals import MARKS, STATEMENTS
-
 Run = Callable[..., Result]
 Call = Callable[..., dict[str, Any]]
 
@@ -89,12 +86,6 @@ def test_a_contradiction_is_settled_by_the_statement_to_believe(
     assert "--symmetry-from hm or --symmetry-from number" in result.output
     believed = document("sites", str(path), "--symmetry-from", "number")
     assert believed["crystal"]["part"] == "data block odd; symmetry from the space group number 1"
-
-
-def test_options_are_those_of_the_library() -> None:
-    """They stand twice, so that `screen` starts without loading the library."""
-    assert choices.STATEMENTS == STATEMENTS
-    assert choices.MARKS == MARKS
 
 
 def test_symmetry_from_is_refused_where_there_is_no_cif(run: Run, structures: str) -> None:

@@ -13,7 +13,7 @@ from ase import Atoms
 from ase.build import bulk, fcc111, molecule
 from ase.db import connect
 
-from sitesym.crystals import Crystal, named_format, read_crystal, read_crystals, read_each
+from sitesym.crystals import Crystal, read_crystal, read_crystals, read_each
 from sitesym.crystals.files import content
 from sitesym.crystals.vacuum import empty_gaps
 from sitesym.errors import (
@@ -23,6 +23,7 @@ from sitesym.errors import (
     UnknownFormatError,
     UsageError,
 )
+from sitesym.formats import named_format
 
 
 def compressed(source, target, opener):

@@ -6,9 +6,9 @@ import ase.io
 import numpy as np
 import pytest
 
-from sitesym.crystals import named_format
 from sitesym.crystals.poscar import read_poscar
 from sitesym.errors import ReadingError
+from sitesym.formats import named_format
 
 HEAD = "comment\n{scale}\n4.0 0.1 0.0\n0.0 4.2 0.0\n0.3 0.0 4.5\n{symbols}\n{counts}\n{style}\n"
 ROWS = "0.0 0.0 0.0\n0.5 0.51 0.52\n-0.2 1.3 0.25\n"

@@ -6,8 +6,9 @@ import pytest
 from ase import Atoms
 from ase.db import connect
 
-from sitesym.crystals import find_symmetry, named_format, read_crystal, read_crystals
+from sitesym.crystals import find_symmetry, read_crystal, read_crystals
 from sitesym.errors import ReadingError
+from sitesym.formats import named_format
 
 POSCAR = "comment\n1.0\n4 0 0\n0 4 0\n0 0 4\n{symbols}1 1\nDirect\n0 0 0\n0.5 0.5 0.5\n"
 

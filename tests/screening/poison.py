@@ -9,7 +9,7 @@ import time
 from collections.abc import Callable
 from pathlib import Path
 
-from sitesym.crystals.choices import ReadingChoices
+from sitesym.choices import ReadingChoices
 from sitesym.screening.contents import Structures, read_item
 from sitesym.screening.work import WorkItem
 

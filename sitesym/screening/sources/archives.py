@@ -12,8 +12,8 @@ from collections.abc import Callable, Iterator
 from functools import partial
 from typing import IO, Final, Self
 
-from sitesym.crystals.reading import named_format
 from sitesym.errors import ReadingError, SitesymError, UnsafePathError
+from sitesym.formats import named_format
 from sitesym.screening.sources.texts import (
     LARGEST_ENTRY_BYTES,
     STREAM_ERRORS,

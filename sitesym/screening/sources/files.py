@@ -10,7 +10,7 @@ import os
 from collections.abc import Callable, Iterator
 from typing import TypeAlias
 
-from sitesym.crystals.reading import named_format
+from sitesym.formats import named_format
 from sitesym.screening.sources.databases import database_items
 from sitesym.screening.sources.frames import frame_items
 from sitesym.screening.sources.texts import COMPRESSIONS

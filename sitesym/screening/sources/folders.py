@@ -11,8 +11,8 @@ from fnmatch import fnmatchcase
 from pathlib import PurePath
 from typing import Final, Literal
 
-from sitesym.crystals.reading import named_format
 from sitesym.errors import ReadingError, UsageError
+from sitesym.formats import named_format
 from sitesym.screening.sources.files import FileItems, file_items
 from sitesym.screening.sources.texts import broken_stream, storable
 from sitesym.screening.work import WorkItem
@@ -26,7 +26,7 @@ _MAGIC: Final = frozenset("*?[")
 def folder_items(folder: str | os.PathLike[str], items_of: FileItems = file_items) -> Iterator[WorkItem]:
     """Units of every structure file below a folder, ``id`` the path below it, in the order of these texts.
 
-    Files are taken by their names (`sitesym.crystals.reading.FILE_NAMES`); hidden files and folders are left
+    Files are taken by their names (`sitesym.formats.FILE_NAMES`); hidden files and folders are left
     out, links to folders are not followed. A folder that cannot be opened, and one that has the name of a
     structure file and holds no structures, are units with their errors. ``items_of`` gives those of a file.
     """

@@ -1,13 +1,24 @@
-"""What may be chosen on reading: one structure of several, whom to believe, what tells atoms apart."""
+"""What may be chosen on reading a structure and on finding its symmetry, and the checks of these words.
+
+It loads nothing else of the package, so that what only hands the choices on stays quick.
+"""
 
 from __future__ import annotations
 
 from collections.abc import Iterable
-from typing import TypedDict
+from typing import Final, TypedDict
 
-from sitesym.crystals.cif_symmetry import check_statement
-from sitesym.crystals.marks import checked_marks
 from sitesym.errors import UsageError
+
+#: Statements a CIF can make of its space group, the most telling first.
+STATEMENTS: Final = ("operations", "hall", "hm", "number")
+
+#: Marks of atoms, beside element and occupancy, that can be asked for.
+MARKS: Final = ("isotope", "oxidation", "label", "moment")
+
+#: What can be asked for by name: one finder of symmetry, or spglib with moyo as second opinion.
+FINDER_CHOICES: Final = ("spglib", "moyo", "both")
+DEFAULT_FINDER: Final = "spglib"
 
 
 class ReadingChoices(TypedDict, total=False):
@@ -32,6 +43,39 @@ def check_choices(choices: ReadingChoices) -> None:
     checked_marks(choices.get("distinguish", ()))
     if (statement := choices.get("symmetry_from")) is not None:
         check_statement(statement)
+
+
+def check_finder(name: str) -> None:
+    """Return for one of `FINDER_CHOICES`; else UsageError."""
+    if name not in FINDER_CHOICES:
+        raise UsageError(
+            "unknown symmetry finder", name, f"one of {', '.join(FINDER_CHOICES)}", "name one of these"
+        )
+
+
+def check_statement(name: str) -> None:
+    """Return for one of `STATEMENTS`; else UsageError."""
+    if name not in STATEMENTS:
+        raise UsageError(
+            "there is no such statement of symmetry",
+            name,
+            f"one of {', '.join(STATEMENTS)}",
+            "name one of these",
+        )
+
+
+def checked_marks(names: Iterable[str]) -> tuple[str, ...]:
+    """The names in the order of `MARKS`, each once. Raises UsageError for any other name."""
+    asked = set(names)
+    unknown = sorted(asked - set(MARKS))
+    if unknown:
+        raise UsageError(
+            "atoms cannot be told apart by this",
+            ", ".join(unknown),
+            f"any of {', '.join(MARKS)}",
+            "name these",
+        )
+    return tuple(name for name in MARKS if name in asked)
 
 
 def refuse_block(choices: ReadingChoices, file_format: str) -> None:
