@@ -83,6 +83,7 @@ def property_entry(kind: TensorKind, group: PointGroup) -> dict[str, Any]:
         "traceless": kind.traceless,
         "blocks": list(notation.blocks),
         "symmetric": notation.commuting,
+        "antisymmetric": notation.anticommuting,
         "keys": list(notation.keys),
         "independent_count": form.independent_count,
         "independent": list(form.independent),

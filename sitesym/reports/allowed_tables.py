@@ -8,6 +8,7 @@ from sitesym.reports.component_matrix import (
     ComponentMatrix,
     Property,
     component_matrix,
+    exchange_text,
     kind_text,
     open_signs,
     relations,
@@ -68,8 +69,8 @@ def _markdown_property(entry: Property) -> Iterator[str]:
     if matrix is not None:
         head = ["", *(f"{digit} {axes}" for digit, axes in matrix.columns)] if matrix.columns else ["", ""]
         rows = [
-            [f"{digit} {axes}", *(combination(entry["components"].get(key, {}), name) for key in keys)]
-            for (digit, axes), keys in zip(matrix.rows, matrix.keys, strict=True)
+            [f"{digit} {axes}", *(combination(cell.terms, name) for cell in cells)]
+            for (digit, axes), cells in zip(matrix.rows, matrix.cells, strict=True)
         ]
         yield markdown_table(head, rows)
     equations = relations(entry, name)
@@ -88,6 +89,8 @@ def _summary(entry: Property) -> str:
     ]
     labels = (("Indices", "indices"), ("Order", "order"), ("Factors", "factor_rule"))
     facts.extend(f"{label}: {entry[field]}." for label, field in labels if entry[field])
+    if exchange_text(entry):
+        facts.append(f"Antisymmetry: {exchange_text(entry)}.")
     facts.extend(f"Signs: {sentence}." for sentence in open_signs(entry, name))
     return " ".join(facts)
 
@@ -107,15 +110,12 @@ def _latex_property(entry: Property) -> Iterator[str]:
     name = latex_namer(entry["symbol"])
     matrix = component_matrix(entry)
     if matrix is not None:
-        yield from ("\\[", _pmatrix(entry, matrix, name), "\\]")
+        yield from ("\\[", _pmatrix(matrix, name), "\\]")
     equations = relations(entry, name, latex_combination)
     if equations:
         yield "$" + "$, $".join(equations) + "$."
 
 
-def _pmatrix(entry: Property, matrix: ComponentMatrix, name: Namer) -> str:
-    rows = [
-        " & ".join(latex_combination(entry["components"].get(key, {}), name) for key in row)
-        for row in matrix.keys
-    ]
+def _pmatrix(matrix: ComponentMatrix, name: Namer) -> str:
+    rows = [" & ".join(latex_combination(cell.terms, name) for cell in row) for row in matrix.cells]
     return "\\begin{pmatrix}\n" + " \\\\\n".join(rows) + "\n\\end{pmatrix}"

@@ -5,9 +5,11 @@ from __future__ import annotations
 import textwrap
 
 from sitesym.reports.component_matrix import (
+    Cell,
     ComponentMatrix,
     Property,
     component_matrix,
+    exchange_text,
     kind_text,
     open_signs,
     relations,
@@ -58,7 +60,7 @@ def _title(entry: Property, name: Namer) -> str:
 
 
 def _matrix_text(entry: Property, matrix: ComponentMatrix, name: Namer) -> str:
-    cells = [[_cell(entry, key, name) for key in row] for row in matrix.keys]
+    cells = [[_cell_text(cell, name) for cell in row] for row in matrix.cells]
     rows = [[digit, axes, *row] for (digit, axes), row in zip(matrix.rows, cells, strict=True)]
     if matrix.columns:
         rows.insert(0, ["", "", *(digit for digit, _ in matrix.columns)])
@@ -69,12 +71,11 @@ def _matrix_text(entry: Property, matrix: ComponentMatrix, name: Namer) -> str:
     return drawn
 
 
-def _cell(entry: Property, key: str, name: Namer) -> str:
-    terms = entry["components"].get(key)
-    if terms is None:
+def _cell_text(cell: Cell, name: Namer) -> str:
+    if not cell.terms:
         return _ZERO
-    text = combination(terms, name)
-    return text if len(text) <= _LONGEST_CELL else f"{name(key)}*"
+    text = combination(cell.terms, name)
+    return text if len(text) <= _LONGEST_CELL else f"{cell.sign}{name(cell.key)}*"
 
 
 def _list_text(entry: Property) -> str:
@@ -85,6 +86,11 @@ def _list_text(entry: Property) -> str:
 
 
 def _conventions(entry: Property, name: Namer) -> str:
-    lines = [("indices", entry["indices"]), ("order", entry["order"]), ("factors", entry["factor_rule"])]
-    lines.append(("signs", "\n".join(open_signs(entry, name))))
+    lines = [
+        ("indices", entry["indices"]),
+        ("exchange", exchange_text(entry)),
+        ("order", entry["order"]),
+        ("factors", entry["factor_rule"]),
+        ("signs", "\n".join(open_signs(entry, name))),
+    ]
     return textwrap.indent("\n".join(labelled(label, text) for label, text in lines if text), "  ")

@@ -9,7 +9,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from sitesym.reports.expressions import Namer, combination
+from sitesym.reports.expressions import Namer, combination, negated
 
 #: One entry of ``properties`` of an `allowed` document.
 Property = Mapping[str, Any]
@@ -23,16 +23,27 @@ _HEADS = {3: _AXES, 6: _PAIRS}
 
 
 @dataclass(frozen=True)
+class Cell:
+    """One place of the matrix: the key under which its component is listed, the sign with which it stands
+    there ("" or "-"), and its terms with that sign, none where it is zero.
+    """
+
+    key: str
+    sign: str
+    terms: Mapping[str, str]
+
+
+@dataclass(frozen=True)
 class ComponentMatrix:
-    """Keys of components in rows and columns, with what each row and column stands for.
+    """Components in rows and columns, with what each row and column stands for.
 
     ``rows`` and ``columns`` pair the digit of the key with its axis or pair of axes: ("4", "yz"). A vector
-    has one column and empty ``columns``; the keys are those of ``components``, zero ones included.
+    has one column and empty ``columns``.
     """
 
     rows: tuple[tuple[str, str], ...]
     columns: tuple[tuple[str, str], ...]
-    keys: tuple[tuple[str, ...], ...]
+    cells: tuple[tuple[Cell, ...], ...]
 
 
 def component_matrix(entry: Property) -> ComponentMatrix | None:
@@ -42,17 +53,20 @@ def component_matrix(entry: Property) -> ComponentMatrix | None:
         return None
     heads = [tuple(zip(map(str, range(1, length + 1)), _HEADS[length], strict=True)) for length in blocks]
     if len(heads) == 1:
-        return ComponentMatrix(heads[0], (), tuple((digit,) for digit, _ in heads[0]))
+        return ComponentMatrix(heads[0], (), tuple((_cell(entry, digit),) for digit, _ in heads[0]))
     rows, columns = heads
-    keys = tuple(tuple(_stored_key(entry, row + column) for column, _ in columns) for row, _ in rows)
-    return ComponentMatrix(rows, columns, keys)
+    cells = tuple(tuple(_cell(entry, row + column) for column, _ in columns) for row, _ in rows)
+    return ComponentMatrix(rows, columns, cells)
 
 
-def _stored_key(entry: Property, key: str) -> str:
-    """The key under which a component is listed: of "12" and "21", where they are the same, "12"."""
-    if entry["symmetric"] and key not in entry["keys"]:
-        return key[::-1]
-    return key
+def _cell(entry: Property, key: str) -> Cell:
+    """The component at a place. Where two indices may be exchanged, "21" is listed as "12"."""
+    if key in entry["keys"]:
+        return Cell(key, "", entry["components"].get(key, {}))
+    terms = entry["components"].get(key[::-1], {})
+    if entry["antisymmetric"]:
+        return Cell(key[::-1], "-", {name: negated(coefficient) for name, coefficient in terms.items()})
+    return Cell(key[::-1], "", terms)
 
 
 def relations(entry: Property, name: Namer, combine: Combine = combination) -> list[str]:
@@ -87,6 +101,13 @@ def kind_text(entry: Property) -> str:
     unit = entry["unit"] or "unknown"
     traceless = ", traceless" if entry["traceless"] else ""
     return f"{entry['index_symmetry']}{traceless}, {entry['parity']}, rank {entry['rank']}, unit {unit}"
+
+
+def exchange_text(entry: Property) -> str:
+    """What is not listed of antisymmetric indices; '' where there are none."""
+    if "{" not in entry["index_symmetry"]:
+        return ""
+    return "an exchange inside { } reverses the sign; one of both components is listed"
 
 
 def zero_count(entry: Property) -> int:

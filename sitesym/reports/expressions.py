@@ -81,6 +81,17 @@ def latex_combination(terms: Mapping[str, str], name: Namer) -> str:
     return re.sub(r"sqrt\((\d+)\)", r"\\sqrt{\1}", combination(terms, name, r"\frac{{{top}}}{{{bottom}}}"))
 
 
+def negated(coefficient: str) -> str:
+    """A coefficient with the opposite sign.
+
+    >>> negated("1/2"), negated("-sqrt(3)/2"), negated("1/2 - sqrt(3)/2")
+    ('-1/2', 'sqrt(3)/2', '-1/2 + sqrt(3)/2')
+    """
+    first, *rest = re.split(" ([+-]) ", coefficient)
+    opposite = first[1:] if first.startswith("-") else f"-{first}"
+    return opposite + "".join({"+": " - ", "-": " + "}.get(part, part) for part in rest)
+
+
 def _split(coefficient: str) -> tuple[str, int]:
     """Numerator as text and denominator of "a/b"; a float, or a sum in brackets, has the denominator 1."""
     if " " in coefficient:

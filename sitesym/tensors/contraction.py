@@ -53,8 +53,14 @@ class Contraction:
         """Whether all contracted indices may change places (c12 stands for c21): only sorted names are
         written.
         """
-        symmetry = self.kind.written
-        return isinstance(symmetry, Power) and symmetry.symmetric and self.kind.rank > 1
+        return self._all_alike(symmetric=True)
+
+    @property
+    def anticommuting(self) -> bool:
+        """Whether an exchange of contracted indices reverses the sign (T21 is -T12): only sorted names are
+        written.
+        """
+        return self._all_alike(symmetric=False)
 
     @cached_property
     def keys(self) -> tuple[str, ...]:
@@ -88,6 +94,10 @@ class Contraction:
         """Matrix element divided by tensor component at one contracted index (from 0)."""
         pairs = [index for index, block in zip(contracted, self.blocks, strict=True) if block == 6]
         return int(np.prod([f for index, f in zip(pairs, self.kind.pair_factors, strict=False) if index > 2]))
+
+    def _all_alike(self, symmetric: bool) -> bool:
+        symmetry = self.kind.written
+        return isinstance(symmetry, Power) and symmetry.symmetric == symmetric and self.kind.rank > 1
 
     def _rank_of_choice(self, component: int) -> tuple[bool, int, list[int], list[int]]:
         full = self.kind.written.components[component]

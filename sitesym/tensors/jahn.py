@@ -76,7 +76,14 @@ def _factor(text: str, rest: str) -> tuple[IndexSymmetry, str]:
     factors = inside.factors if isinstance(inside, Product) else (inside,)
     if len(set(factors)) != 1:
         raise _not_understood(text, "brackets symmetrise a power of one thing, such as [V2], [[V2]3], {V2}")
-    return Power(factors[0], len(factors), symmetric=closing == "]"), after[1:]
+    power = Power(factors[0], len(factors), symmetric=closing == "]")
+    # What is of too high a rank is refused later; its components are too many to be counted here.
+    if power.rank <= _HIGHEST_RANK and not power.dimension:
+        raise _not_understood(
+            text,
+            f"no {power.count} of {power.base.dimension} components differ: nothing antisymmetric is left",
+        )
+    return power, after[1:]
 
 
 def _exponent(text: str, rest: str) -> tuple[int, str]:

@@ -60,7 +60,7 @@ def _flips(form: AllowedForm, turn: FloatArray) -> tuple[str, ...]:
     flips = []
     for column, name in enumerate(form.independent):
         image = to_matrix(form.kind, turned(form.full({n: float(n == name) for n in form.independent}), turn))
-        values = image[tuple(written.T)]
+        values = np.atleast_1d(image[tuple(written.T)])
         expected = np.zeros(len(values))
         expected[column] = np.sign(values[column])
         if np.abs(values - expected).max() > _SAME:

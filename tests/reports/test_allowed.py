@@ -13,10 +13,16 @@ from sitesym.groups import PointGroup
 from sitesym.reports.allowed import allowed_document
 from sitesym.reports.component_matrix import component_matrix, relations
 from sitesym.reports.expressions import combination, latex_combination, latex_namer, text_namer
-from sitesym.reports.render import render
+from sitesym.reports.render import FORMATS, render
 from sitesym.tensors import kind, kind_from_jahn
 
 Document = dict[str, Any]
+
+
+def document_of(symbol: str, jahn: str) -> Document:
+    """The document of one index symmetry in the group of a symbol."""
+    axes = {"name": "lattice", "edition": None, "note": "", "rotation_from_file": np.eye(3).tolist()}
+    return dict(allowed_document(PointGroup.from_symbol(symbol), [kind_from_jahn(jahn)], axes))
 
 
 def matrix_rows(text: str, title: str, rows: int) -> list[list[str]]:
@@ -35,8 +41,42 @@ def test_a_matrix_shows_each_component_by_the_independent_one_it_equals(allowed:
 def test_a_symmetric_matrix_repeats_the_upper_triangle_below(allowed: Document) -> None:
     layout = component_matrix(allowed["properties"][1])
     assert layout is not None
-    assert layout.keys[1][0] == "12"
-    assert layout.keys[5][3] == "46"
+    assert layout.cells[1][0].key == "12"
+    assert layout.cells[5][3].key == "46"
+
+
+@pytest.mark.parametrize(
+    ("format_name", "expected"),
+    [
+        ("text", ["2 y -T12 . T23", "3 z -T13 -T23 ."]),
+        ("markdown", ["| 2 y | -T12 | 0 | T23 |", "| 3 z | -T13 | -T23 | 0 |"]),
+        ("latex", [r"-T_{12} & 0 & T_{23} \\", r"-T_{13} & -T_{23} & 0"]),
+    ],
+)
+def test_below_the_diagonal_of_an_antisymmetric_matrix_stands_the_opposite(
+    format_name: str, expected: list[str]
+) -> None:
+    text = render(document_of("1", "{V2}"), format_name)
+    lines = [" ".join(line.split()) for line in text.splitlines()]
+    assert all(row in lines for row in expected)
+    assert "reverses the sign" in text
+
+
+def test_the_lower_triangle_of_antisymmetric_pairs_of_pairs_is_not_called_zero() -> None:
+    layout = component_matrix(document_of("1", "{[V2]2}")["properties"][0])
+    assert layout is not None
+    assert layout.cells[5][0].terms == {"16": "-1"}
+    assert layout.cells[0][5].terms == {"16": "1"}
+    assert layout.cells[5][5].terms == {}
+
+
+@pytest.mark.parametrize(("symbol", "jahn", "count"), [("432", "e", 1), ("m", "e", 0), ("m-3m", "a", 1)])
+@pytest.mark.parametrize("format_name", FORMATS)
+def test_a_scalar_is_one_component_or_forbidden(symbol: str, jahn: str, count: int, format_name: str) -> None:
+    # e is the form of a rotatory power averaged over directions: common practice, in the chiral classes only
+    document = document_of(symbol, jahn)
+    assert document["properties"][0]["independent_count"] == count
+    assert render(document, format_name)
 
 
 def test_relations_chain_what_is_equal_and_write_the_rest_as_equations(allowed: Document) -> None:

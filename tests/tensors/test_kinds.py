@@ -51,6 +51,7 @@ def test_e_and_a_mark_axial_and_time_odd() -> None:
         ("V0", "from 1 to 8"),
         ("V99999999999", "from 1 to 8"), ("[V5]V4", "rank 9"), ("V8", "6561 components"), ("Ve", "none of"),
         ("[V[V2]]", "power of one thing"), ("2V", "none of"), ("[V2}", "not closed"),
+        ("{V4}", "no 4 of 3"), ("V{{V3}2}", "no 2 of 1"), ("[[[V8]8]8]", "rank 512"),
     ],
 )  # fmt: skip
 def test_other_symbols_are_refused_with_the_rule_they_break(text: str, rule: str) -> None:
