@@ -48,16 +48,24 @@ class _Table:
 
     def write(self, rows: Iterable[Row]) -> None:
         """Write all rows, as they come where the format can."""
-        # Not needed to start a run, and long to load.
-        from sitesym.cli.options import emit
+        if self.format_name in _TABLES:
+            self._write_table(rows, self.format_name)
+        elif self.format_name is not None:
+            self._write_document(rows, self.format_name)
+
+    # What writes is not needed to start a run, and long to load.
+
+    def _write_table(self, rows: Iterable[Row], format_name: str) -> None:
         from sitesym.cli.table import write_rows
+
+        columns = self.settings.columns
+        write_rows(rows, columns, format_name, self.output, spreadsheet_safe=self.spreadsheet_safe)
+
+    def _write_document(self, rows: Iterable[Row], format_name: str) -> None:
+        from sitesym.cli.options import emit
         from sitesym.reports.screen_report import screen_document
 
-        if self.format_name in _TABLES:
-            columns = self.settings.columns
-            write_rows(rows, columns, self.format_name, self.output, spreadsheet_safe=self.spreadsheet_safe)
-        elif self.format_name is not None:
-            emit(screen_document(self.inputs, self.settings, rows), self.format_name, self.output)
+        emit(screen_document(self.inputs, self.settings, rows), format_name, self.output)
 
 
 @click.command("screen")

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import os
 import signal
+import subprocess
+import sys
 import threading
 import time
 from collections import Counter
@@ -180,3 +182,12 @@ def test_a_signal_finishes_the_rows_in_flight_and_takes_no_more() -> None:
     assert run.stopped_by == "SIGTERM"
     assert names == [str(number) for number in range(len(names))]
     assert len(names) > 1
+
+
+def test_what_gives_out_the_work_loads_no_numpy() -> None:
+    code = (
+        "import sys; import sitesym.cli.screen; from sitesym.screening import Settings; "
+        "from sitesym.screening.sources import work_items; Settings().check(); "
+        "list(work_items(['structures'])); sys.exit('numpy' in sys.modules)"
+    )
+    assert subprocess.run([sys.executable, "-c", code], check=False, cwd=ROOT).returncode == 0

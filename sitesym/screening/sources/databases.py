@@ -7,7 +7,6 @@ import sqlite3
 from collections.abc import Iterator
 from typing import Any, Final
 
-from sitesym.crystals.ase_reader import require_ase_tables
 from sitesym.errors import ReadingError
 from sitesym.screening.sources.texts import storable
 from sitesym.screening.work import WorkItem
@@ -29,6 +28,9 @@ def database_items(path: str, identity: str) -> Iterator[WorkItem]:
 
     A file that is no ASE database is one unit with its error; it is never written to.
     """
+    # Loads numpy and the readers, which a run without databases leaves to its workers.
+    from sitesym.crystals.ase_reader import require_ase_tables
+
     source = os.path.abspath(path)
     last = 0
     try:
