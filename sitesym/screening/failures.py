@@ -24,7 +24,7 @@ def failed_row(item: WorkItem, name: str, error: SitesymError, settings: Setting
 
 def blank_row(item: WorkItem, name: str, settings: Settings) -> Row:
     """All columns, with what is known before anything is read."""
-    row: Row = dict.fromkeys(column.name for column in settings.columns)
+    row: Row = dict.fromkeys(settings.column_names)
     row["id"] = storable(f"{item.identity}#{name}" if name else item.identity)
     row["source"] = storable(item.source)
     row["frame"] = storable(joined((item.frame, name), ", ") or "")

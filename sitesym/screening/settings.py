@@ -41,6 +41,11 @@ class Settings:
         """The columns of a row, in order."""
         return columns_for(self.properties)
 
+    @cached_property
+    def column_names(self) -> tuple[str, ...]:
+        """Names of the columns, in order."""
+        return tuple(column.name for column in self.columns)
+
     @property
     def reading(self) -> ReadingChoices:
         """What is chosen on reading a file."""
