@@ -54,10 +54,16 @@ def irreps_document(
 
 
 def class_label(group: PointGroup, members: tuple[int, ...]) -> str:
-    """Name of a class: its first element, without sign of rotation where both senses are in the class."""
-    first = group.elements[members[0]]
-    senses = {group.elements[index].sense for index in members}
-    return first.name if len(senses) == 1 else f"{first.symbol} {first.direction}"
+    """Name of a class: the element whose direction has the fewest minus signs, the first of such.
+
+    Without sign of rotation where the class holds the inverse too: in 23 the classes of 3+ [111] and 3- [111]
+    are two.
+    """
+    chosen = min(members, key=lambda index: group.elements[index].direction.count("-"))
+    element = group.elements[chosen]
+    if element.sense and group.inverses[chosen] in members:
+        return f"{element.symbol} {element.direction}"
+    return element.name
 
 
 def _irreps(table: CharacterTable) -> list[dict[str, Any]]:

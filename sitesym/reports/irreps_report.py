@@ -25,9 +25,10 @@ from sitesym.reports.markup import (
 
 CSV_COLUMNS = (
     "group", "irrep", "dimension", "reality", "class", "class_size", "character", "real_part",
-    "imaginary_part",
+    "imaginary_part", "functions", "reduced_property", "multiplicity",
 )  # fmt: skip
 
+_CLASS_HEAD = ("class", "elements")
 
 #: The checks of a character table in words.
 _CHECKS = {
@@ -52,7 +53,7 @@ def irreps_text(document: Document, matrices: bool = False) -> str:
         f"characters (columns: classes; second line: elements in the class)\n\n{drawn}",
     ]
     blocks.append("\n".join(labelled(label, text) for label, text in _notes(document)))
-    blocks.append("classes\n\n" + table(("class", "elements"), _class_rows(document), indent=2))
+    blocks.append("classes\n\n" + table(_CLASS_HEAD, _class_rows(document), indent=2))
     if matrices:
         blocks.append("matrices (unitary; one for each element)")
         blocks.extend(_matrix_blocks(document))
@@ -66,18 +67,20 @@ def irreps_csv(document: Document) -> str:
 
 
 def irreps_markdown(document: Document) -> str:
-    """The character table and the notes."""
+    """The character table, the notes and the classes."""
     drawn = markdown_table(*_sized_table(document))
     blocks = ["# Irreducible representations", markdown_header(document), drawn]
     notes = (f"{label}: {markdown_escape('; '.join(text.splitlines()))}" for label, text in _notes(document))
-    return "\n\n".join([*blocks, *notes, markdown_footer(document)])
+    classes = markdown_table(_CLASS_HEAD, _class_rows(document))
+    return "\n\n".join([*blocks, *notes, classes, markdown_footer(document)])
 
 
 def irreps_latex(document: Document) -> str:
-    """The character table as a tabular, and the notes."""
+    """The character table as a tabular, the notes, and the classes as another."""
     drawn = latex_table(*_sized_table(document))
     notes = (f"{label}: {latex_escape('; '.join(text.splitlines()))}" for label, text in _notes(document))
-    return "\n\n".join([latex_header(document), drawn, *notes, latex_footer(document)])
+    classes = latex_table(_CLASS_HEAD, _class_rows(document))
+    return "\n\n".join([latex_header(document), drawn, *notes, classes, latex_footer(document)])
 
 
 def _table_cells(document: Document) -> tuple[list[str], list[list[str]]]:
@@ -103,12 +106,14 @@ def _sized_table(document: Document) -> tuple[list[str], list[list[str]]]:
 
 
 def _csv_rows(document: Document) -> Iterator[tuple[object, ...]]:
-    group = document["group"]["oriented"]
+    group, reduction = document["group"]["oriented"], document.get("reduction")
     for irrep in document["irreps"]:
         common = (group, irrep["label"], irrep["dimension"], irrep["reality"])
+        times = reduction["multiplicity"][irrep["label"]] if reduction else None
+        beside = (", ".join(irrep["components"]), reduction["property"] if reduction else None, times)
         columns = zip(document["classes"], irrep["characters"], irrep["characters_numeric"], strict=True)
         for entry, exact, (real, imaginary) in columns:
-            yield *common, entry["label"], entry["size"], exact, real, imaginary
+            yield *common, entry["label"], entry["size"], exact, real, imaginary, *beside
 
 
 def _notes(document: Document) -> Iterator[tuple[str, str]]:
@@ -118,14 +123,23 @@ def _notes(document: Document) -> Iterator[tuple[str, str]]:
         yield "joined", "; ".join(f"{pair['label']} = {' + '.join(pair['members'])}" for pair in pairs)
     reduction = document.get("reduction")
     if reduction:
-        yield "reduction", f"{reduction['property']} = {_sum(reduction['multiplicity'])}"
+        yield "reduction", f"{reduction['property']} = {_sum(reduction['multiplicity'], pairs or ())}"
     yield "checks", "\n".join(_checks(document["checks"]))
 
 
-def _sum(multiplicity: Mapping[str, int]) -> str:
-    """A direct sum such as "2 A1 + E"; irreps that do not occur are left out."""
-    terms = (label if times == 1 else f"{times} {label}" for label, times in multiplicity.items() if times)
-    return " + ".join(terms) or "0"
+def _sum(multiplicity: Mapping[str, int], pairs: Sequence[Mapping[str, Any]]) -> str:
+    """A direct sum such as "2 A1 + E"; irreps that do not occur are left out.
+
+    The members of a complex pair occur equally often in a real tensor and stand together.
+
+    >>> _sum({"A": 4, "1E": 5, "2E": 5}, [{"members": ["1E", "2E"]}])
+    '4 A + 5 (1E + 2E)'
+    """
+    together = {pair["members"][0]: f"({' + '.join(pair['members'])})" for pair in pairs}
+    second = {pair["members"][1] for pair in pairs}
+    times = {label: count for label, count in multiplicity.items() if count and label not in second}
+    names = {label: together.get(label, label) for label in times}
+    return " + ".join(f"{n} {names[label]}" if n > 1 else names[label] for label, n in times.items()) or "0"
 
 
 def _checks(checks: Mapping[str, Any]) -> Iterator[str]:
