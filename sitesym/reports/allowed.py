@@ -5,7 +5,10 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 from typing import Any
 
+import numpy as np
+
 from sitesym.groups import PointGroup
+from sitesym.groups.normaliser import directions_of_any_turn
 from sitesym.reports.markup import Document
 from sitesym.reports.provenance import CAUTION, library_versions
 from sitesym.tensors import AllowedForm, Coefficient, TensorKind, allowed_form, contraction, sense_choices
@@ -28,6 +31,7 @@ def allowed_document(
     rotation_from_file, ``crystal`` and ``site`` what the answer refers to, or None.
     """
     asked = list(kinds)
+    standard = axes["name"] == "ieee" and site is None
     return {
         "schema": SCHEMA,
         "group": group_entry(group),
@@ -35,7 +39,7 @@ def allowed_document(
         "site": dict(site) if site is not None else None,
         "axes": dict(axes),
         "properties": [property_entry(kind, group) for kind in asked],
-        "remarks": [*remarks, *_time_remarks(asked, group)],
+        "remarks": [*remarks, *_time_remarks(asked, group), *_turn_remarks(standard, group)],
         "versions": library_versions(),
         "caution": CAUTION,
     }
@@ -50,6 +54,18 @@ def _time_remarks(kinds: Iterable[TensorKind], group: PointGroup) -> list[str]:
         f"odd under time reversal: {', '.join(odd)}. The form is that of a magnetically ordered crystal "
         "whose magnetic point group is this one, without time reversal; where there is no magnetic order, "
         "every component is zero"
+    ]
+
+
+def _turn_remarks(standard: bool, group: PointGroup) -> list[str]:
+    """What the operations of a group in its ``standard`` orientation leave open beyond senses."""
+    directions = list(directions_of_any_turn(group)) if standard else []
+    if not directions:
+        return []
+    where = f" about {'xyz'[int(np.argmax(np.abs(directions[0])))]}" if len(directions) == 1 else ""
+    return [
+        f"the operations alone let the axes turn by any angle{where}: such turns keep which components are "
+        "independent and mix their values"
     ]
 
 

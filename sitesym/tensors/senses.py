@@ -11,9 +11,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from sitesym.arrays import FloatArray
+from sitesym.arrays import FloatArray, IntArray
 from sitesym.groups import PointGroup
-from sitesym.groups.elements import classify
+from sitesym.groups.elements import classify, small_integers
 from sitesym.groups.normaliser import equivalent_turns
 from sitesym.tensors.contraction import contraction, to_matrix
 from sitesym.tensors.forms import AllowedForm
@@ -23,8 +23,8 @@ _SAME = 1e-6
 
 @dataclass(frozen=True)
 class SenseChoice:
-    """An equivalent choice of axes: the turn in words (Cartesian direction) and the components that change
-    sign.
+    """An equivalent choice of axes: the turn in words (``180 degrees about z``, one of the axes themselves)
+    and the components that change sign.
     """
 
     turn: str
@@ -71,5 +71,23 @@ def _flips(form: AllowedForm, turn: FloatArray) -> tuple[str, ...]:
 
 
 def _words(turn: FloatArray) -> str:
+    """Angle and direction of a turn. The direction is no [001]: that would be one of the lattice."""
+    angle = np.degrees(np.arccos(np.clip((np.trace(turn) - 1.0) / 2.0, -1.0, 1.0)))
     element = classify(turn)
-    return f"{360 // element.order} degrees about {element.direction}"
+    indices = None if element.axis is None else small_integers(element.axis)
+    direction = element.direction if indices is None else _in_letters(indices)
+    return f"{angle:.0f} degrees about {direction}"
+
+
+def _in_letters(indices: IntArray) -> str:
+    """A Cartesian direction of small integers as a sum of axes.
+
+    >>> _in_letters(np.array([0, 0, 1])), _in_letters(np.array([1, -2, 0]))
+    ('z', 'x - 2y')
+    """
+    terms = [
+        f"{'-' if n < 0 else '+'} {abs(n) if abs(n) > 1 else ''}{letter}"
+        for n, letter in zip(indices.tolist(), "xyz", strict=True)
+        if n
+    ]
+    return " ".join(terms).removeprefix("+ ")

@@ -18,5 +18,11 @@ def test_every_kind_of_tensor_is_listed_with_its_factors() -> None:
 
 def test_the_page_names_axes_edition_order_and_labels() -> None:
     text = " ".join(CliRunner().invoke(main, ["conventions"]).output.split())
-    statements = ("IEEE Std 176, edition 1978", "11 22 33 23 13 12", "v_new = R v_file", "R. S. Mulliken")
+    statements = (
+        "IEEE Std 176, edition 1978",
+        "11 22 33 23 13 12",
+        "v_new = R v_file",
+        "R. S. Mulliken",
+        "-4+ is S4",
+    )
     assert all(statement in text for statement in statements)

@@ -70,6 +70,23 @@ def test_the_lower_triangle_of_antisymmetric_pairs_of_pairs_is_not_called_zero()
     assert layout.cells[5][5].terms == {}
 
 
+@pytest.mark.parametrize(
+    ("symbol", "axes_name", "expected"),
+    [
+        ("3", "ieee", "by any angle about z:"), ("-4", "ieee", "by any angle about z:"),
+        ("2", "ieee", "by any angle about y:"), ("-1", "ieee", "by any angle:"), ("32", "ieee", ""),
+        ("3", "file", ""),
+    ],
+)  # fmt: skip
+def test_a_standard_orientation_says_by_which_turns_it_stays_open(
+    symbol: str, axes_name: str, expected: str
+) -> None:
+    axes = {"name": axes_name, "edition": None, "note": "", "rotation_from_file": np.eye(3).tolist()}
+    document = allowed_document(PointGroup.from_symbol(symbol), [kind("pyroelectric")], axes)
+    assert len(document["remarks"]) == bool(expected)
+    assert all(expected in remark for remark in document["remarks"])
+
+
 @pytest.mark.parametrize(("symbol", "jahn", "count"), [("432", "e", 1), ("m", "e", 0), ("m-3m", "a", 1)])
 @pytest.mark.parametrize("format_name", FORMATS)
 def test_a_scalar_is_one_component_or_forbidden(symbol: str, jahn: str, count: int, format_name: str) -> None:
