@@ -127,12 +127,7 @@ def crystal_system(symbol: str) -> str:
 
 
 def _oriented_spelling(text: str) -> str:
-    plain = re.sub(r"([1-6])[\u0304\u0305]", r"-\1", text)  # overlined digits
-    plain = re.sub(r"\s", "", plain).replace("\u2212", "-")
-    if not plain.startswith(("-", "m")) and plain[:1].isalpha():
-        plain = re.sub(
-            r"[_{}]", "", plain
-        )  # D_{3h}; in a Hermann-Mauguin symbol an underscore is a screw axis
+    plain = _plain(text)
     by_schoenflies = {name.lower(): symbol for symbol, name in SCHOENFLIES.items()}
     others = {name.lower(): symbol for name, symbol in _OTHER_SPELLINGS.items()}
     symbol = others.get(plain.lower()) or by_schoenflies.get(plain.lower()) or plain
@@ -147,6 +142,18 @@ def _oriented_spelling(text: str) -> str:
             next_step=hint + "examples: -43m, 31m, -4m2, 112/m, D3h; a space group is given as a file",
         )
     return ORIENTED.get(symbol, (symbol,))[0]
+
+
+def _plain(text: str) -> str:
+    """A symbol without spaces and mathematical markup: overlined digits get a minus sign, subscripts their
+    place in the line.
+    """
+    plain = re.sub(r"\s", "", text).strip("$").replace("\u2212", "-")
+    plain = re.sub(r"\\(?:bar|overline)(?:\{([1-6])\}|([1-6]))", r"-\1\2", plain)
+    plain = re.sub(r"([1-6])[\u0304\u0305]", r"-\1", plain)
+    # In a Hermann-Mauguin symbol an underscore is a screw axis.
+    is_schoenflies = plain[:1].isalpha() and not plain.startswith("m")
+    return re.sub(r"[_{}]", "", plain) if is_schoenflies else plain
 
 
 def _tokens(oriented: str) -> list[str]:

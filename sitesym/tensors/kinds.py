@@ -146,11 +146,12 @@ def kind(name: str) -> TensorKind:
     """The kind of a given name. Raises UsageError with near names."""
     names = {k.name: k for k in all_kinds()}
     if name not in names:
-        near = get_close_matches(name, names, n=3, cutoff=0.5)
+        containing = [known for known in names if name and name.lower() in known]
+        near = containing or get_close_matches(name.lower(), names, n=3, cutoff=0.5)
         raise UsageError(
             "no tensor kind has this name",
             value=repr(name),
-            rule="a name of the list of kinds, or any index symmetry by its Jahn symbol",
+            rule="a name of the list of kinds; an index symmetry is given by its Jahn symbol",
             next_step=f"near: {', '.join(near)}" if near else f"kinds: {', '.join(sorted(names))}",
         )
     return names[name]

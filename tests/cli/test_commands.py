@@ -51,6 +51,19 @@ def test_a_reduction_counts_every_component_once(document: Call) -> None:
     assert sum(times * dimensions[label] for label, times in multiplicity.items()) == 21
 
 
+def test_any_index_symmetry_is_reduced_by_its_jahn_symbol(document: Call, run: Run) -> None:
+    # common practice: strain of -43m is A1 + E + T2
+    answer = document("irreps", "--group", "-43m", "--reduce", "[V2]")["reduction"]
+    assert {label: times for label, times in answer["multiplicity"].items() if times} == {
+        "A1": 1,
+        "E": 1,
+        "T2": 1,
+    }
+    refused = run("irreps", "--group", "-43m", "--reduce", "[V2")
+    assert refused.exit_code == 2
+    assert "not closed" in refused.stderr
+
+
 def test_matrices_appear_in_text_on_request(run: Run) -> None:
     assert "0.866025i" not in run("irreps", "--group", "3").output
     assert "-0.5+0.866025i" in run("irreps", "--group", "3", "--matrices").output

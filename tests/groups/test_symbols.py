@@ -52,7 +52,8 @@ def test_oriented_spellings_of_a_class_are_different_sets_of_matrices() -> None:
         ("4/m -3 2/m", "m-3m"), ("m3", "m-3"), ("m3m", "m-3m"), ("D_{3h}", "-6m2"), ("S_6", "-3"),
         ("S6", "-3"),
         ("C3i", "-3"), ("S2", "-1"), ("C1h", "1m1"), ("V", "222"), ("Vh", "mmm"), ("Vd", "-42m"),
-        ("2", "121"),
+        ("2", "121"), (r"$\bar{4}3m$", "-43m"), (r"\bar 3 m 1", "-3m1"), (r"m\overline{3}m", "m-3m"),
+        ("$C_{2v}$", "mm2"),
     ],
 )  # fmt: skip
 def test_overbars_spaces_full_symbols_and_old_names_are_read(text: str, oriented: str) -> None:

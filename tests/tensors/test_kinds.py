@@ -67,6 +67,14 @@ def test_an_unknown_kind_is_refused_with_near_names() -> None:
     assert "piezoelectric-strain" in caught.value.next_step
 
 
+def test_part_of_a_name_is_refused_with_all_names_that_hold_it() -> None:
+    with pytest.raises(UsageError) as caught:
+        kind("Piezo")
+    held = [k.name for k in all_kinds() if "piezo" in k.name]
+    assert len(held) == 6
+    assert caught.value.next_step == f"near: {', '.join(held)}"
+
+
 def test_names_of_kinds_are_unique_and_their_symbols_are_read() -> None:
     names = [k.name for k in all_kinds()]
     assert len(set(names)) == len(names) == 35
