@@ -6,6 +6,8 @@ from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, replace
 from pathlib import Path
 
+import numpy as np
+
 from sitesym.audit.as_read import ReadMatrix, chosen_reading, matrix_as_read
 from sitesym.audit.auditing import audit
 from sitesym.audit.crosschecks import CrossCheck
@@ -49,12 +51,16 @@ class AuditedRecord:
 
 @dataclass(frozen=True, eq=False)
 class AuditRun:
-    """The records in their order, cross-checks among them, and what was decided beforehand."""
+    """The records in their order, cross-checks among them, and what was decided beforehand.
+
+    ``unread``: the errors, with the file's name, of files that could not be read at all.
+    """
 
     records: tuple[AuditedRecord, ...]
     cross_checks: tuple[CrossCheck, ...]
     noise: float
     tolerance_angstrom: float
+    unread: tuple[SitesymError, ...] = ()
 
 
 def audit_files(
@@ -66,13 +72,21 @@ def audit_files(
 ) -> AuditRun:
     """Audit every record of the files. ``crystal`` (a path or a symbol) serves records that name none.
 
-    What is wrong with a record stands in its answer. Raises UsageError for a noise that is no fraction.
+    What is wrong with a record stands in its answer, and a file that cannot be read stands aside with its
+    error. Raises UsageError for a noise that is no fraction.
     """
     default = CrystalReference(crystal) if crystal is not None else None
-    records = (record for path in paths for record in records_of_file(path))
-    audited = tuple(audited_record(record, shelf, noise, explain, default) for record in records)
+    audited: list[AuditedRecord] = []
+    unread: list[SitesymError] = []
+    for path in paths:
+        try:
+            records = list(records_of_file(path))
+        except SitesymError as error:
+            unread.append(error)
+            continue
+        audited.extend(audited_record(record, shelf, noise, explain, default) for record in records)
     checks = checks_among(list(_related(audited)), noise)
-    return AuditRun(audited, checks, noise, shelf.tolerance_angstrom)
+    return AuditRun(tuple(audited), checks, noise, shelf.tolerance_angstrom, tuple(unread))
 
 
 def audited_record(
@@ -95,8 +109,8 @@ def audited_record(
         raise
     except SitesymError as error:
         return replace(told, error=error.in_file(record.place))
-    except Exception as error:  # noqa: BLE001  the worker boundary: one record must not end a run
-        return replace(told, error=_unexpected(error).in_file(record.place))
+    except np.linalg.LinAlgError as error:
+        return replace(told, error=_not_computed(error).in_file(record.place))
 
 
 def _answered(
@@ -116,13 +130,13 @@ def _answered(
     return replace(told, host=host, result=result, read=read, stability=_stability(result, read))
 
 
-def _unexpected(error: Exception) -> SitesymError:
-    """An error nobody foresaw, as an answer can hold it."""
-    return SitesymError(
-        "unexpected failure of the program",
-        f"{type(error).__name__}: {error}",
-        "errors of a record are foreseen",
-        "report it with the record",
+def _not_computed(error: np.linalg.LinAlgError) -> SitesymError:
+    """Numbers that an iteration of the linear algebra does not come to an end with."""
+    return TensorInputError(
+        "the numbers are beyond what can be computed with",
+        str(error),
+        "entries of comparable size",
+        "look at the largest and the smallest entry",
     )
 
 

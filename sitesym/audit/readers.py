@@ -1,7 +1,8 @@
 """Files of measurements to raw records: JSON, JSON Lines, CSV and YAML.
 
-A record is a mapping of field names to what stands in the file; numbers keep their printed text. What
-cannot be parsed is a record with its error, so that the others of the file can go on.
+A record is a mapping of field names to what stands in the file; numbers keep their printed text. A record
+that cannot be parsed carries its error, so that the others of the file can go on; a file that cannot be read
+at all is an error of its own.
 """
 
 from __future__ import annotations
@@ -40,23 +41,24 @@ class RawRecord:
 
 
 def read_records(path: str | Path) -> tuple[RawRecord, ...]:
-    """All records of a file, in its order. Never raises for what stands in the file: a file that cannot be
-    read at all is one record with its error.
+    """All records of a file, in its order; one that is not understood carries its error.
+
+    Raises TensorInputError, or UnknownFormatError, for a file that cannot be read at all or holds no record.
     """
     location = Path(path)
     try:
         text = location.read_text(encoding="utf-8-sig")
         records = tuple(_parser(location, text)(text))
     except OSError as error:
-        return (_failed(location, "", _unreadable(error.strerror or str(error))),)
+        raise _unreadable(error.strerror or str(error)).in_file(str(location)) from error
     except UnicodeDecodeError as error:
-        return (_failed(location, "", _unreadable(f"byte {error.start} is not UTF-8")),)
-    except RecursionError:
-        return (_failed(location, "", _unreadable("brackets are nested too deeply")),)
+        raise _unreadable(f"byte {error.start} is not UTF-8").in_file(str(location)) from error
+    except RecursionError as error:
+        raise _unreadable("brackets are nested too deeply").in_file(str(location)) from error
     except SitesymError as error:
-        return (_failed(location, "", error),)
+        raise error.in_file(str(location)) from error
     if not records:
-        return (_failed(location, "", _empty("the file holds no record")),)
+        raise _empty("the file holds no record").in_file(str(location))
     return tuple(_placed(location, place, content) for place, content in records)
 
 
@@ -64,14 +66,10 @@ _Parsed = Iterator[tuple[str, "Fields | SitesymError"]]
 
 
 def _placed(location: Path, place: str, content: Fields | SitesymError) -> RawRecord:
-    if isinstance(content, SitesymError):
-        return _failed(location, place, content)
-    return RawRecord(", ".join(filter(None, (location.name, place))), location.parent, content)
-
-
-def _failed(location: Path, place: str, error: SitesymError) -> RawRecord:
     name = ", ".join(filter(None, (location.name, place)))
-    return RawRecord(name, location.parent, {}, error.in_file(str(location)))
+    if isinstance(content, SitesymError):
+        return RawRecord(name, location.parent, {}, content.in_file(str(location)))
+    return RawRecord(name, location.parent, content)
 
 
 def _parser(location: Path, text: str) -> Callable[[str], _Parsed]:

@@ -50,7 +50,10 @@ class Record:
 
 
 def records_of_file(path: str | Path) -> Iterator[Record]:
-    """Every record of a file, in its order; one that is not understood carries its error."""
+    """Every record of a file, in its order; one that is not understood carries its error.
+
+    Raises what `read_records` raises for a file that cannot be read.
+    """
     for number, raw in enumerate(read_records(path), start=1):
         yield understood(raw, f"{Path(path).name}#{number}")
 

@@ -66,14 +66,17 @@ class Noise:
         return float(np.sqrt(square))
 
     def drowns(self, spaces: Subspaces, coordinates: FloatArray) -> bool:
-        """Whether the whole tensor could be noise."""
+        """Whether the whole tensor could be noise.
+
+        Rounding moves an entry by half a step at most: it never makes a number that is printed of nothing.
+        """
         weights = spaces.space.weights
-        square = np.zeros(len(weights))
-        if self.sigma is not None:
-            square = square + (weights * self.sigma) ** 2
-        if self.step is not None:
-            square = square + (weights * self.step) ** 2 / 12.0
-        return float(np.linalg.norm(coordinates)) <= _DROWNED_DEVIATIONS * float(np.sqrt(square.sum()))
+        half_step = np.zeros(1) if self.step is None else weights * self.step / 2.0
+        sigma = np.zeros(1) if self.sigma is None else weights * self.sigma
+        least = np.maximum(np.abs(coordinates) - half_step, 0.0)
+        return float(np.linalg.norm(least)) <= _DROWNED_DEVIATIONS * float(
+            np.linalg.norm(np.broadcast_to(sigma, least.shape))
+        )
 
     def entry_tolerance(self, spaces: Subspaces, length: float) -> FloatArray:
         """Largest deviation of each entry from its expected value that is no finding, shape (n,)."""

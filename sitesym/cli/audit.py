@@ -55,11 +55,16 @@ def command(
     RECORDS are files of measurements: JSON, JSON Lines, CSV or YAML. Fields of a record: id, crystal (a path
     beside the file, the text of a POSCAR or CIF, or a point-group symbol), quantity, unit, order, axes (file,
     lattice, ieee, a 3x3 matrix), values, sigma, source, conditions. What is not stated counts as unknown; a
-    record that is not understood is listed with its error.
+    record that is not understood is listed with its error, and a file that cannot be read is told on standard
+    error while the others go on.
 
     Exit codes: 0 nothing violates; 1 a tensor violates; 2 usage; 3 nothing could be read.
     """
     run = audit_files(records, CrystalShelf(tolerance_angstrom), noise, explain, crystal)
+    for error in run.unread:
+        click.echo(f"error: {error}", err=True)
+    if not run.records:
+        ctx.exit(EXIT_NOTHING_READ)
     if project is not None:
         write(json_text(projection_document(run)), project)
     document = audit_document(run)

@@ -31,6 +31,7 @@ def audit_document(run: AuditRun) -> Document:
         "records": [record_entry(one) for one in run.records],
         "summary": _summary(run),
         "cross_checks": [_cross_check_entry(check) for check in run.cross_checks],
+        "unread_files": [{"file": error.file, **_error_entry(error)} for error in run.unread],
         "noise": run.noise,
         "tolerance_angstrom": run.tolerance_angstrom,
         "versions": library_versions(),
@@ -128,7 +129,7 @@ def _summary(run: AuditRun) -> dict[str, Any]:
 
 
 def nothing_was_read(document: Mapping[str, Any]) -> bool:
-    """Whether every record ended in an error."""
+    """Whether no file could be read, or every record ended in an error."""
     summary = document["summary"]
     return bool(summary["errors"] == summary["records"])
 

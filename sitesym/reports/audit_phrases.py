@@ -96,17 +96,16 @@ def symmetry_text(symmetry: Entry) -> str:
 def ambiguity_lines(ambiguities: Sequence[Entry]) -> Iterator[str]:
     """What symmetry cannot tell, one line a sort; a turn of axes with what it does to the components."""
     yield "read in one of these ways the array is another tensor, which obeys as well:"
-    for sort, alike in groupby(ambiguities, key=lambda one: one["sort"]):
-        yield f"{sort}: {cut([_ambiguity_text(one) for one in alike])}"
+    for sort, alike in groupby(ambiguities, key=lambda one: (one["sort"], bool(one.get("mixes")))):
+        effect = " (components change places or mix)" if sort[1] else ""
+        yield f"{sort[0]}: {cut([_ambiguity_text(one) for one in alike])}{effect}"
 
 
 def _ambiguity_text(one: Entry) -> str:
     if one["sort"] == "entry":
-        return f"any size and sign of {' '.join(one['entries'])}: free, in no relation to other entries"
-    said = one["reading"].removeprefix(f"{one['sort']} ")
-    if one.get("mixes"):
-        return f"{said} mixes components"
-    return f"{said} reverses {' '.join(one['flips'])}" if one.get("flips") else said
+        return f"{', '.join(one['entries'])}, in no relation to other entries: any size and sign"
+    said: str = one["reading"].removeprefix(f"{one['sort']} ")
+    return f"{said} reverses {', '.join(one['flips'])}" if one.get("flips") else said
 
 
 def cut(items: Sequence[str], most: int = MOST_ITEMS) -> str:

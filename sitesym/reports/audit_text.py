@@ -172,7 +172,9 @@ def summary_text(document: Document) -> str:
     crossed = f"{failing} of {summary['cross_checks']} cross-checks fail" if summary["cross_checks"] else ""
     count = f"{summary['records']} record{'' if summary['records'] == 1 else 's'}"
     head = f"{count}: {', '.join(filter(None, (counted, errors)))}"
-    return "; ".join(filter(None, (head, alone, missing, crossed)))
+    lost = len(document["unread_files"])
+    unread = f"{lost} file{'' if lost == 1 else 's'} could not be read" if lost else ""
+    return "; ".join(filter(None, (head, alone, missing, crossed, unread)))
 
 
 def _tolerances(document: Document) -> str:

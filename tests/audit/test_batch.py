@@ -68,18 +68,36 @@ def test_records_keep_their_order_and_errors_stand_in_their_places(tmp_path: Pat
     assert all("records.json, record" in error.file for error in errors)
 
 
-def test_a_failure_nobody_foresaw_ends_its_record_and_not_the_run(
+def test_numbers_the_linear_algebra_fails_on_end_their_record_and_not_the_run(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     original = batch.audit
 
     def failing(measurement: Measurement, *rest: Any) -> Any:
-        return 1 / 0 if measurement.id == "b" else original(measurement, *rest)
+        return np.linalg.inv(np.zeros((2, 2))) if measurement.id == "b" else original(measurement, *rest)
 
     monkeypatch.setattr(batch, "audit", failing)
     audited = run(tmp_path, record(id="a"), record(id="b"), record(id="c"))
     assert verdicts(audited) == ["consistent", None, "consistent"]
-    assert "ZeroDivisionError" in str(audited.records[1].error)
+    assert "Singular matrix" in str(audited.records[1].error)
+
+
+def test_entries_of_any_size_end_in_a_verdict_or_an_error(tmp_path: Path) -> None:
+    sizes = (1e99, 1e-99, 5e-324, 1e100)
+    extreme = [record(id=f"{size}", values=(D_32 * size).tolist()) for size in sizes]
+    mixed = D_32.copy()
+    mixed[0, 0], mixed[1, 5] = 1e100, 1e-300
+    audited = run(tmp_path, *extreme, record(id="mixed", values=mixed.tolist()))
+    assert all(one.result is not None or one.error is not None for one in audited.records)
+    assert verdicts(audited)[:2] == ["consistent"] * 2
+
+
+def test_a_file_that_cannot_be_read_stands_aside_and_the_others_go_on(tmp_path: Path) -> None:
+    path = tmp_path / "records.json"
+    path.write_text(json.dumps([record()]), encoding="utf-8")
+    audited = audit_files([tmp_path / "nowhere.json", path], CrystalShelf(), 0.01)
+    assert verdicts(audited) == ["consistent"]
+    assert [Path(error.file).name for error in audited.unread] == ["nowhere.json"]
 
 
 def test_a_noise_that_is_no_fraction_is_refused_as_a_whole(tmp_path: Path) -> None:

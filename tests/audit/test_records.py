@@ -198,20 +198,21 @@ def test_a_broken_line_does_not_end_the_file(tmp_path: Path) -> None:
         ("a.dat", "1 2 3", "format"),
     ],
 )
-def test_a_file_that_cannot_be_read_is_one_record_with_its_error(
+def test_a_file_that_cannot_be_read_is_refused_by_name(
     tmp_path: Path, name: str, text: str, message: str
 ) -> None:
-    record = only(tmp_path, name, text)
-    assert message in str(record.error)
-    assert name in str(record.error)
+    with pytest.raises(SitesymError, match=message) as caught:
+        written(tmp_path, name, text)
+    assert caught.value.file == str(tmp_path / name)
+    assert caught.value.next_step
 
 
-def test_a_missing_file_and_bytes_that_are_no_text_are_errors(tmp_path: Path) -> None:
-    (missing,) = records_of_file(tmp_path / "nowhere.json")
-    assert "cannot be read" in str(missing.error)
+def test_a_missing_file_a_folder_and_bytes_that_are_no_text_are_refused(tmp_path: Path) -> None:
     (tmp_path / "latin.json").write_bytes(b'{"id": "\xe5"}')
-    (latin,) = records_of_file(tmp_path / "latin.json")
-    assert "UTF-8" in str(latin.error)
+    faults = {"nowhere.json": "cannot be read", ".": "cannot be read", "latin.json": "UTF-8"}
+    for path, message in faults.items():
+        with pytest.raises(TensorInputError, match=message):
+            list(records_of_file(tmp_path / path))
 
 
 def test_components_that_are_not_listed_are_not_taken_for_zero(tmp_path: Path) -> None:

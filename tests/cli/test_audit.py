@@ -138,17 +138,61 @@ def test_an_error_has_the_same_fields_in_json(tmp_path: Path) -> None:
     assert result.exit_code == 3
 
 
-@pytest.mark.parametrize("content", ["", "{", '{"id": "x"}', "[]"])
-def test_exit_is_3_when_nothing_could_be_read(tmp_path: Path, content: str) -> None:
+@pytest.mark.parametrize("content", ['{"id": "x"}', '[{"id": "x"}, 3]'])
+def test_exit_is_3_when_no_record_is_understood(tmp_path: Path, content: str) -> None:
     path = tmp_path / "a.json"
     path.write_text(content, encoding="utf-8")
-    assert invoke(path).exit_code == 3
+    result = invoke(path)
+    assert result.exit_code == 3
+    assert "error:" in result.stdout
 
 
-def test_exit_is_3_for_a_missing_file_and_2_for_a_missing_argument(tmp_path: Path) -> None:
-    assert invoke(tmp_path / "nowhere.json").exit_code == 3
+@pytest.mark.parametrize("content", [None, "", "{", "[]"])
+@pytest.mark.parametrize("format_name", ["text", "json"])
+def test_a_file_that_cannot_be_read_is_an_error_on_standard_error(
+    tmp_path: Path, content: str | None, format_name: str
+) -> None:
+    path = tmp_path / "a.json"
+    if content is not None:
+        path.write_text(content, encoding="utf-8")
+    result = invoke(path, "--format", format_name)
+    assert (result.exit_code, result.stdout) == (3, "")
+    assert result.stderr.startswith(f"error: {path}: ")
+    assert "next step:" in result.stderr
+
+
+def test_other_files_go_on_and_decide_the_exit_code(tmp_path: Path) -> None:
+    lost = tmp_path / "nowhere.yaml"
+    good = invoke(lost, written(tmp_path, CLEAN), "--format", "json")
+    assert good.exit_code == 0
+    assert "nowhere.yaml" in good.stderr
+    document = strict(good.stdout)
+    assert [record["verdict"] for record in document["records"]] == ["consistent"]
+    assert document["unread_files"][0]["file"] == str(lost)
+    off = CLEAN | {"values": [[9.8, 0, 0], [0, 9.8, 0], [0, 0, 98]]}
+    assert invoke(lost, written(tmp_path, off)).exit_code == 1
+
+
+def test_a_usage_error_exits_with_2(tmp_path: Path) -> None:
     assert invoke().exit_code == 2
     assert invoke(written(tmp_path, CLEAN), "--noise", "2").exit_code == 2
+
+
+def test_whole_numbers_are_not_taken_for_zero(tmp_path: Path) -> None:
+    ones = CLEAN | {"values": [[1, 0, 0], [0, 1, 0], [0, 0, 1]]}
+    zeros = CLEAN | {"id": "b", "values": [[0, 0, 0], [0, 0, 0], [0, 0, 0]]}
+    first, second = strict(invoke(written(tmp_path, ones, zeros), "--format", "json").stdout)["records"]
+    assert (first["verdict"], second["verdict"]) == ("consistent", "cannot-tell")
+
+
+def test_the_record_lists_what_symmetry_cannot_tell(demo: dict[str, Any]) -> None:
+    records = by_id(demo)
+    turn, hand = records["quartz-d"]["cannot_tell"]
+    assert (turn["sort"], turn["flips"], turn["mixes"]) == ("axes", ["22"], False)
+    assert turn["reading"] == "axes turned by 180 degrees about [001]"
+    assert (hand["sort"], hand["flips"]) == ("hand", ["14", "22"])
+    assert {one["sort"] for one in records["spinel-c"]["cannot_tell"]} == {"factor"}
+    assert records["oxide-e"]["cannot_tell"] == []
 
 
 def test_exit_is_1_when_one_of_many_violates(tmp_path: Path) -> None:
