@@ -7,14 +7,18 @@ exact. The translation is then improved by the mean of the mismatches, until the
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from functools import cached_property
+from typing import TypeAlias
 
 import numpy as np
 
 from sitesym.arrays import FloatArray, IntArray
 
 _ROUNDS = 20
+#: Cells with more atoms are paired kind by kind.
+_FEW = 60
 #: Candidates are measured together in blocks of at most this many distances.
 _BLOCK = 500_000
 
@@ -47,11 +51,24 @@ class Pairing:
 class Arrangement:
     """n atoms in a reduced cell: lattice (3, 3) rows, angstrom; fractional positions (n, 3); indices of the
     atoms of each kind. In a reduced cell the vector with coordinates rounded into [-1/2, 1/2] is the shortest
-    one whenever it is shorter than half of the cell's height, which is all that matters here."""
+    one whenever it is shorter than half of the cell's height; see `inversion_pairing` for longer ones."""
 
     lattice: FloatArray
     positions: FloatArray
     kinds: tuple[IntArray, ...]
+
+    @cached_property
+    def inverse(self) -> FloatArray:
+        """(3, 3): Cartesian rows times this are fractional coordinates."""
+        return np.asarray(np.linalg.inv(self.lattice), dtype=np.float64)
+
+    @cached_property
+    def unlike(self) -> FloatArray:
+        """(n, n): infinite for atoms of different kinds, zero for like ones."""
+        kinds = np.empty(len(self.positions), dtype=np.int64)
+        for number, members in enumerate(self.kinds):
+            kinds[members] = number
+        return np.where(kinds[:, None] == kinds, 0.0, np.inf)
 
     def mismatches(self, rotation: IntArray, translations: FloatArray, members: IntArray) -> FloatArray:
         """(c, k, k, 3) angstrom: for c translations, the way from the image of atom i to atom j."""
@@ -66,20 +83,20 @@ def best_pairing(
 ) -> Pairing | None:
     """The pairing with the least root mean square displacement over the translations (c, 3) tried; ``best``
     where none is better."""
-    bounds = _bounds(arrangement, rotation, translations)
+    bounds = lower_bounds(arrangement, rotation, translations)
     count = len(arrangement.positions)
     for index in np.argsort(bounds, kind="stable"):
         # A start that fits atom 0 exactly costs at most n + 1 times what it costs with the best translation;
         # a pairing moves atoms half of the way, hence the 4.
         if best is not None and bounds[index] > 4.0 * (count + 1) * count * best.rms**2:
             break
-        pairing = _refined(arrangement, rotation, translations[index])
+        pairing = refined(arrangement, rotation, translations[index])
         if best is None or pairing.rms < best.rms - 1e-9:
             best = pairing
     return best
 
 
-def _bounds(arrangement: Arrangement, rotation: IntArray, translations: FloatArray) -> FloatArray:
+def lower_bounds(arrangement: Arrangement, rotation: IntArray, translations: FloatArray) -> FloatArray:
     """(c,) angstrom^2: sum over atoms of the squared distance from the image to the nearest like atom."""
     bounds = np.zeros(len(translations))
     step = max(1, _BLOCK // max(len(members) for members in arrangement.kinds) ** 2)
@@ -91,26 +108,42 @@ def _bounds(arrangement: Arrangement, rotation: IntArray, translations: FloatArr
     return bounds
 
 
-def _refined(arrangement: Arrangement, rotation: IntArray, translation: FloatArray) -> Pairing:
+_Paired: TypeAlias = Callable[[Arrangement, IntArray, FloatArray], tuple[IntArray, FloatArray]]
+
+
+def refined(
+    arrangement: Arrangement, rotation: IntArray, translation: FloatArray, paired: _Paired | None = None
+) -> Pairing:
+    """What the pairing by ``paired``, by default the least costly one, and the best translation for it settle
+    on, from a translation (3,) on."""
+    paired = paired or least_costly
     partners = np.full(len(arrangement.positions), -1, dtype=np.int64)
     for _ in range(_ROUNDS):
-        before, partners, ways = partners, *_paired(arrangement, rotation, translation)
+        before, partners, ways = partners, *paired(arrangement, rotation, translation)
         mean = ways.mean(axis=0)
-        translation = translation + np.linalg.solve(arrangement.lattice.T, mean)
+        translation = translation + mean @ arrangement.inverse
         ways = ways - mean
-        if np.array_equal(before, partners):
+        if (before == partners).all():
             break
     displacements = np.empty_like(ways)
     displacements[partners] = -ways / 2.0
     return Pairing(rotation, translation, partners, displacements)
 
 
-def _paired(
+def least_costly(
     arrangement: Arrangement, rotation: IntArray, translation: FloatArray
 ) -> tuple[IntArray, FloatArray]:
     """Partner of each atom and the way (angstrom) from its image to the partner."""
-    partners = np.empty(len(arrangement.positions), dtype=np.int64)
-    ways = np.empty((len(arrangement.positions), 3))
+    count = len(arrangement.positions)
+    if count <= _FEW:
+        # Mostly the nearest like atom of each is its partner, and that is found for all kinds at once.
+        every = np.arange(count)
+        all_ways = arrangement.mismatches(rotation, translation[None], every)[0]
+        nearest = ((all_ways**2).sum(axis=2) + arrangement.unlike).argmin(axis=1)
+        if (nearest[nearest] == every).all():
+            return nearest, all_ways[every, nearest]
+    partners = np.empty(count, dtype=np.int64)
+    ways = np.empty((count, 3))
     for members in arrangement.kinds:
         kind_ways = arrangement.mismatches(rotation, translation[None], members)[0]
         chosen = _assigned((kind_ways**2).sum(axis=2))
@@ -122,12 +155,12 @@ def _paired(
 def _assigned(costs: FloatArray) -> IntArray:
     """The permutation of least cost that is its own inverse; ``costs`` (k, k) is symmetric."""
     nearest = costs.argmin(axis=1)
-    if len(np.unique(nearest)) < len(nearest):
+    if len(set(nearest.tolist())) < len(nearest):
         from scipy.optimize import linear_sum_assignment
 
         nearest = linear_sum_assignment(costs)[1]
     chosen = np.asarray(nearest, dtype=np.int64)
-    return chosen if np.array_equal(chosen[chosen], np.arange(len(chosen))) else _involution(chosen, costs)
+    return chosen if (chosen[chosen] == np.arange(len(chosen))).all() else _involution(chosen, costs)
 
 
 def _involution(permutation: IntArray, costs: FloatArray) -> IntArray:

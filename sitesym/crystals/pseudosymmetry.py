@@ -6,7 +6,7 @@ the displacement. The translation is the one of least root mean square displacem
 up to zero. The cell stays as it is: its strain is not counted, and the parent is named in this cell.
 
 The result is the nearest arrangement found. It is the nearest one there is as long as displacements are small
-against the distances between atoms; beyond that it is an upper bound.
+against the distances between atoms; beyond that it is an upper bound (`inversion_pairing` keeps atoms apart).
 """
 
 from __future__ import annotations
@@ -19,6 +19,7 @@ import numpy as np
 from sitesym.arrays import FloatArray, IntArray, frozen
 from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.found import SpaceGroupSetting
+from sitesym.crystals.inversion_pairing import INVERSION, without_meetings
 from sitesym.crystals.moyo_finder import hall_number_with_moyo, lattice_rotations
 from sitesym.crystals.pairing import Arrangement, Pairing, best_pairing
 from sitesym.crystals.spglib_finder import niggli_lattice, setting
@@ -81,7 +82,7 @@ def pseudosymmetry(symmetry: CrystalSymmetry) -> Pseudosymmetry:
             note=f"not searched: {count} atoms in the primitive cell, more than {LARGEST_CELL}"
         )
     search = _Search(symmetry)
-    inversion = search.best(-np.eye(3, dtype=np.int64)[None])
+    inversion = search.inversion()
     central = search.described(inversion) if inversion is not None else None
     if not symmetry.setting.is_polar:
         return Pseudosymmetry(central)
@@ -115,6 +116,11 @@ class _Search:
             translations = _order_two(rotation, rarest - rotation @ rarest[0])
             best = best_pairing(self.arrangement, rotation, translations[:MOST_TRANSLATIONS], best)
         return best
+
+    def inversion(self) -> Pairing | None:
+        """The best pairing under an inversion that leaves a crystal, as far as one is found."""
+        found = self.best(INVERSION[None])
+        return None if found is None else without_meetings(self.arrangement, found)
 
     def reversing_rotations(self) -> IntArray:
         """(k, 3, 3) operations of order two of the lattice that reverse every polar direction, without -1.
