@@ -1,5 +1,7 @@
 """The `sites` document: strict JSON, complete, and consistent with itself."""
 
+import csv
+import io
 import json
 from pathlib import Path
 
@@ -7,6 +9,8 @@ import numpy as np
 import pytest
 
 from sitesym.crystals import find_symmetry, read_crystal
+from sitesym.reports.layout import vector_text
+from sitesym.reports.render import FORMATS, render
 from sitesym.reports.sites import sites_document
 
 STRUCTURES = Path(__file__).parents[2] / "structures"
@@ -80,3 +84,27 @@ def test_directions_in_file_axes_and_in_the_lattice_are_the_same():
 def test_an_average_structure_is_called_one():
     assert any("average structure" in remark for remark in document_of("perovskite_BaSrTiO3.cif")["remarks"])
     assert not any("average" in remark for remark in document_of("perovskite_SrTiO3.cif")["remarks"])
+
+
+@pytest.mark.parametrize("format_name", FORMATS)
+def test_every_format_keeps_operations_positions_and_directions_of_axes(format_name):
+    document = document_of("quartz_SiO2.cif")
+    text = render(document, format_name).replace("\\", "")
+    silicon = document["sites"][0]
+    direction = vector_text(silicon["axes"][0]["direction_file"]).strip("( )")
+    for operation in silicon["operations"]:
+        assert operation["name"] in text
+        assert operation["xyz"] in text
+    if format_name != "json":
+        assert " ".join(f"{value:.6f}" for value in silicon["position_conventional"]) in text
+        assert " ".join(direction.split()) in " ".join(text.split())
+
+
+def test_rows_of_csv_are_those_of_the_document():
+    document = document_of("zincblende_GaAs.cif")
+    rows = list(csv.DictReader(io.StringIO(render(document, "csv"))))
+    assert [row["label"] for row in rows] == ["Ga1", "As1"]
+    for row, site in zip(rows, document["sites"], strict=True):
+        assert row["operations"].count(";") == site["order"] - 1
+        vectors = {entry.split(": ")[1] for entry in row["axes_file"].split("; ")}
+        assert vectors == {" ".join(f"{v:.6f}" for v in axis["direction_file"]) for axis in site["axes"]}
