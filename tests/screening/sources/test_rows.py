@@ -12,7 +12,7 @@ from pathlib import Path
 from ase.db import connect
 from ase.io import read, write
 
-from sitesym.screening import Screening, Settings, Task
+from sitesym.screening import Screening, Settings, Task, screen
 from sitesym.screening.pool import Pool
 from sitesym.screening.sources import work_items
 
@@ -93,3 +93,16 @@ def test_every_source_gives_the_same_rows(tmp_path: Path) -> None:
     for start in range(0, len(rows), 3):
         got = [{name: row[name] for name in SAME} for row in rows[start : start + 3]]
         assert got == expected, rows[start]["source"]
+
+
+def test_one_frame_is_taken_of_files_members_and_inline_texts_alike(tmp_path: Path) -> None:
+    """What holds a single structure has a last one; a file of several gives one row."""
+    inputs = [make(tmp_path / make.__name__) for make in (make_tar, make_lines, make_frames, make_trajectory)]
+    with tarfile.open(tmp_path / "frames.tar", "w") as archive:
+        archive.add(inputs[-1], arcname="frames.traj")
+    settings = Settings(ladder=False, properties=("permittivity",), frame="last")
+    rows = list(screen([*inputs, tmp_path / "frames.tar"], settings, workers=1))
+    assert {row["status"] for row in rows} == {"ok"}
+    last = rows[2]["space_group_number"]
+    assert [row["space_group_number"] for row in rows[-3:]] == [last] * 3
+    assert len(rows) == 2 * len(NAMES) + 3
