@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 import numpy as np
@@ -19,6 +19,7 @@ from sitesym.audit.related import RelatedRecord, checks_among
 from sitesym.audit.result import AuditResult
 from sitesym.audit.stability import ELASTIC_KINDS, Stability, elastic_stability
 from sitesym.audit.units import unit_warnings
+from sitesym.choices import ReadingChoices
 from sitesym.errors import SitesymError, TensorInputError, UsageError
 from sitesym.groups import standard_rotation
 
@@ -53,7 +54,8 @@ class AuditedRecord:
 class AuditRun:
     """The records in their order, cross-checks among them, and what was decided beforehand.
 
-    ``unread``: the errors, with the file's name, of files that could not be read at all.
+    ``unread``: the errors, with the file's name, of files that could not be read at all. ``choices``: of
+    reading the crystals.
     """
 
     records: tuple[AuditedRecord, ...]
@@ -61,6 +63,7 @@ class AuditRun:
     noise: float
     tolerance_angstrom: float
     unread: tuple[SitesymError, ...] = ()
+    choices: ReadingChoices = field(default_factory=lambda: ReadingChoices())
 
 
 def audit_files(
@@ -86,7 +89,7 @@ def audit_files(
             continue
         audited.extend(audited_record(record, shelf, noise, explain, default) for record in records)
     checks = checks_among(list(_related(audited)), noise)
-    return AuditRun(tuple(audited), checks, noise, shelf.tolerance_angstrom, tuple(unread))
+    return AuditRun(tuple(audited), checks, noise, shelf.tolerance_angstrom, tuple(unread), shelf.choices)
 
 
 def audited_record(

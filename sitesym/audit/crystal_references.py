@@ -9,8 +9,11 @@ from pathlib import Path
 from textwrap import shorten
 from typing import Final, TypeAlias
 
+from sitesym.choices import ReadingChoices, check_choices
 from sitesym.crystals import Crystal, CrystalSymmetry, find_symmetry, read_crystal
+from sitesym.crystals.ase_reader import detected_format
 from sitesym.errors import SitesymError, TensorInputError
+from sitesym.formats import named_format
 from sitesym.groups import PointGroup
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
@@ -52,10 +55,20 @@ class CrystalReference:
 
 
 class CrystalShelf:
-    """Crystals by reference, each read and searched for symmetry once, at one tolerance (angstrom)."""
+    """Crystals by reference, each read and searched for symmetry once, at one tolerance (angstrom).
 
-    def __init__(self, tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM) -> None:
+    ``choices`` of reading serve every structure: a data block and a statement of symmetry are chosen in the
+    CIFs among them. Raises UsageError for choices that mean nothing in any file.
+    """
+
+    def __init__(
+        self,
+        tolerance_angstrom: float = DEFAULT_TOLERANCE_ANGSTROM,
+        choices: ReadingChoices | None = None,
+    ) -> None:
         self.tolerance_angstrom = tolerance_angstrom
+        self.choices: ReadingChoices = choices or {}
+        check_choices(self.choices)
         self._known: dict[CrystalReference, Host | SitesymError] = {}
 
     def host(self, reference: CrystalReference) -> Host:
@@ -76,9 +89,10 @@ class CrystalShelf:
 
     def _read(self, reference: CrystalReference) -> Host:
         if reference.is_structure_text:
-            return find_symmetry(crystal_from_text(reference.text), self.tolerance_angstrom)
+            crystal = crystal_from_text(reference.text, self.choices)
+            return find_symmetry(crystal, self.tolerance_angstrom)
         if reference.is_file:
-            return find_symmetry(read_crystal(reference.path), self.tolerance_angstrom)
+            return find_symmetry(_crystal_of_file(reference.path, self.choices), self.tolerance_angstrom)
         try:
             return PointGroup.from_symbol(reference.text)
         except SitesymError as error:
@@ -90,7 +104,20 @@ class CrystalShelf:
             ) from error
 
 
-def crystal_from_text(text: str) -> Crystal:
+def _crystal_of_file(path: Path, choices: ReadingChoices) -> Crystal:
+    file_format = named_format(path) or detected_format(path)
+    return read_crystal(path, file_format, **_choices_for(file_format, choices))
+
+
+def _choices_for(file_format: str, choices: ReadingChoices) -> ReadingChoices:
+    """The choices that mean something in a file of a format."""
+    kept = choices.copy()
+    if file_format != "cif":
+        kept["block"] = kept["symmetry_from"] = None
+    return kept
+
+
+def crystal_from_text(text: str, choices: ReadingChoices | None = None) -> Crystal:
     """The one structure in the text of a CIF or POSCAR file. Raises ReadingError and its subclasses."""
     is_cif = any(mark in text for mark in _CIF_MARKS)
     # The reading libraries want a file; its name means nothing to the user and stays out of the result.
@@ -98,7 +125,8 @@ def crystal_from_text(text: str) -> Crystal:
     try:
         with os.fdopen(handle, "w", encoding="utf-8") as file:
             file.write(text if text.endswith("\n") else text + "\n")
-        crystal = read_crystal(name, "cif" if is_cif else "vasp")
+        file_format = "cif" if is_cif else "vasp"
+        crystal = read_crystal(name, file_format, **_choices_for(file_format, choices or {}))
     except SitesymError as error:
         told = (error.what, error.value, error.rule, error.next_step)
         raise type(error)(*(part.replace(name, "the text") for part in told)) from error

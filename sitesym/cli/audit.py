@@ -9,7 +9,8 @@ import click
 from sitesym.audit import DEFAULT_NOISE
 from sitesym.audit.batch import audit_files
 from sitesym.audit.crystal_references import CrystalShelf
-from sitesym.cli.options import emit, output_options, tolerance_option, write
+from sitesym.choices import ReadingChoices
+from sitesym.cli.options import emit, output_options, reading_options, tolerance_option, write
 from sitesym.reports.audit import audit_document, nothing_was_read, something_violates
 from sitesym.reports.markup import json_text
 from sitesym.reports.projection import projection_document
@@ -37,6 +38,7 @@ EXIT_NOTHING_READ = 3
 )
 @click.option("--project", metavar="FILE", help="Write the nearest allowed tensors to this file (JSON).")
 @tolerance_option
+@reading_options
 @output_options
 @click.pass_context
 def command(
@@ -47,6 +49,7 @@ def command(
     explain: bool,
     project: str | None,
     tolerance_angstrom: float,
+    reading: ReadingChoices,
     format_name: str,
     output: str | None,
 ) -> None:
@@ -56,11 +59,12 @@ def command(
     beside the file, the text of a POSCAR or CIF, or a point-group symbol), quantity, unit, order, axes (file,
     lattice, ieee, a 3x3 matrix), values, sigma, source, conditions. What is not stated counts as unknown; a
     record that is not understood is listed with its error, and a file that cannot be read is told on standard
-    error while the others go on.
+    error while the others go on. Options of reading count for every structure that records name, --block and
+    --symmetry-from for the CIFs among them.
 
     Exit codes: 0 nothing violates; 1 a tensor violates; 2 usage; 3 nothing could be read.
     """
-    run = audit_files(records, CrystalShelf(tolerance_angstrom), noise, explain, crystal)
+    run = audit_files(records, CrystalShelf(tolerance_angstrom, reading), noise, explain, crystal)
     for error in run.unread:
         click.echo(f"error: {error}", err=True)
     if not run.records:

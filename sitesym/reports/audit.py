@@ -11,11 +11,13 @@ from sitesym.audit.crosschecks import CrossCheck
 from sitesym.audit.measurement import Measurement
 from sitesym.audit.orders import order_text
 from sitesym.audit.result import VERDICTS
+from sitesym.choices import ReadingChoices
 from sitesym.crystals import CrystalSymmetry
 from sitesym.errors import SitesymError
 from sitesym.reports.audit_evidence import evidence, finite, stability_entry
 from sitesym.reports.markup import Document
 from sitesym.reports.provenance import CAUTION, library_versions
+from sitesym.reports.sites import crystal_remarks
 
 SCHEMA = "sitesym.audit/1"
 
@@ -34,6 +36,7 @@ def audit_document(run: AuditRun) -> Document:
         "unread_files": [{"file": error.file, **_error_entry(error)} for error in run.unread],
         "noise": run.noise,
         "tolerance_angstrom": run.tolerance_angstrom,
+        "reading": _choices_entry(run.choices),
         "versions": library_versions(),
         "caution": CAUTION,
     }
@@ -73,14 +76,29 @@ def _crystal_entry(one: AuditedRecord) -> dict[str, Any] | None:
     if one.crystal is None:
         return None
     told = "the text in the record" if one.crystal.is_structure_text else one.crystal.text
-    entry: dict[str, Any] = {"reference": told, "formula": None, "space_group": None, "frame": None}
+    entry: dict[str, Any] = {"reference": told, "remarks": []}
+    entry |= dict.fromkeys(("formula", "space_group", "frame", "part", "distinguished_by"))
     if isinstance(one.host, CrystalSymmetry):
+        crystal = one.host.crystal
         entry |= {
-            "formula": one.host.crystal.formula,
+            "formula": crystal.formula,
             "space_group": one.host.space_group_symbol,
-            "frame": one.host.crystal.frame_note,
+            "frame": crystal.frame_note,
+            "part": crystal.source.part or None,
+            "distinguished_by": ["element", "occupancy", *crystal.distinguish],
+            "remarks": crystal_remarks(one.host),
         }
     return entry
+
+
+def _choices_entry(choices: ReadingChoices) -> dict[str, Any]:
+    """What was chosen on reading the crystals; null for what was not."""
+    return {
+        "frame": choices.get("frame"),
+        "block": choices.get("block"),
+        "symmetry_from": choices.get("symmetry_from"),
+        "distinguish": list(choices.get("distinguish", ())),
+    }
 
 
 def _measurement_entry(measurement: Measurement) -> dict[str, Any]:

@@ -111,9 +111,10 @@ def _line(label: str, text: str) -> str:
 
 def _crystal_text(one: Entry) -> str:
     crystal = one["crystal"]
-    parts = [crystal["formula"], crystal["space_group"], f"point group {one['group']}", crystal["reference"]]
-    frame = f"\nfile axes: {crystal['frame']}" if crystal["frame"] else "\nfile axes: those of the symbol"
-    return ", ".join(filter(None, parts)) + frame
+    parts = [crystal["formula"], crystal["space_group"], f"point group {one['group']}"]
+    parts.extend([crystal["reference"], crystal["part"]])
+    frame = f"file axes: {crystal['frame'] or 'those of the symbol'}"
+    return "\n".join([", ".join(filter(None, parts)), frame, *crystal["remarks"]])
 
 
 def _tensor_text(one: Entry) -> str:

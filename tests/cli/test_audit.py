@@ -238,6 +238,65 @@ def test_the_crystal_option_serves_records_without_one(tmp_path: Path) -> None:
     assert (record["group"], record["crystal"]["formula"]) == ("m-3m", "NaCl")
 
 
+#: Two data blocks; iron of two charges in a cube, which is body-centred unless the charges count.
+BLOCK = """data_{name}
+_cell_length_a {edge}
+_cell_length_b {edge}
+_cell_length_c {edge}
+_cell_angle_alpha 90
+_cell_angle_beta 90
+_cell_angle_gamma 90
+_space_group_name_H-M_alt 'P m -3 m'
+loop_
+_atom_site_label
+_atom_site_type_symbol
+_atom_site_fract_x
+_atom_site_fract_y
+_atom_site_fract_z
+Fe1 Fe2+ 0 0 0
+Fe2 Fe3+ 0.5 0.5 0.5
+"""
+
+
+def test_options_of_reading_choose_in_the_files_that_records_name(tmp_path: Path) -> None:
+    blocks = [BLOCK.format(name="small", edge=2.8), BLOCK.format(name="large", edge=2.9)]
+    (tmp_path / "two.cif").write_text("".join(blocks), encoding="utf-8")
+    vasp = str(STRUCTURES / "zincblende_GaAs.vasp")
+    path = written(tmp_path, CLEAN | {"crystal": "two.cif"}, CLEAN | {"id": "b", "crystal": vasp})
+    asked = ("--block", "large", "--distinguish", "oxidation", "--symmetry-from", "hm")
+    document = strict(invoke(path, *asked, "--format", "json").stdout)
+    assert [record["error"] for record in document["records"]] == [None, None]
+    iron, gallium = (record["crystal"] for record in document["records"])
+    assert (iron["space_group"], gallium["space_group"]) == ("Pm-3m", "F-43m")
+    assert iron["part"].startswith("data block large")
+    assert iron["distinguished_by"] == ["element", "occupancy", "oxidation"]
+    assert document["reading"] == {
+        "frame": None,
+        "block": "large",
+        "symmetry_from": "hm",
+        "distinguish": ["oxidation"],
+    }
+    plain = invoke(path, "--frame", "1", "--format", "json")
+    assert strict(plain.stdout)["records"][0]["crystal"]["space_group"] == "Im-3m"
+
+
+def test_several_structures_in_a_file_are_an_error_of_the_record(tmp_path: Path) -> None:
+    blocks = [BLOCK.format(name="small", edge=2.8), BLOCK.format(name="large", edge=2.9)]
+    (tmp_path / "two.cif").write_text("".join(blocks), encoding="utf-8")
+    result = invoke(written(tmp_path, CLEAN, CLEAN | {"id": "b", "crystal": "two.cif"}))
+    assert result.exit_code == 0
+    assert "data block small; data block large" in " ".join(result.output.split())
+    inline = CLEAN | {"crystal": "".join(blocks)}
+    chosen = invoke(written(tmp_path, inline), "--block", "small", "--format", "json")
+    assert strict(chosen.stdout)["records"][0]["crystal"]["part"].startswith("data block small")
+
+
+def test_a_choice_that_means_nothing_in_any_file_is_a_usage_error(tmp_path: Path) -> None:
+    result = invoke(written(tmp_path, CLEAN), "--distinguish", "colour")
+    assert result.exit_code == 2
+    assert "isotope, oxidation, label, moment" in result.stderr
+
+
 def test_the_tolerance_decides_about_the_crystal_and_stands_in_the_document(tmp_path: Path) -> None:
     path = written(tmp_path, CLEAN | {"crystal": str(STRUCTURES / "barium_titanate_BaTiO3.vasp")})
     tight, wide = (
