@@ -103,6 +103,7 @@ def test_every_named_kind_has_the_counts_of_its_index_symmetry(kind: TensorKind)
     # an antisymmetric pair is an axial vector, with e a polar one; factors may change places (Jahn 1949)
     label = {"e{V2}V": "V2", "[V2]V": "V[V2]"}.get(kind.jahn, kind.jahn)
     for symbol, counts in REFERENCE["computed"].items():
+        assert label in counts, f"counts.json has no number of {label} for {symbol}"
         found = allowed_form(kind, PointGroup.from_symbol(symbol)).independent_count
         assert found == counts[label] - int(kind.traceless), symbol
 
