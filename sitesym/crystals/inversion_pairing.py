@@ -8,7 +8,7 @@ coordinates rounded into [-1/2, 1/2] give it only for ways shorter than half of 
 
 from __future__ import annotations
 
-from itertools import product
+from itertools import islice, product
 from typing import Final
 
 import numpy as np
@@ -99,10 +99,10 @@ def _to_different_places(steps: FloatArray) -> FloatArray:
 
 def _starts(arrangement: Arrangement) -> FloatArray:
     """(c, 3): translations that carry an atom onto one of its kind, those of the rarest kinds first."""
-    sums = [
+    sums = (
         arrangement.positions[first] + arrangement.positions[second]
         for members in sorted(arrangement.kinds, key=len)
         for place, first in enumerate(members)
         for second in members[: place + 1]
-    ]
-    return np.array(sums[:_MOST_STARTS])
+    )
+    return np.array(list(islice(sums, _MOST_STARTS)))
