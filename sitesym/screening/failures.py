@@ -22,6 +22,15 @@ def failed_row(item: WorkItem, name: str, error: SitesymError, settings: Setting
     return blank_row(item, name, settings) | failure
 
 
+def lost_row(item: WorkItem, at: str, before: int, error: SitesymError, settings: Settings) -> Row:
+    """The row of the structure called ``at``, or where none was begun, of the one after ``before`` others,
+    with which the item then ends."""
+    if at or not before:
+        return failed_row(item, at, error, settings)
+    row = failed_row(item, f"structure {before + 1}", error, settings)
+    return row | {"remarks": "what follows in the file could not be reached"}
+
+
 def blank_row(item: WorkItem, name: str, settings: Settings) -> Row:
     """All columns, with what is known before anything is read."""
     row: Row = dict.fromkeys(settings.column_names)

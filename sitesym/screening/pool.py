@@ -1,19 +1,21 @@
 """Warm worker processes that are replaced when they die, fed with small batches, never far ahead.
 
 A worker answers its items in order, so the first unanswered one is the one that ended it. Only that item
-pays: after a crash it is tried once more, then it is a row with a status; the others are given out again.
+pays: after a crash it is tried once more, then it is a row with a status; the others are given out again. Of
+an item with several structures only the one it came to pays.
 """
 
 from __future__ import annotations
 
 from collections import deque
 from collections.abc import Iterator
+from dataclasses import replace
 from multiprocessing.connection import wait
 from types import TracebackType
 from typing import Final
 
-from sitesym.errors import CrashError
-from sitesym.screening.failures import failed_row
+from sitesym.errors import CrashError, ScreeningError
+from sitesym.screening.failures import lost_row
 from sitesym.screening.nursery import Nursery
 from sitesym.screening.process import WorkerProcess
 from sitesym.screening.task import Answer, Job, Task
@@ -81,24 +83,38 @@ class Pool:
             answer = worker.listen()
         except EOFError:
             return self._bury(worker)
-        job = worker.jobs.popleft()
+        job = worker.jobs[0]
+        job.rows.extend(answer.rows)
+        job.at = answer.at
+        if not answer.more:
+            worker.jobs.popleft()
         if answer.last:
             self._replace(worker)
-        return job, answer
+        return None if answer.more else (job, replace(answer, rows=tuple(job.rows)))
 
     def _bury(self, worker: WorkerProcess) -> tuple[Job, Answer] | None:
-        """Replace a dead worker; the row of the item that ended it, unless that one is tried again."""
+        """Replace a dead worker. The item that ended it is tried again, from that structure on; at the second
+        time that structure has its row, and the item goes on after it or is done."""
         error = worker.cause_of_death()
-        job = worker.jobs.popleft() if worker.jobs else None
+        job = worker.jobs[0] if worker.jobs else None
+        done = job is not None and self._lost(job, error)
+        if done:
+            worker.jobs.popleft()
         self._replace(worker)
-        if job is None:
+        if job is None or not done:
             return None
+        return job, Answer(tuple(job.rows), content_hash(job.item) if self.task.hashed else "")
+
+    def _lost(self, job: Job, error: ScreeningError) -> bool:
+        """Take note of the end of a worker at a job; whether the job is done with that."""
         job.tries += 1
         if isinstance(error, CrashError) and job.tries < 2:
-            self._again.append([job])
-            return None
-        row = failed_row(job.item, "", error, self.task.settings)
-        return job, Answer((row,), content_hash(job.item) if self.task.hashed else "")
+            job.at = ""
+            return False
+        job.rows.append(lost_row(job.item, job.at, len(job.rows), error, self.task.settings))
+        goes_on = bool(job.at)
+        job.tries, job.at = 0, ""
+        return not goes_on
 
     def _replace(self, worker: WorkerProcess) -> None:
         if worker.jobs:

@@ -42,7 +42,7 @@ class WorkerProcess:
         """Add jobs to those of the process; one that has died will be noticed on listening."""
         self.jobs.extend(jobs)
         try:
-            self.connection.send([job.item for job in jobs])
+            self.connection.send([(job.item, len(job.rows)) for job in jobs])
         except (BrokenPipeError, ConnectionResetError):
             return
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Final
 
 from sitesym.screening.columns import Row
@@ -15,11 +15,17 @@ MOST_WORDS: Final = 600
 
 @dataclass(eq=False)
 class Job:
-    """An item with its place in the stream; ``tries``: how often it has ended a worker."""
+    """An item with its place in the stream; ``tries``: how often it has ended a worker at one place.
+
+    Of an item with several structures, ``rows`` are those there are so far, ``at`` is the name of the
+    structure being worked on, empty while the next one is read.
+    """
 
     number: int
     item: WorkItem
     tries: int = 0
+    rows: list[Row] = field(default_factory=list)
+    at: str = ""
 
 
 @dataclass(frozen=True)
@@ -40,8 +46,14 @@ class Task:
 
 @dataclass(frozen=True)
 class Answer:
-    """The rows of an item and the hash of its content; after a ``last`` answer the worker ends itself."""
+    """Rows of an item and the hash of its content; after a ``last`` answer the worker ends itself.
+
+    Of an item with several structures each row comes as soon as it is there, in an answer with ``more`` to
+    come; before it comes the name of its structure, in ``at``.
+    """
 
     rows: tuple[Row, ...]
     content_hash: str = ""
     last: bool = False
+    more: bool = False
+    at: str = ""

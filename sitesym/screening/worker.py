@@ -1,9 +1,8 @@
 """What a worker process does: receive units of work, answer each with rows, one after the other.
 
-A unit that takes too long ends the process by an alarm signal
-whose action is the system's own, so that code which never returns to Python is ended too; a unit that asks
-for too much memory fails to get it. Whatever native code writes to standard error while a unit is worked on
-goes to its rows.
+A structure that takes too long ends the process by an alarm signal whose action is the system's own, so that
+code which never returns to Python is ended too; one that asks for too much memory fails to get it. Whatever
+native code writes to standard error meanwhile goes to the row.
 """
 
 from __future__ import annotations
@@ -12,20 +11,23 @@ import os
 import resource
 import signal
 import warnings
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from importlib import import_module
+from itertools import count
 from multiprocessing.connection import Connection
 from time import perf_counter
 from typing import TypeAlias
 
 from sitesym.choices import ReadingChoices
+from sitesym.crystals.crystal import Crystal
 from sitesym.crystals.spglib_finder import setting
 from sitesym.errors import SitesymError
 from sitesym.screening.columns import Row
 from sitesym.screening.contents import Structures
 from sitesym.screening.facts import facts_of
-from sitesym.screening.failures import failed_row, joined, too_much_memory
+from sitesym.screening.failures import failed_row, joined, lost_row, too_much_memory
 from sitesym.screening.row import crystal_row
+from sitesym.screening.settings import Settings
 from sitesym.screening.task import MOST_WORDS, Answer, Task
 from sitesym.screening.work import WorkItem, content_hash, storable
 
@@ -38,12 +40,16 @@ def prepared(task: Task) -> Reader:
     reader: Reader = getattr(import_module(module), function)
     if task.settings.finder != "spglib" or task.settings.ladder:
         import_module("moyopy")
+    if task.settings.ladder:
+        # Pairs atoms when the distance from inversion is measured.
+        import_module("scipy.optimize")
     facts_of(setting(1), task.settings.properties)
     return reader
 
 
 def work(connection: Connection, task: Task, reader: Reader) -> None:
-    """Receive lists of items and send one `Answer` for each, in order, until the other end is gone."""
+    """Receive lists of items, each with the number of its structures that are done, and send an `Answer` for
+    each, in order, until the other end is gone."""
     signal.signal(signal.SIGALRM, signal.SIG_DFL)
     # Each warning is shown each time: what an item's rows say must not depend on the items before it.
     warnings.simplefilter("always")
@@ -52,8 +58,8 @@ def work(connection: Connection, task: Task, reader: Reader) -> None:
     _limit_memory(task.limit_megabytes)
     try:
         while True:
-            for item in connection.recv():
-                answer = answered(item, task, reader)
+            for item, done in connection.recv():
+                answer = answered(item, done, task, reader, connection.send)
                 connection.send(answer)
                 if answer.last:
                     return
@@ -61,49 +67,63 @@ def work(connection: Connection, task: Task, reader: Reader) -> None:
         return
 
 
-def answered(item: WorkItem, task: Task, reader: Reader) -> Answer:
-    """Rows of an item; whatever goes wrong is a row."""
-    digest, rows = "", list[Row]()
+def answered(item: WorkItem, done: int, task: Task, reader: Reader, tell: Callable[[Answer], None]) -> Answer:
+    """The last answer to an item; where it has several structures, one for each goes before through ``tell``.
+
+    ``done`` structures have their rows already. Whatever goes wrong is a row.
+    """
+    digest, at, start = "", "", perf_counter()
     try:
         if task.hashed:
             _set_alarm(task.limit_seconds)
             digest = content_hash(item)
-        rows.extend(_rows(item, task, reader))
-        return Answer(tuple(rows), digest)
-    except SitesymError as error:
-        rows = [failed_row(item, "", error, task.settings)]
-    except MemoryError:
-        # What a refused allocation has left behind in libraries is unknown: the process is not used again.
-        rows = [failed_row(item, "", too_much_memory(task.limit_megabytes), task.settings)]
-        return Answer(tuple(rows), digest, last=True)
-    except Exception as error:  # noqa: BLE001  the worker boundary: one item must not end a run
-        rows = [failed_row(item, "", _unforeseen(error), task.settings)]
-    return Answer(tuple(rows), digest)
-
-
-def _rows(item: WorkItem, task: Task, reader: Reader) -> Iterator[Row]:
-    """A row for each structure of an item; limits and times are those of one structure."""
-    structures = iter(reader(item, task.settings.reading))
-    try:
-        while True:
-            start = perf_counter()
-            _set_alarm(task.limit_seconds)
-            named = next(structures, None)
-            if named is None:
-                return
-            name, crystal = named
-            try:
-                if isinstance(crystal, SitesymError):
-                    raise crystal
-                row = crystal_row(item, name, crystal, task.settings)
-            except SitesymError as error:
-                row = failed_row(item, name, error, task.settings)
-            if words := _words():
-                row["remarks"] = joined((str(row["remarks"] or ""), words))
+        for name, crystal in _structures(item, done, task, reader):
+            if name:
+                at = name
+                tell(Answer((), more=True, at=at))
+            row = _row(item, name, crystal, task.settings)
             row["seconds"] = round(perf_counter() - start, 6)
-            yield row
+            if not name:
+                return Answer((row,), digest)
+            tell(Answer((row,), more=True))
+            done, at, start = done + 1, "", perf_counter()
+        return Answer((), digest)
+    except MemoryError:
+        reason: SitesymError = too_much_memory(task.limit_megabytes)
+        # What a refused allocation has left behind in libraries is unknown: the process is not used again.
+        last = True
+    except Exception as error:  # noqa: BLE001  the worker boundary: one item must not end a run
+        reason = error if isinstance(error, SitesymError) else _unforeseen(error)
+        last = bool(at)
     finally:
         _set_alarm(0.0)
+    # Another process goes on after a structure that was begun.
+    return Answer((lost_row(item, at, done, reason, task.settings),), digest, last, more=bool(at))
+
+
+def _structures(item: WorkItem, done: int, task: Task, reader: Reader) -> Structures:
+    """The structures of an item after the first few; each has the whole limit of time."""
+    structures = iter(reader(item, task.settings.reading))
+    for number in count():
+        _set_alarm(task.limit_seconds)
+        named = next(structures, None)
+        if named is None:
+            return
+        if number >= done:
+            yield named
+
+
+def _row(item: WorkItem, name: str, crystal: Crystal | SitesymError, settings: Settings) -> Row:
+    """The row of a structure without ``seconds``, with what was written to standard error since the last."""
+    try:
+        if isinstance(crystal, SitesymError):
+            raise crystal
+        row = crystal_row(item, name, crystal, settings)
+    except SitesymError as error:
+        row = failed_row(item, name, error, settings)
+    if words := _words():
+        row["remarks"] = joined((str(row["remarks"] or ""), words))
+    return row
 
 
 def _set_alarm(seconds: float) -> None:

@@ -8,8 +8,10 @@ import sys
 import time
 from collections.abc import Callable
 from pathlib import Path
+from typing import cast
 
 from sitesym.choices import ReadingChoices
+from sitesym.crystals import Crystal, read_crystal
 from sitesym.screening.contents import Structures, read_item
 from sitesym.screening.work import WorkItem
 
@@ -19,10 +21,34 @@ def read(item: WorkItem, choices: ReadingChoices) -> Structures:
     the first time alone, is read from the file of the same name that ends in .good."""
     path = Path(item.source)
     word = path.read_text(encoding="utf-8", errors="replace").split()[0] if path.is_file() else ""
+    if word.startswith("frames-"):
+        yield from _frames(path, word.removeprefix("frames-"))
+        return
     if word in POISONS:
         POISONS[word](path)
         item = WorkItem.of_path(path.with_suffix(".good"), item.identity, "vasp")
     yield from read_item(item, choices)
+
+
+def _frames(path: Path, word: str) -> Structures:
+    """Five structures called a to e; the third is poisonous to work on, or with `read-` before its name, to
+    read."""
+    good = read_crystal(path.with_suffix(".good"), "vasp")
+    if word.startswith("read-"):
+        yield from (("a", good), ("b", good))
+        POISONS[word.removeprefix("read-")](path)
+    for name in "abcde":
+        yield name, good if name != "c" else cast(Crystal, _Poisonous(word))
+
+
+class _Poisonous:
+    """A crystal that does harm when it is looked at."""
+
+    def __init__(self, word: str) -> None:
+        self._word = word
+
+    def __getattr__(self, name: str) -> object:
+        return POISONS[self._word](Path())
 
 
 def _crash(_: Path) -> None:

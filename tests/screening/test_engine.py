@@ -109,6 +109,38 @@ def test_what_cannot_be_opened_or_read_is_a_row(tmp_path: Path) -> None:
     assert found["large.cif"]["error_code"] == "too-large"
 
 
+@pytest.mark.parametrize(
+    ("poison", "status"),
+    [("crash", "crashed"), ("hang", "timed-out"), ("eat", "out-of-memory"), ("unforeseen", "error")],
+)
+def test_what_one_structure_of_a_file_does_costs_that_one_alone(
+    tmp_path: Path, poison: str, status: str
+) -> None:
+    """The others have their rows, once each, also when the item was tried again; other files lose none."""
+    for number in range(2):
+        (tmp_path / f"{number}.vasp").write_text(f"frames-{poison}")
+        (tmp_path / f"{number}.good").write_text(salt_text())
+        (tmp_path / f"{number}_salt.vasp").write_text(salt_text())
+    found = poisoned(tmp_path, workers=1, seconds=2.0)
+    assert {name: row["status"] for name, row in found.items()} == {
+        f"{number}{name}": status if name.endswith("#c") else "ok"
+        for number in range(2)
+        for name in (".vasp#a", ".vasp#b", ".vasp#c", ".vasp#d", ".vasp#e", "_salt.vasp")
+    }
+    assert list(found)[:6] == ["0.vasp#a", "0.vasp#b", "0.vasp#c", "0.vasp#d", "0.vasp#e", "0_salt.vasp"]
+    assert found["1.vasp#c"]["frame"] == "c"
+
+
+def test_what_is_not_even_read_is_named_by_its_place(tmp_path: Path) -> None:
+    (tmp_path / "0.vasp").write_text("frames-read-crash")
+    (tmp_path / "0.good").write_text(salt_text())
+    found = poisoned(tmp_path)
+    assert {name: row["status"] for name, row in found.items()} == {
+        "0.vasp#a": "ok", "0.vasp#b": "ok", "0.vasp#structure 3": "crashed",
+    }  # fmt: skip
+    assert found["0.vasp#structure 3"]["remarks"] == "what follows in the file could not be reached"
+
+
 def test_a_crash_that_does_not_repeat_costs_nothing(tmp_path: Path) -> None:
     (tmp_path / "once.vasp").write_text("crash-once")
     (tmp_path / "once.good").write_text(salt_text())
