@@ -77,8 +77,9 @@ def reliability_columns(reliability: Reliability | None) -> Row:
         "stability": None if ladder is None else "fragile" if ladder.fragile else "robust",
         "interval_low_angstrom": low,
         "interval_high_angstrom": high,
+        # Where the finder does not confirm the arrangement, the number is the distance to nothing.
         "distance_to_centrosymmetric_angstrom": (
-            None if nearest is None else nearest.largest_displacement_angstrom
+            nearest.largest_displacement_angstrom if nearest is not None and nearest.checked else None
         ),
     }
 

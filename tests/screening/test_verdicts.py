@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -93,3 +95,14 @@ def test_what_was_not_asked_is_missing_and_a_second_finder_that_differs_is_named
     (remark,) = reliability_remarks(both)
     assert remark.startswith("moyo differs in space group")
     assert remark.endswith("P4mm")
+
+
+def test_a_distance_to_an_arrangement_that_no_finder_confirms_is_left_empty(barium_titanate: Crystal) -> None:
+    reliability = examined_symmetry(barium_titanate).reliability
+    assert reliability is not None
+    assert reliability.pseudosymmetry is not None
+    nearest = reliability.pseudosymmetry.centrosymmetric
+    assert nearest is not None
+    unconfirmed = replace(reliability.pseudosymmetry, centrosymmetric=replace(nearest, checked=False))
+    columns = reliability_columns(replace(reliability, pseudosymmetry=unconfirmed))
+    assert columns["distance_to_centrosymmetric_angstrom"] is None
