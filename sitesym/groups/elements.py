@@ -28,7 +28,8 @@ class Element:
 
     ``order`` is that of its proper part (1, 2, 3, 4, 6; a mirror has 2, the inversion 1), ``axis`` the
     Cartesian unit vector of the axis (the normal for a mirror; None for 1 and -1), ``sense`` +1 or -1 about
-    that axis (0 for order up to 2), ``direction`` the text of the axis.
+    that axis (0 for order up to 2), ``direction`` the text of the axis. ``steps``: the angle is 360 degrees
+    times steps / order, at most half a turn; always 1 in crystals, also 2 for order 5.
     """
 
     order: int
@@ -37,13 +38,17 @@ class Element:
     sense: int
     direction: str
     time_reversal: bool = False
+    steps: int = 1
 
     @property
     def symbol(self) -> str:
-        """Symbol without direction: 1, -1, 2, m, 3, -3, 4, -4, 6, -6 (any order n in a general group)."""
-        if not self.improper:
-            return str(self.order)
-        return "m" if self.order == 2 else f"-{self.order}"
+        """Symbol without direction: 1, -1, 2, m, 3, -3, 4, -4, 6, -6; in a general group any order, and 5^2
+        for two fifths of a turn.
+        """
+        if self.improper and self.order == 2:
+            return "m"
+        power = f"^{self.steps}" if self.steps > 1 else ""
+        return f"{'-' if self.improper else ''}{self.order}{power}"
 
     @property
     def name(self) -> str:
@@ -66,7 +71,9 @@ def classify(
         return Element(1, improper, None, 0, "", time_reversal)
     axis, direction = _axis(proper, order, lattice)
     sense = 0 if order == 2 else _sense(proper, axis)
-    return Element(order, improper, frozen(axis), sense, direction, time_reversal)
+    angle = np.arccos(np.clip((np.trace(proper) - 1.0) / 2.0, -1.0, 1.0))
+    steps = round(float(angle) * order / (2.0 * np.pi))
+    return Element(order, improper, frozen(axis), sense, direction, time_reversal, steps)
 
 
 def _rotation_order(proper: FloatArray) -> int:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from functools import cached_property, lru_cache
+from functools import cached_property
 
 import numpy as np
 
@@ -19,13 +19,8 @@ from sitesym.groups.inputs import (
     require_orthogonal,
     time_reversal_flags,
 )
-from sitesym.groups.symbols import (
-    ORIENTED,
-    SCHOENFLIES,
-    crystal_system,
-    generated,
-    read_symbol,
-)
+from sitesym.groups.recognition import class_symbol, oriented_symbol
+from sitesym.groups.symbols import SCHOENFLIES, crystal_system, generated, read_symbol
 from sitesym.tolerances import SAME_MATRIX
 
 
@@ -164,7 +159,7 @@ class PointGroup:
         Time reversal is left out of it: 4'/m', 4/m' and the grey 4/m1' all have the symbol 4/m.
         """
         parts = self.rotations_cart[~self.time_reversal] if self._is_grey else self.rotations_cart
-        return _class_symbols().get(_signature(parts), f"order {self.order}")
+        return class_symbol(parts) or f"order {self.order}"
 
     @cached_property
     def schoenflies(self) -> str:
@@ -183,7 +178,7 @@ class PointGroup:
         """
         if self.rotations_frac is None:
             return self.symbol
-        return _oriented_symbols().get(_matrix_set(self.rotations_frac), self.symbol)
+        return oriented_symbol(self.rotations_frac) or self.symbol
 
     @cached_property
     def determinants(self) -> IntArray:
@@ -228,32 +223,3 @@ class PointGroup:
 
     def __repr__(self) -> str:
         return f"PointGroup({self.oriented!r}, order={self.order})"
-
-
-def _signature(rotations: FloatArray | IntArray) -> tuple[tuple[int, int], ...]:
-    """Trace and determinant of every element in any basis, sorted: it tells the 32 classes apart."""
-    traces = np.rint(np.trace(rotations, axis1=1, axis2=2) * 1e4).astype(int)
-    determinants = np.rint(np.linalg.det(rotations)).astype(int)
-    return tuple(sorted(zip(traces.tolist(), determinants.tolist(), strict=True)))
-
-
-def _matrix_set(rotations: IntArray) -> frozenset[bytes]:
-    return frozenset(np.ascontiguousarray(matrix).tobytes() for matrix in rotations)
-
-
-@lru_cache(maxsize=1)
-def _groups_by_spelling() -> dict[str, IntArray]:
-    """The integer matrices of every oriented spelling, of each class the standard one first."""
-    spellings = [s for symbol in SCHOENFLIES for s in ORIENTED.get(symbol, (symbol,))]
-    return {spelling: generated(read_symbol(spelling).generators) for spelling in spellings}
-
-
-@lru_cache(maxsize=1)
-def _class_symbols() -> dict[tuple[tuple[int, int], ...], str]:
-    groups = _groups_by_spelling()
-    return {_signature(groups[ORIENTED.get(symbol, (symbol,))[0]]): symbol for symbol in SCHOENFLIES}
-
-
-@lru_cache(maxsize=1)
-def _oriented_symbols() -> dict[frozenset[bytes], str]:
-    return {_matrix_set(rotations): spelling for spelling, rotations in _groups_by_spelling().items()}

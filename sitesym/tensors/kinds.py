@@ -12,7 +12,7 @@ from difflib import get_close_matches
 from functools import cached_property
 
 from sitesym.errors import UsageError
-from sitesym.tensors.indexsymmetry import IndexSymmetry
+from sitesym.tensors.indexsymmetry import IndexSymmetry, Product
 from sitesym.tensors.jahn import read_jahn
 
 
@@ -90,7 +90,12 @@ class TensorKind:
             return "factor 2 where one index is 4-6, 4 where both are"
         if self.pair_factors == (1, 2):
             return "factor 2 in columns 4-6 only"
-        return "factor 2 in columns 4-6"
+        pair_is_last = isinstance(self.written, Product) and self.written.factors[-1].rank == 2
+        if self.pair_factors == (2,) and pair_is_last:
+            return "factor 2 in columns 4-6"
+        return (
+            f"factors {', '.join(map(str, self.pair_factors))} where the pairs of indices, in turn, are 4-6"
+        )
 
 
 _BOTH = "both indices alike"

@@ -5,7 +5,7 @@ import pytest
 
 from sitesym.errors import AxesError, NotAGroupError, SymmetryError
 from sitesym.groups import PointGroup
-from sitesym.groups.symbols import SCHOENFLIES
+from sitesym.groups.symbols import SCHOENFLIES, rotation_about
 
 TURN_Z = np.array([[0, -1, 0], [1, 0, 0], [0, 0, 1]])
 ONE = np.eye(3, dtype=int)
@@ -147,6 +147,16 @@ def test_positive_rotations_turn_counterclockwise_about_their_axis() -> None:
             if element.order > 2:
                 across = np.cross(element.axis, [0.3, 0.5, 0.7])
                 assert element.sense * (np.cross(across, rotation @ across) @ element.axis) > 0
+
+
+@pytest.mark.parametrize(("order", "steps"), [(5, [1, 2]), (8, [1, 3]), (12, [1, 5])])
+def test_turns_of_one_order_by_different_angles_have_different_names(order: int, steps: list[int]) -> None:
+    turns = [rotation_about(np.array([0.0, 0.0, 1.0]), 2 * np.pi * k / order) for k in range(order)]
+    names = PointGroup.from_cartesian(np.array(turns)).names
+    assert len(set(names)) == order
+    for k in steps:
+        symbol = f"{order}" if k == 1 else f"{order}^{k}"
+        assert (names[k], names[order - k]) == (f"{symbol}+ [001]", f"{symbol}- [001]")
 
 
 def test_a_prime_marks_time_reversal() -> None:

@@ -14,7 +14,7 @@ from sitesym.errors import (
     UsageError,
 )
 from sitesym.groups import PointGroup
-from sitesym.tensors import all_kinds, allowed_form, kind, kind_from_jahn
+from sitesym.tensors import TensorKind, all_kinds, allowed_form, contraction, kind, kind_from_jahn
 
 
 @pytest.mark.parametrize(
@@ -82,6 +82,26 @@ def test_names_of_kinds_are_unique_and_their_symbols_are_read() -> None:
         assert kind(k.name) is k
         assert k.unit
         assert k.indices
+
+
+def test_every_contracted_pair_of_a_kind_has_its_factor() -> None:
+    for k in all_kinds():
+        assert len(k.pair_factors) == contraction(k).blocks.count(6), k.name
+
+
+@pytest.mark.parametrize(
+    ("jahn", "factors", "rule"),
+    [
+        ("V[V2]", (2,), "factor 2 in columns 4-6"),
+        ("[V2]V", (2,), "factors 2 where"),  # the pair is in the rows
+        ("[V2][V2]", (2, 1), "factors 2, 1 where"),
+        ("[V2][V2]", (1, 2), "factor 2 in columns 4-6 only"),
+        ("[[V2]2]", (2, 2), "4 where both are"),
+        ("V[[V2]2]", (1, 1), "no factor"),
+    ],
+)
+def test_factors_in_words_are_those_of_the_pairs(jahn: str, factors: tuple[int, ...], rule: str) -> None:
+    assert rule in TensorKind("name", "s", jahn, "1", "all", factors).factor_rule
 
 
 def test_written_notation_is_never_finer_than_the_symmetry_obeyed() -> None:
