@@ -1,27 +1,13 @@
-"""An `irreps` document as text, CSV, Markdown and LaTeX."""
+"""An `irreps` document as text, CSV and Markdown."""
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from typing import Any
 
-from sitesym.reports.headings import (
-    footer,
-    header,
-    latex_footer,
-    latex_header,
-    markdown_footer,
-    markdown_header,
-)
+from sitesym.reports.headings import footer, header, markdown_footer, markdown_header
 from sitesym.reports.layout import labelled, table
-from sitesym.reports.markup import (
-    Document,
-    csv_text,
-    latex_escape,
-    latex_table,
-    markdown_escape,
-    markdown_table,
-)
+from sitesym.reports.markup import Document, csv_text, markdown_escape, markdown_table
 
 CSV_COLUMNS = (
     "group", "irrep", "dimension", "reality", "class", "class_size", "character", "real_part",
@@ -52,7 +38,7 @@ def irreps_text(document: Document, matrices: bool = False) -> str:
         header(document),
         f"characters (columns: classes; second line: elements in the class)\n\n{drawn}",
     ]
-    blocks.append("\n".join(labelled(label, text) for label, text in _notes(document)))
+    blocks.append("\n".join(labelled(label, text) for label, text in notes(document)))
     blocks.append("classes\n\n" + table(_CLASS_HEAD, _class_rows(document), indent=2))
     if matrices:
         blocks.append("matrices (unitary; one for each element)")
@@ -70,17 +56,9 @@ def irreps_markdown(document: Document) -> str:
     """The character table, the notes and the classes."""
     drawn = markdown_table(*_sized_table(document))
     blocks = ["# Irreducible representations", markdown_header(document), drawn]
-    notes = (f"{label}: {markdown_escape('; '.join(text.splitlines()))}" for label, text in _notes(document))
+    below = (f"{label}: {markdown_escape('; '.join(text.splitlines()))}" for label, text in notes(document))
     classes = markdown_table(_CLASS_HEAD, _class_rows(document))
-    return "\n\n".join([*blocks, *notes, classes, markdown_footer(document)])
-
-
-def irreps_latex(document: Document) -> str:
-    """The character table as a tabular, the notes, and the classes as another."""
-    drawn = latex_table(*_sized_table(document))
-    notes = (f"{label}: {latex_escape('; '.join(text.splitlines()))}" for label, text in _notes(document))
-    classes = latex_table(_CLASS_HEAD, _class_rows(document))
-    return "\n\n".join([latex_header(document), drawn, *notes, classes, latex_footer(document)])
+    return "\n\n".join([*blocks, *below, classes, markdown_footer(document)])
 
 
 def _table_cells(document: Document) -> tuple[list[str], list[list[str]]]:
@@ -116,33 +94,42 @@ def _csv_rows(document: Document) -> Iterator[tuple[object, ...]]:
             yield *common, entry["label"], entry["size"], exact, real, imaginary, *beside
 
 
-def _notes(document: Document) -> Iterator[tuple[str, str]]:
-    """(label, text) of what stands below the table."""
+def notes(document: Document) -> Iterator[tuple[str, str]]:
+    """(label, text) of what stands below the table; a text may have several lines."""
     pairs = document.get("joined")
     if pairs:
-        yield "joined", "; ".join(f"{pair['label']} = {' + '.join(pair['members'])}" for pair in pairs)
+        yield "joined", "\n".join(joined_texts(pairs))
     reduction = document.get("reduction")
     if reduction:
-        yield "reduction", f"{reduction['property']} = {_sum(reduction['multiplicity'], pairs or ())}"
-    yield "checks", "\n".join(_checks(document["checks"]))
+        yield "reduction", f"{reduction['property']} = {direct_sum(reduction['multiplicity'], pairs or ())}"
+    yield "checks", "\n".join(check_texts(document["checks"]))
 
 
-def _sum(multiplicity: Mapping[str, int], pairs: Sequence[Mapping[str, Any]]) -> str:
-    """A direct sum such as "2 A1 + E"; irreps that do not occur are left out.
+def joined_texts(pairs: Sequence[Mapping[str, Any]]) -> Iterator[str]:
+    """What each complex pair is together, and its real functions: "E = 1E + 2E: x, y"."""
+    for pair in pairs:
+        functions = f": {', '.join(pair['components'])}" if pair["components"] else ""
+        yield f"{pair['label']} = {' + '.join(pair['members'])}{functions}"
+
+
+def direct_sum(
+    multiplicity: Mapping[str, int], pairs: Sequence[Mapping[str, Any]], name: Callable[[str], str] = str
+) -> str:
+    """A direct sum such as "2 A1 + E", irreps written by ``name``; those that do not occur are left out.
 
     The members of a complex pair occur equally often in a real tensor and stand together.
 
-    >>> _sum({"A": 4, "1E": 5, "2E": 5}, [{"members": ["1E", "2E"]}])
+    >>> direct_sum({"A": 4, "1E": 5, "2E": 5}, [{"members": ["1E", "2E"]}])
     '4 A + 5 (1E + 2E)'
     """
-    together = {pair["members"][0]: f"({' + '.join(pair['members'])})" for pair in pairs}
+    together = {pair["members"][0]: f"({' + '.join(map(name, pair['members']))})" for pair in pairs}
     second = {pair["members"][1] for pair in pairs}
     times = {label: count for label, count in multiplicity.items() if count and label not in second}
-    names = {label: together.get(label, label) for label in times}
+    names = {label: together.get(label, name(label)) for label in times}
     return " + ".join(f"{n} {names[label]}" if n > 1 else names[label] for label, n in times.items()) or "0"
 
 
-def _checks(checks: Mapping[str, Any]) -> Iterator[str]:
+def check_texts(checks: Mapping[str, Any]) -> Iterator[str]:
     """Each check as a statement, with the largest deviation where it is numerical."""
     for name, value in checks.items():
         if name == "group_order":

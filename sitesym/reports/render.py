@@ -12,6 +12,7 @@ from sitesym.reports import (
     audit_tables,
     audit_text,
     conventions,
+    irreps_latex,
     irreps_report,
     screen_report,
     sites_report,
@@ -31,7 +32,7 @@ _RENDERERS: Final[Mapping[str, Mapping[str, Callable[[Document], str]]]] = {
         "text": irreps_report.irreps_text,
         "csv": irreps_report.irreps_csv,
         "markdown": irreps_report.irreps_markdown,
-        "latex": irreps_report.irreps_latex,
+        "latex": irreps_latex.irreps_latex,
     },
     "sitesym.sites/1": {
         "text": sites_report.sites_text,

@@ -66,7 +66,29 @@ def test_csv_keeps_functions_and_the_reduction_asked_for() -> None:
     assert {(row["reduced_property"], row["multiplicity"]) for row in without} == {("", "")}
 
 
-@pytest.mark.parametrize("format_name", ["text", "markdown", "latex"])
+def test_real_functions_of_a_complex_pair_stand_beside_it() -> None:
+    assert "joined     E = 1E + 2E: x, y, Rx, Ry, yz, xz\n" in render(document_of("4"), "text")
+    assert "$E = {}^{1}E + {}^{2}E$: $x$, $y$, $R_{x}$" in render(document_of("4"), "latex")
+
+
+@pytest.mark.parametrize("symbol", SPELLINGS)
+def test_latex_is_balanced_and_leaves_no_program_notation(symbol: str) -> None:
+    text = render(document_of(symbol, "piezoelectric-strain"), "latex").split("checks:")[0]
+    table = text.split(r"\hline")[1]
+    assert text.count("{") == text.count("}")
+    assert text.count("$") % 2 == 0
+    assert not set("*") & set(table)
+    assert "exp(" not in table
+
+
+def test_latex_writes_labels_characters_and_elements_as_formulas() -> None:
+    text = render(document_of("-3", "pyroelectric"), "latex")
+    assert "${}^{1}E_{g}$ & 1 & $1$ & $e^{2\\pi i/3}$ & $e^{-2\\pi i/3}$ & $1$" in text
+    assert r"$\bar{3}^{+}$ $[001]$ (1)" in text
+    assert "pyroelectric = $A_{u} + ({}^{1}E_{u} + {}^{2}E_{u})$" in text
+
+
+@pytest.mark.parametrize("format_name", ["text", "markdown"])
 def test_readable_formats_list_the_elements_of_each_class(format_name: str) -> None:
     text = render(document_of("3m"), format_name).replace("\\", "")
     assert "m [010], m [110], m [100]" in text
