@@ -6,6 +6,7 @@ from dataclasses import replace
 
 import numpy as np
 
+from sitesym.arrays import FloatArray, frozen
 from sitesym.audit.ambiguities import ambiguities
 from sitesym.audit.components import deviations
 from sitesym.audit.equivalents import equivalent_axes
@@ -14,8 +15,8 @@ from sitesym.audit.indexcheck import check_index_symmetry
 from sitesym.audit.measurement import Measurement
 from sitesym.audit.messages import message
 from sitesym.audit.neumann import Subspaces, subspaces
-from sitesym.audit.own_symmetry import tensor_symmetry
-from sitesym.audit.result import AuditResult, Deviation, IndexFinding, Reading
+from sitesym.audit.own_symmetry import tensor_symmetry, tensor_symmetry_in_own_axes
+from sitesym.audit.result import AuditResult, Deviation, IndexFinding, Reading, TensorSymmetry
 from sitesym.audit.search import Field, orientations, search, stated_orientation
 from sitesym.audit.uncertainty import Noise, noise_of
 from sitesym.audit.variants import Variant, variants_of
@@ -103,7 +104,6 @@ def _detailed(field: Field, index: IndexFinding, finding: Finding) -> AuditResul
     shown = finding.best or finding.stated
     rotation = field.orientations[0].rotation if shown is None else shown.rotation
     number = 0 if shown is None else _variant_of(field, shown)
-    variant = field.variants[number]
     forbidden, relations = _components(field, finding)
     return AuditResult(
         measurement,
@@ -120,10 +120,21 @@ def _detailed(field: Field, index: IndexFinding, finding: Finding) -> AuditResul
         relations,
         equivalent_axes(measurement.kind, frames.standard, frames.standard_from_file @ rotation.T),
         cannot_tell,
-        tensor_symmetry(spaces, field.moved(rotation, variant), float(field.tolerances[number])),
+        _symmetry(field, finding, rotation, number),
         spaces.constraints,
         spaces.independent,
     )
+
+
+def _symmetry(field: Field, finding: Finding, rotation: FloatArray, number: int) -> TensorSymmetry:
+    """The tensor's own symmetry in the crystal's axes, or in its own where the verdict rests on these."""
+    own = None if finding.crystal is None else finding.crystal.own
+    if own is not None:
+        kind, axes = field.measurement.kind, frozen(own.rotation @ field.orientations[0].rotation)
+        return tensor_symmetry_in_own_axes(kind, field.spaces.group, own.kept, axes)
+    moved = field.moved(rotation, field.variants[number])
+    ieee = field.frames.standard_from_file
+    return tensor_symmetry(field.spaces, moved, float(field.tolerances[number]), ieee)
 
 
 def _components(field: Field, finding: Finding) -> tuple[tuple[Deviation, ...], tuple[Deviation, ...]]:

@@ -2,34 +2,38 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-from functools import lru_cache
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from sitesym.arrays import FloatArray
-from sitesym.audit.frames import standard_groups
 from sitesym.audit.neumann import Subspaces, subspaces
-from sitesym.audit.own_symmetry import Kept, expected_order, expected_symbol, kept_operations
+from sitesym.audit.own_axes import OwnAxes, symmetry_in_own_axes
+from sitesym.audit.own_symmetry import Kept, expected_order, expected_symbol, group_of, kept_operations
 from sitesym.audit.search import Field, chance
 from sitesym.tensors import TensorKind
 
 #: Subgroups of the two holohedries, 98 of m-3m and 54 of 6/mmm: naming one of them is a choice among so many.
 _CLASSES_TRIED = 152
+#: Axes of its own cost three fitted angles and the frames tried.
+_FRAMES, _ANGLES = 10, 3
 
 
 @dataclass(frozen=True)
 class OtherCrystal:
     """The group a tensor obeys instead: symbol, crystal system, in which axes, and the score of the reading.
 
-    ``is_lower``: whether it has fewer operations than a tensor of the kind should show in this crystal.
+    ``order``: number of its operations. ``is_lower``: whether these are fewer than a tensor of the kind
+    should show in this crystal. ``own``: in axes that are none of the crystal's, those and the operations.
     """
 
     symbol: str
     system: str
     axes: str
     score: float
+    order: int
     is_lower: bool
+    own: OwnAxes | None = None
 
 
 def other_crystal(field: Field) -> OtherCrystal | None:
@@ -49,28 +53,46 @@ def other_crystal(field: Field) -> OtherCrystal | None:
     return min((other for other in found if other is not None), key=lambda other: other.score, default=None)
 
 
+def other_crystal_in_own_axes(field: Field) -> OtherCrystal | None:
+    """The same in axes of the tensor's own, wherever they lie."""
+    coordinates = field.variants[0].coordinates
+    own = symmetry_in_own_axes(field.spaces.space.kind, coordinates, _tolerance(field, coordinates))
+    moved = field.spaces.space.rotated(own.rotation[None], coordinates[:, None])[0, :, 0]
+    found = _home(field, own.kept, moved, "turned freely", _FRAMES, _ANGLES)
+    return None if found is None else replace(found, own=own)
+
+
 def _in_axes(field: Field, coordinates: FloatArray, axes: str, choices: int) -> OtherCrystal | None:
     """The group kept by coordinates in some axes."""
+    kept = kept_operations(field.spaces.space.kind, coordinates, _tolerance(field, coordinates))
+    return _home(field, kept, coordinates, axes, choices)
+
+
+def _tolerance(field: Field, coordinates: FloatArray) -> float:
+    if field.spaces.independent:
+        return float(field.tolerances[0])
+    return field.noise * float(np.linalg.norm(coordinates))
+
+
+def _home(
+    field: Field, kept: Kept, coordinates: FloatArray, axes: str, choices: int, fitted: int = 0
+) -> OtherCrystal | None:
+    """The group of the operations kept, scored; None where it says nothing."""
     kind = field.spaces.space.kind
     length = float(np.linalg.norm(coordinates))
-    tolerance = float(field.tolerances[0]) if field.spaces.independent else field.noise * length
-    spaces = _subspaces_of(kind, kept_operations(kind, coordinates, tolerance))
+    spaces = _subspaces_of(kind, kept)
     left = float(np.linalg.norm(spaces.forbidden_part(coordinates)))
     group = spaces.group
     # The same class in other axes is a matter of axes, not of another crystal.
     same_class = group.symbol == expected_symbol(kind, field.spaces.group)
-    if spaces.constraints == 0 or left > tolerance or same_class:
+    if spaces.constraints == 0 or left > _tolerance(field, coordinates) or same_class:
         return None
-    likelihood = chance(np.array(left / length), field.typical, field.floor(0), spaces.constraints)
+    telling = max(spaces.constraints - fitted, 0)
+    likelihood = chance(np.array(left / length), field.typical, field.floor(0), telling)
     score = float(np.log(_CLASSES_TRIED * choices) + likelihood)
     lower = group.order < expected_order(kind, field.spaces.group)
-    return OtherCrystal(group.symbol, group.system, axes, score, lower)
+    return OtherCrystal(group.symbol, group.system, axes, score, group.order, lower)
 
 
 def _subspaces_of(kind: TensorKind, kept: Kept) -> Subspaces:
-    return _cached(kind, kept.holohedry, tuple(sorted(kept.elements)))
-
-
-@lru_cache(maxsize=1024)
-def _cached(kind: TensorKind, holohedry: str, elements: tuple[int, ...]) -> Subspaces:
-    return subspaces(kind, standard_groups()[holohedry].subgroup(list(elements)))
+    return subspaces(kind, group_of(kept))

@@ -174,13 +174,15 @@ class Ambiguity:
     entries: tuple[str, ...] = ()
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class TensorSymmetry:
-    """The largest point group that leaves the tensor unchanged within noise, in the axes of the crystal.
+    """The largest point group that leaves the tensor unchanged within noise, as far as it was searched.
 
     ``symbol``, ``system``, ``elements`` (names): of that group. ``crystal_symbol``: the group that a tensor
     of this kind shows in this crystal. ``relation``: of the first to the second: same, higher (more than the
-    crystal asks for), lower (a subgroup), other.
+    crystal asks for), lower (a subgroup), other. ``axes``: in which the operations were sought: ``ieee`` axes
+    of the crystal, or ``own`` ones of the tensor, wherever they lie; there groups are compared whatever their
+    orientation. ``rotation`` (3, 3): these axes as rows in the file's axes.
     """
 
     symbol: str
@@ -188,6 +190,8 @@ class TensorSymmetry:
     elements: tuple[str, ...]
     crystal_symbol: str
     relation: Literal["same", "higher", "lower", "other"]
+    axes: Literal["ieee", "own"]
+    rotation: FloatArray
 
 
 @dataclass(frozen=True, eq=False)

@@ -46,12 +46,16 @@ def best_rotation(spaces: Subspaces, coordinates: FloatArray) -> FoundRotation:
     residuals = np.linalg.norm(_forbidden(spaces, grid, coordinates), axis=1)
     order = np.argsort(residuals, kind="stable")[:_STARTS]
     length = float(np.linalg.norm(coordinates))
-    refined = [_refined(spaces, coordinates, grid[k], length) for k in order]
+    refined = [refined_rotation(spaces, coordinates, grid[k], length) for k in order]
     return min(refined, key=lambda found: found.residual)
 
 
-def _refined(spaces: Subspaces, coordinates: FloatArray, start: FloatArray, length: float) -> FoundRotation:
-    """Levenberg-Marquardt from one start; every step that is taken makes the residual smaller."""
+def refined_rotation(
+    spaces: Subspaces, coordinates: FloatArray, start: FloatArray, length: float
+) -> FoundRotation:
+    """Levenberg-Marquardt from one start (3, 3), for a tensor with coordinates (n,) of a length; every step
+    that is taken makes the residual smaller.
+    """
     rotation, damping = start, 1e-3
     vector, slope = _with_slope(spaces, rotation, coordinates)
     for _ in range(_STEPS):

@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from sitesym.audit.measurement import Measurement
-from sitesym.audit.other_crystal import OtherCrystal, other_crystal
+from sitesym.audit.other_crystal import OtherCrystal, other_crystal, other_crystal_in_own_axes
 from sitesym.audit.result import Ambiguity, Cause, Reading, Verdict
 from sitesym.audit.rotation_search import best_rotation
 from sitesym.audit.search import (
@@ -123,6 +123,7 @@ def _explained(field: Field, fits: list[Candidate]) -> Finding:
     if turned is not None and turned.score <= min(EARNED, crystal_score + RIVAL):
         return Finding("consistent-otherwise", "reading", None, turned, tuple(readings[:1]))
     rivals = (*readings[:1], *([turned] if turned is not None else []), *slips[:1])
+    crystal = _wider(field, crystal)
     return Finding("violates", "unexplained" if crystal is None else "crystal", None, None, rivals, crystal)
 
 
@@ -135,6 +136,14 @@ def _is_beyond_doubt(reading: Reading) -> bool:
 def _earned_crystal(field: Field) -> OtherCrystal | None:
     found = other_crystal(field)
     return found if found is not None and found.score <= EARNED else None
+
+
+def _wider(field: Field, crystal: OtherCrystal | None) -> OtherCrystal | None:
+    """The class the tensor shows in axes of its own, where that is a larger group than in the crystal's."""
+    own = other_crystal_in_own_axes(field)
+    if own is None or own.score > EARNED or (crystal is not None and own.order <= crystal.order):
+        return crystal
+    return own
 
 
 def _slips(field: Field) -> list[Reading]:

@@ -162,6 +162,8 @@ def _symmetry_entry(symmetry: TensorSymmetry) -> dict[str, Any]:
         "elements": list(symmetry.elements),
         "crystal_symbol": symmetry.crystal_symbol,
         "relation": symmetry.relation,
+        "axes": symmetry.axes,
+        "rotation": symmetry.rotation.tolist(),
     }
 
 

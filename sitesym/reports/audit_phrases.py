@@ -81,16 +81,21 @@ def turn_text(turn: Entry) -> str:
 
 
 def symmetry_text(symmetry: Entry) -> str:
-    """The tensor's own symmetry beside that of the crystal."""
+    """The tensor's own symmetry beside that of the crystal, and where it was sought."""
     asked = f"the {symmetry['crystal_symbol']} that such a tensor shows in this crystal"
     words = {
         "same": f"the same as {asked}",
         "higher": f"more than {asked}",
-        "lower": f"less than {asked}: another phase, poling, strain or noise",
-        "other": f"not comparable with {asked}",
+        "lower": f"less than {asked}: another phase, poling, strain, noise or other axes",
+        "other": f"neither part of {asked} nor more",
     }
     own = f"symmetry {symmetry['symbol']} ({symmetry['system']}) within the noise"
-    return f"{own}, {words[symmetry['relation']]}"
+    related = words[symmetry["relation"]]
+    if symmetry["axes"] == "ieee":
+        return f"{own}, sought in the ieee axes of the crystal; {related}"
+    named = zip("xyz", symmetry["rotation"], strict=True)
+    rows = ", ".join(f"{name} = {vector_text(row, 4)}" for name, row in named)
+    return f"{own}, in axes of its own; {related}\n{rows} in the file's Cartesian axes"
 
 
 def ambiguity_lines(ambiguities: Sequence[Entry]) -> Iterator[str]:

@@ -94,6 +94,8 @@ def violating() -> dict[str, Any]:
             "elements": ["1"],
             "crystal_symbol": "32",
             "relation": "lower",
+            "axes": "ieee",
+            "rotation": IDENTITY,
         },
         "stability": None,
         "cause": "slip",
@@ -284,8 +286,14 @@ def test_a_free_rotation_gives_angle_axis_and_the_nearest_directions() -> None:
 @pytest.mark.parametrize("relation", ["same", "higher", "lower", "other"])
 def test_every_relation_of_symmetries_has_its_words(relation: str) -> None:
     entry = {"symbol": "4mm", "system": "tetragonal", "crystal_symbol": "32", "relation": relation}
-    assert symmetry_text(entry).startswith("symmetry 4mm (tetragonal) within the noise, ")
-    assert "the 32 that such a tensor shows" in symmetry_text(entry)
+    text = symmetry_text(entry | {"axes": "ieee", "rotation": IDENTITY})
+    assert text.startswith("symmetry 4mm (tetragonal) within the noise, ")
+    assert "the 32 that such a tensor shows" in text
+    assert "sought in the ieee axes of the crystal" in text
+    own = symmetry_text(entry | {"axes": "own", "rotation": IDENTITY})
+    assert "within the noise, in axes of its own" in own
+    assert "x = ( 1.0000  0.0000  0.0000)" in own
+    assert "ieee" not in own
 
 
 def test_a_residual_without_deviations_has_no_chi_squared(violating: dict[str, Any]) -> None:
