@@ -20,25 +20,37 @@ from sitesym.reports.expressions import (
     latex_namer,
     text_namer,
 )
-from sitesym.reports.headings import latex_footer, latex_header, markdown_footer, markdown_header
+from sitesym.reports.headings import (
+    latex_footer,
+    latex_header,
+    markdown_footer,
+    markdown_header,
+    matrix_text,
+)
 from sitesym.reports.markup import Document, csv_text, latex_escape, markdown_escape, markdown_table
 
 CSV_COLUMNS = (
     "group", "axes", "property", "component", "name", "status", "expression", "exact", "unit",
-    "index_symmetry",
+    "index_symmetry", "order", "factors", "site", "rotation_from_file",
 )  # fmt: skip
 
 
 def allowed_csv(document: Document) -> str:
-    """One row a component, zero ones included; ``status`` is independent, dependent or zero."""
+    """One row a component, zero ones included; ``status`` is independent, dependent or zero.
+
+    The rotation has its rows, the new axes, separated by semicolons.
+    """
     return csv_text(CSV_COLUMNS, _csv_rows(document))
 
 
 def _csv_rows(document: Document) -> Iterator[tuple[object, ...]]:
     group, axes = document["group"]["oriented"], document["axes"]["name"]
+    site = document["site"]["label"] if document.get("site") else None
+    rotation = matrix_text(document["axes"]["rotation_from_file"] or ())
     for entry in document["properties"]:
         name = text_namer(entry["symbol"])
-        conventions = (entry["exact"], entry["unit"], entry["index_symmetry"])
+        facts = (entry[field] for field in ("exact", "unit", "index_symmetry", "order", "factor_rule"))
+        conventions = (*facts, site, rotation)
         for key in entry["keys"]:
             terms = entry["components"].get(key, {})
             expression = combination(terms, name)

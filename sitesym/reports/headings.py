@@ -82,9 +82,16 @@ def group_text(group: Mapping[str, Any]) -> str:
 
 
 def site_text(site: Mapping[str, Any]) -> str:
-    """One site in a line."""
+    """One site, and for which of its atoms the tensors stand: in the others they are turned."""
     letter = f"{site['multiplicity']}{site['wyckoff']}"
-    return f"{site['label']} ({site['species']}), Wyckoff {letter}, site symmetry {site['site_symmetry']}"
+    named = f"{site['label']} ({site['species']}), Wyckoff {letter}, site symmetry {site['site_symmetry']}"
+    first, *others = site["atoms"]
+    atom = f"the tensors are those of atom {first} (numbered from 0 in the file)"
+    if not others:
+        return f"{named}; {atom}"
+    return (
+        f"{named}; {atom}; at the other atoms of the orbit they are turned by the operation that leads there"
+    )
 
 
 def crystal_lines(crystal: Mapping[str, Any]) -> Iterator[tuple[str, str]]:
@@ -119,11 +126,17 @@ def _idealised_text(change: Mapping[str, Any]) -> str:
 def _setting_text(crystal: Mapping[str, Any]) -> str:
     """Hall number and symbol, and the way from the file's cell to the conventional one."""
     hall = f"Hall number {crystal['hall_number']} ({crystal['hall_symbol']})"
-    matrix = "; ".join(
-        " ".join(f"{round(value, 6) + 0.0:g}" for value in row) for row in crystal["transformation"]
-    )
-    shift = " ".join(f"{round(value, 6) + 0.0:g}" for value in crystal["origin_shift"])
+    matrix, shift = matrix_text(crystal["transformation"]), _numbers(crystal["origin_shift"])
     return f"{hall}; x_conventional = P x_file + p with P = ({matrix}), p = ({shift})"
+
+
+def matrix_text(rows: Sequence[Sequence[float]]) -> str:
+    """A matrix in one line, rows separated by semicolons.
+
+    >>> matrix_text([[1.0, -0.0], [0.5, 1 / 3]])
+    '1 0; 0.5 0.333333'
+    """
+    return "; ".join(map(_numbers, rows))
 
 
 def _numbers(row: Sequence[float]) -> str:

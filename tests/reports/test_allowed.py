@@ -168,6 +168,36 @@ def test_csv_has_one_row_a_component_and_keeps_zero_ones(allowed: Document) -> N
     assert by_name["d13"] == ("zero", "0")
 
 
+SITE = {
+    "label": "Si1",
+    "species": "Si",
+    "multiplicity": 3,
+    "wyckoff": "a",
+    "site_symmetry": "m",
+    "atoms": [4, 5, 6],
+}
+
+
+@pytest.mark.parametrize("format_name", ["text", "markdown", "latex"])
+@pytest.mark.parametrize(("atoms", "turned"), [([4, 5, 6], True), ([4], False)])
+def test_a_site_says_for_which_atom_its_tensors_stand(
+    allowed: Document, format_name: str, atoms: list[int], turned: bool
+) -> None:
+    allowed["site"] = SITE | {"atoms": atoms}
+    text = " ".join(render(allowed, format_name).split())
+    assert "those of atom 4" in text
+    assert ("at the other atoms of the orbit they are turned" in text) == turned
+
+
+def test_csv_says_of_every_row_what_its_number_stands_on(allowed: Document) -> None:
+    allowed["site"] = SITE
+    allowed["axes"]["rotation_from_file"] = [[0.0, 1.0, 0.0], [-1.0, -0.0, 0.0], [0.0, 0.0, 1.0]]
+    for row in csv.DictReader(io.StringIO(render(allowed, "csv"))):
+        assert (row["site"], row["rotation_from_file"]) == ("Si1", "0 1 0; -1 0 0; 0 0 1")
+        assert row["order"] == "11 22 33 23 13 12"
+        assert row["factors"].startswith("factor 2") == (row["property"] == "piezoelectric-strain")
+
+
 def test_latex_writes_a_matrix_of_names_with_indices(allowed: Document) -> None:
     text = render(allowed, "latex")
     assert r"d_{11} & -d_{11} & 0 & d_{14} & 0 & 0 \\" in text
