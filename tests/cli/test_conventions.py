@@ -6,8 +6,10 @@ import json
 
 from click.testing import CliRunner
 
+from sitesym.audit.result import VERDICTS
 from sitesym.cli.main import main
-from sitesym.tensors import all_kinds
+from sitesym.groups import PointGroup
+from sitesym.tensors import all_kinds, allowed_form, kind
 
 
 def test_every_kind_of_tensor_is_listed_with_its_factors() -> None:
@@ -26,3 +28,17 @@ def test_the_page_names_axes_edition_order_and_labels() -> None:
         "-4+ is S4",
     )
     assert all(statement in text for statement in statements)
+
+
+def test_the_page_holds_what_the_help_promises() -> None:
+    text = " ".join(CliRunner().invoke(main, ["conventions"]).output.split())
+    words = ("forbidden", "independent", *VERDICTS, "robust", "fragile")
+    assert all(word in text for word in words)
+
+
+def test_the_relations_named_on_the_page_are_those_of_the_forms() -> None:
+    group = PointGroup.from_symbol("32")
+    for name, coefficient in (
+        ("piezoelectric-strain", "-2"), ("piezoelectric-stress", "-1"), ("second-harmonic", "-1"),
+    ):  # fmt: skip
+        assert str(allowed_form(kind(name), group).components["26"]["11"]) == coefficient
