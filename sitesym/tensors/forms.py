@@ -18,7 +18,7 @@ from typing import TypeAlias
 import numpy as np
 
 from sitesym.arrays import FloatArray, frozen
-from sitesym.errors import SymmetryError
+from sitesym.errors import SymmetryError, TensorInputError
 from sitesym.groups import PointGroup
 from sitesym.tensors.action import Action
 from sitesym.tensors.contraction import contraction, to_matrix
@@ -62,16 +62,32 @@ class AllowedForm:
         return len(self.independent)
 
     def matrix(self, values: Mapping[str, float]) -> FloatArray:
-        """Contracted array with the given independent values, shape ``contraction(kind).shape``."""
+        """Contracted array with the given values, shape ``contraction(kind).shape``. Raises as `full` does."""
         return to_matrix(self.kind, self.full(values))
 
     def full(self, values: Mapping[str, float]) -> FloatArray:
-        """Full tensor with the given independent values, shape (3,)*rank."""
+        """Full tensor with the given independent values, shape (3,)*rank.
+
+        Raises TensorInputError unless there is one value for each independent component and no other.
+        """
+        self._require_values(values)
         notation = contraction(self.kind)
         given = np.array([values[name] for name in self.independent], dtype=np.float64)
         written: FloatArray = self.coefficients @ given / notation.factors
         component, sign = self.kind.written.full_indices
         return (written[component] * sign).reshape((3,) * self.kind.rank)
+
+    def _require_values(self, values: Mapping[str, float]) -> None:
+        missing = [name for name in self.independent if name not in values]
+        others = [name for name in values if name not in self.independent]
+        if missing or others:
+            parts = (("missing", missing), ("not independent", others))
+            raise TensorInputError(
+                f"these are not the values of the independent components of {self.kind.name}",
+                value="; ".join(f"{word}: {', '.join(names)}" for word, names in parts if names),
+                rule=f"one value for each of {', '.join(self.independent) or 'no component'}",
+                next_step="give the independent values; the form adds the others",
+            )
 
 
 def allowed_form(kind: TensorKind, group: PointGroup) -> AllowedForm:

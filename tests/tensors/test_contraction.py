@@ -69,6 +69,22 @@ def test_matrix_elements_carry_the_factor_of_their_kind(
     assert to_matrix(tensor_kind, full)[tuple(i - 1 for i in element)] == factor * value
 
 
+@pytest.mark.parametrize(
+    ("values", "words"),
+    [
+        ({"11": 2.3}, "missing: 14"),
+        ({"11": 2.3, "14": 0.7, "12": -2.3}, "not independent: 12"),
+        ({"d11": 2.3, "d14": 0.7}, "missing: 11, 14; not independent: d11, d14"),
+    ],
+)
+def test_a_form_takes_its_independent_values_and_no_others(values: dict[str, float], words: str) -> None:
+    form = allowed_form(kind("piezoelectric-strain"), PointGroup.from_symbol("32"))
+    for fill in (form.matrix, form.full):
+        with pytest.raises(TensorInputError) as caught:
+            fill(values)
+        assert caught.value.value == words
+
+
 @pytest.mark.parametrize("symbol", PIEZOELECTRIC)
 def test_strains_and_stresses_give_d_equal_e_s_in_tensors_and_in_matrices(symbol: str) -> None:
     # d_ijk = e_ilm s_lmjk and d_iJ = e_iK s_KJ: true only if all three kinds carry the right factors
