@@ -62,7 +62,7 @@ class AllowedForm:
         return len(self.independent)
 
     def matrix(self, values: Mapping[str, float]) -> FloatArray:
-        """Contracted array with the given values, shape ``contraction(kind).shape``. Raises as `full` does."""
+        """Contracted array of the given values, shape ``contraction(kind).shape``. Raises as `full` does."""
         return to_matrix(self.kind, self.full(values))
 
     def full(self, values: Mapping[str, float]) -> FloatArray:
