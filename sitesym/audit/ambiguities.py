@@ -64,7 +64,7 @@ def ambiguities(field: Field, reading: Reading) -> tuple[Ambiguity, ...]:
     """
     keys = [(v.order, v.layout, v.factor) for v in field.variants]
     number = keys.index((reading.order, reading.layout, reading.factor))
-    base = _Base(field, reading.rotation, field.variants[number], float(field.tolerances[number]))
+    base = _Base(field, reading.rotation, field.variants[number], field.noise_left(number))
     return (*_variants(base), *_axes(base), *_entries(base))
 
 

@@ -12,6 +12,7 @@ from sitesym.audit.components import deviations
 from sitesym.audit.equivalents import equivalent_axes
 from sitesym.audit.frames import Frames, Subject, frames_of
 from sitesym.audit.indexcheck import check_index_symmetry
+from sitesym.audit.kept_groups import symmetry_tolerance
 from sitesym.audit.measurement import Measurement
 from sitesym.audit.messages import message
 from sitesym.audit.neumann import Subspaces, subspaces
@@ -134,7 +135,8 @@ def _symmetry(field: Field, finding: Finding, rotation: FloatArray, number: int)
         return tensor_symmetry_in_own_axes(kind, field.spaces.group, own.kept, axes)
     moved = field.moved(rotation, field.variants[number])
     ieee = field.frames.standard_from_file
-    return tensor_symmetry(field.spaces, moved, float(field.tolerances[number]), ieee)
+    tolerance = symmetry_tolerance(field, number, ieee @ rotation.T)
+    return tensor_symmetry(field.spaces, moved, tolerance, ieee)
 
 
 def _components(field: Field, finding: Finding) -> tuple[tuple[Deviation, ...], tuple[Deviation, ...]]:

@@ -84,7 +84,24 @@ def _otherwise(finding: Finding, index: IndexFinding, missing: str) -> tuple[str
     turn = ""
     if reading.turn is not None:
         turn = f" (turned by {reading.turn.angle_degrees:.2f} degrees)"
-    return first, f"check the axes, order and factors at the source; state those found{turn}{others}"
+    changed = _changed(finding, reading, missing)
+    return first, f"check the {changed} at the source; state what was found{turn}{others}"
+
+
+def _changed(finding: Finding, reading: Reading, missing: str) -> str:
+    """What the reading takes to be other than stated, or was not stated at all."""
+    if finding.stated is None:
+        sorts = missing.split(" and ") + (["factors"] if reading.factor else [])
+    else:
+        told = finding.stated
+        departs = {
+            "axes": reading.axes != told.axes,
+            "order": reading.order != told.order,
+            "layout": reading.layout != told.layout,
+            "factors": reading.factor != told.factor,
+        }
+        sorts = [sort for sort, is_other in departs.items() if is_other]
+    return " and ".join(filter(None, (", ".join(sorts[:-1]), sorts[-1])))
 
 
 def _violates(finding: Finding, index: IndexFinding, missing: str) -> tuple[str, str]:

@@ -7,11 +7,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from sitesym.arrays import FloatArray
-from sitesym.audit.neumann import Subspaces, subspaces
+from sitesym.audit.kept_groups import agrees, symmetry_tolerance, tolerances_to_try
+from sitesym.audit.neumann import subspaces
 from sitesym.audit.own_axes import OwnAxes, symmetry_in_own_axes
 from sitesym.audit.own_symmetry import Kept, expected_order, expected_symbol, group_of, kept_operations
 from sitesym.audit.search import Field, chance
-from sitesym.tensors import TensorKind
 
 #: Subgroups of the two holohedries, 98 of m-3m and 54 of 6/mmm: naming one of them is a choice among so many.
 _CLASSES_TRIED = 152
@@ -41,12 +41,16 @@ def other_crystal(field: Field) -> OtherCrystal | None:
 
     In a crystal whose class forbids the whole tensor any other class is a better home.
     """
-    variant = field.variants[0]
     plain = [orientation for orientation in field.orientations if orientation.is_plain]
     found = [
-        _in_axes(field, variant.coordinates, "as stated", 1),
+        _in_axes(field, np.eye(3), "as stated", 1),
         *(
-            _in_axes(field, field.moved(o.rotation, variant), f"{o.words} (standard orientation)", o.choices)
+            _in_axes(
+                field,
+                field.frames.standard_from_file @ o.rotation.T,
+                f"{o.words} (standard orientation)",
+                o.choices,
+            )
             for o in plain
         ),
     ]
@@ -55,44 +59,49 @@ def other_crystal(field: Field) -> OtherCrystal | None:
 
 def other_crystal_in_own_axes(field: Field) -> OtherCrystal | None:
     """The same in axes of the tensor's own, wherever they lie."""
+    kind, coordinates = field.spaces.space.kind, field.variants[0].coordinates
+    for tolerance in tolerances_to_try(field, 0):
+        own = symmetry_in_own_axes(kind, coordinates, tolerance)
+        if agrees(field, 0, own.kept, own.rotation):
+            found = _home(field, own.kept, own.rotation, tolerance, "turned freely", _FRAMES, _ANGLES)
+            return None if found is None else replace(found, own=own)
+    return None
+
+
+def _in_axes(field: Field, to_axes: FloatArray, axes: str, choices: int) -> OtherCrystal | None:
+    """The group kept in axes that ``to_axes`` (3, 3) leads to from those of the tensor."""
+    tolerance = symmetry_tolerance(field, 0, to_axes)
+    kept = kept_operations(field.spaces.space.kind, _moved(field, to_axes), tolerance)
+    return _home(field, kept, to_axes, tolerance, axes, choices)
+
+
+def _moved(field: Field, to_axes: FloatArray) -> FloatArray:
     coordinates = field.variants[0].coordinates
-    own = symmetry_in_own_axes(field.spaces.space.kind, coordinates, _tolerance(field, coordinates))
-    moved = field.spaces.space.rotated(own.rotation[None], coordinates[:, None])[0, :, 0]
-    found = _home(field, own.kept, moved, "turned freely", _FRAMES, _ANGLES)
-    return None if found is None else replace(found, own=own)
-
-
-def _in_axes(field: Field, coordinates: FloatArray, axes: str, choices: int) -> OtherCrystal | None:
-    """The group kept by coordinates in some axes."""
-    kept = kept_operations(field.spaces.space.kind, coordinates, _tolerance(field, coordinates))
-    return _home(field, kept, coordinates, axes, choices)
-
-
-def _tolerance(field: Field, coordinates: FloatArray) -> float:
-    if field.spaces.independent:
-        return float(field.tolerances[0])
-    return field.noise * float(np.linalg.norm(coordinates))
+    moved: FloatArray = field.spaces.space.rotated(to_axes[None], coordinates[:, None])[0, :, 0]
+    return moved
 
 
 def _home(
-    field: Field, kept: Kept, coordinates: FloatArray, axes: str, choices: int, fitted: int = 0
+    field: Field,
+    kept: Kept,
+    to_axes: FloatArray,
+    tolerance: float,
+    axes: str,
+    choices: int,
+    fitted: int = 0,
 ) -> OtherCrystal | None:
     """The group of the operations kept, scored; None where it says nothing."""
-    kind = field.spaces.space.kind
-    length = float(np.linalg.norm(coordinates))
-    spaces = _subspaces_of(kind, kept)
-    left = float(np.linalg.norm(spaces.forbidden_part(coordinates)))
-    group = spaces.group
+    kind, moved = field.spaces.space.kind, _moved(field, to_axes)
+    length = float(np.linalg.norm(moved))
+    group = group_of(kept)
+    spaces = subspaces(kind, group)
+    left = float(np.linalg.norm(spaces.forbidden_part(moved)))
     # The same class in other axes is a matter of axes, not of another crystal.
     same_class = group.symbol == expected_symbol(kind, field.spaces.group)
-    if spaces.constraints == 0 or left > _tolerance(field, coordinates) or same_class:
+    if spaces.constraints == 0 or left > tolerance or same_class:
         return None
     telling = max(spaces.constraints - fitted, 0)
     likelihood = chance(np.array(left / length), field.typical, field.floor(0), telling)
     score = float(np.log(_CLASSES_TRIED * choices) + likelihood)
     lower = group.order < expected_order(kind, field.spaces.group)
     return OtherCrystal(group.symbol, group.system, axes, score, group.order, lower)
-
-
-def _subspaces_of(kind: TensorKind, kept: Kept) -> Subspaces:
-    return subspaces(kind, group_of(kept))

@@ -183,6 +183,12 @@ class Field:
         length = float(np.linalg.norm(self.variants[variant].coordinates))
         return _FLOOR * float(self.tolerances[variant]) / length
 
+    def noise_left(self, variant: int) -> float:
+        """Residual that noise is expected to leave at most, in the unit of the tensor, read as a variant."""
+        read = self.variants[variant]
+        noise = noise_of(self.measurement, read.layout, read.order, read.divisors, self.noise)
+        return noise.spread_tolerance(self.spaces, float(np.linalg.norm(read.coordinates)))
+
     def candidate(self, orientation: int, variant: int) -> Candidate:
         """The reading at a place of the field."""
         return Candidate(

@@ -65,6 +65,18 @@ class Noise:
             square += largest_by_chance(spaces.constraints) * (self.relative * length) ** 2 * share
         return float(np.sqrt(square))
 
+    def spread_tolerance(self, spaces: Subspaces, length: float) -> float:
+        """The same with stated uncertainties spread evenly over the components: no bound, but what to expect.
+
+        `tolerance` has to hold however they are spread, and is no measure of what an operation may change.
+        """
+        if self.sigma is None:
+            return self.tolerance(spaces, length)
+        variance = float(((spaces.space.weights * self.sigma) ** 2).sum())
+        share = 1.0 / max(spaces.constraints + spaces.independent, 1)
+        even = Noise(0.0, None, self.step).tolerance(spaces, length)
+        return float(np.sqrt(even**2 + largest_by_chance(spaces.constraints) * variance * share))
+
     def drowns(self, spaces: Subspaces, coordinates: FloatArray) -> bool:
         """Whether the whole tensor could be noise.
 

@@ -18,6 +18,7 @@ from sitesym.audit.search import (
     accepted,
     candidates,
     chance,
+    index_finding,
     judged_reading,
     residual_of,
     stated_orientation,
@@ -187,7 +188,7 @@ def _turned(field: Field) -> Reading | None:
     """The reading in axes turned by a free rotation, where it brings the tensor within tolerance."""
     variant = field.variants[0]
     found = best_rotation(field.spaces, variant.coordinates)
-    if found.residual > field.tolerances[0]:
+    if found.residual > field.tolerances[0] or not index_finding(field, variant).holds:
         return None
     base = field.orientations[0].rotation
     rotation = smallest_turn(found.rotation.T @ field.frames.standard_from_file, base, field.frames)

@@ -14,13 +14,15 @@ Entry = Mapping[str, Any]
 #: Longest lists in a text; JSON has all of them.
 MOST_ITEMS = 12
 _FEW = 2
+#: Verdicts about which nothing is to be done.
+SETTLED = ("consistent", "no-constraint")
 _ROUNDING = 1e-12
 
 
 def index_text(index: Entry) -> str:
     """Whether entries that index symmetry makes equal are so."""
     if not index["applies"]:
-        return "this layout leaves no pair of entries to compare"
+        return "every component is written once: no pair of entries to compare"
     if index["holds"]:
         return f"index symmetry holds: the largest difference of two entries is {short(index['largest'])}"
     pairs = []
@@ -33,8 +35,9 @@ def index_text(index: Entry) -> str:
 def stated_text(stated: Entry) -> str:
     """The residual in the axes and order as stated."""
     judged = "within" if stated["within"] else "beyond"
+    absolute = stated["absolute_residual"] if (stated["relative_residual"] or 0.0) > _ROUNDING else 0.0
     text = (
-        f"axes {stated['axes']}, order {stated['order']}: residual {short(stated['absolute_residual'])} "
+        f"axes {stated['axes']}, order {stated['order']}: residual {short(absolute)} "
         f"({percent(stated['relative_residual'])}), {judged} the tolerance {short(stated['tolerance'])}"
     )
     if stated["chi2"] is None:
@@ -53,7 +56,7 @@ def reading_text(reading: Entry) -> str:
     parts.append(turn_text(reading["turn"]) if reading["turn"] else "")
     parts.append(f"residual {percent(reading['relative_residual'])}")
     if reading["equal_to"]:
-        parts.append(f"the same tensor up to equivalent axes as {cut(reading['equal_to'], _FEW)}")
+        parts.append(f"up to equivalent axes the same as {cut(reading['equal_to'], _FEW)}")
     return "; ".join(filter(None, parts))
 
 
@@ -72,7 +75,7 @@ def slip_text(slip: Entry) -> str:
 def turn_text(turn: Entry) -> str:
     """A free rotation: angle, axis, and the crystal directions next to the tensor's axes."""
     nearest = ", ".join(
-        f"{axis} {one['degrees']:.2g} degrees from {one['direction']}"
+        f"{axis} {round(one['degrees'], 2):g} degrees from {one['direction']}"
         for axis, one in zip("xyz", turn["nearest"], strict=False)
     )
     axis = vector_text(turn["axis"], 4)
@@ -80,17 +83,19 @@ def turn_text(turn: Entry) -> str:
     return f"{words} ({nearest})" if nearest else words
 
 
-def symmetry_text(symmetry: Entry) -> str:
-    """The tensor's own symmetry beside that of the crystal, and where it was sought."""
+def symmetry_text(symmetry: Entry, vanishes: bool = False) -> str:
+    """The tensor's own symmetry beside that of the crystal, and where it was sought; ``vanishes``: whether
+    the crystal forbids such a tensor altogether.
+    """
     asked = f"the {symmetry['crystal_symbol']} that such a tensor shows in this crystal"
     words = {
         "same": f"the same as {asked}",
         "higher": f"more than {asked}",
         "lower": f"less than {asked}: another phase, poling, strain, noise or other axes",
-        "other": f"neither part of {asked} nor more",
+        "other": f"neither a subgroup nor a supergroup of {asked}",
     }
     own = f"symmetry {symmetry['symbol']} ({symmetry['system']}) within the noise"
-    related = words[symmetry["relation"]]
+    related = "in this crystal such a tensor must vanish" if vanishes else words[symmetry["relation"]]
     if symmetry["axes"] == "ieee":
         return f"{own}, sought in the ieee axes of the crystal; {related}"
     named = zip("xyz", symmetry["rotation"], strict=True)
@@ -111,6 +116,22 @@ def _ambiguity_text(one: Entry) -> str:
         return f"{', '.join(one['entries'])}, in no relation to other entries: any size and sign"
     said: str = one["reading"].removeprefix(f"{one['sort']} ")
     return f"{said} reverses {', '.join(one['flips'])}" if one.get("flips") else said
+
+
+def action_text(one: Entry) -> str:
+    """What to do about the symmetry, and about the stability where that speaks up."""
+    _, *told = one["message"]
+    answer = stability_answer(one)
+    if not answer:
+        return " ".join(told)
+    unstable = f"elastically {answer}: see the conditions before using it"
+    return f"{unstable}; symmetry asks for nothing" if one["verdict"] in SETTLED else f"{told[0]}; {unstable}"
+
+
+def stability_answer(one: Entry) -> str:
+    """'unstable' or 'unreliable'; empty where nothing speaks against stability."""
+    answer = "" if one["stability"] is None else str(one["stability"]["answer"])
+    return "" if answer == "stable" else answer
 
 
 def cut(items: Sequence[str], most: int = MOST_ITEMS) -> str:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import Any
 
-from sitesym.reports.audit_phrases import Entry, percent
+from sitesym.reports.audit_phrases import Entry, action_text, percent, slip_text
 from sitesym.reports.audit_text import summary_text
 from sitesym.reports.headings import latex_footer, markdown_footer
 from sitesym.reports.markup import (
@@ -20,10 +20,13 @@ from sitesym.reports.markup import (
 CSV_COLUMNS = (
     "id", "verdict", "cause", "quantity", "group", "stated_axes", "stated_relative_residual", "stated_chi2",
     "stated_dof", "stated_p_value", "best_axes", "best_order", "best_layout", "best_factor", "best_slip",
-    "best_relative_residual", "rivals", "forbidden", "relations", "index_symmetry_holds", "tensor_symmetry",
-    "stability", "finding", "action", "warnings", "place", "error_code", "error_message",
+    "best_relative_residual", "rivals", "cannot_tell", "forbidden", "relations", "index_symmetry_holds",
+    "tensor_symmetry", "stability", "finding", "action", "warnings", "place", "error_code", "error_message",
 )  # fmt: skip
-_SHOWN = ("id", "quantity", "group", "verdict", "stated", "best axes", "best", "action")
+_SHOWN = (
+    "id", "quantity", "group", "verdict", "residual as stated", "best reading", "its residual", "cannot tell",
+    "what to do",
+)  # fmt: skip
 
 
 def audit_csv(document: Document) -> str:
@@ -64,6 +67,7 @@ def _csv_row(one: Entry) -> list[object]:
         f"{slip['sort']} {' '.join(slip['entries'])}" if slip else None,
         best.get("relative_residual"),
         len(one["rivals"]),
+        "; ".join(ambiguity["reading"] for ambiguity in one["cannot_tell"]) or None,
         len(one["forbidden"]),
         len(one["relations"]),
         index.get("holds"),
@@ -85,18 +89,38 @@ def _error_text(error: dict[str, Any]) -> str:
 
 def _shown(document: Document) -> Iterator[list[object]]:
     for one in document["records"]:
-        stated, best = one["stated"] or {}, one["best"] or {}
-        action = one["message"][-1] if one["message"] else _error_text(one["error"])
+        stated, best = one["stated"] or {}, one["best"]
         yield [
             one["id"],
             one["quantity"],
             one["group"],
             one["verdict"] or "error",
             percent(stated.get("relative_residual")),
-            best.get("axes"),
-            percent(best.get("relative_residual")),
-            action,
+            _best_text(one),
+            percent(best["relative_residual"]) if best else None,
+            _cannot_tell(one),
+            "; ".join([action_text(one) if one["message"] else _error_text(one["error"]), *one["warnings"]]),
         ]
+
+
+def _best_text(one: Entry) -> str | None:
+    """The best reading in words, the order where it is another than stated."""
+    best, stated = one["best"], one["stated"]
+    if best is None or (one["verdict"] == "consistent" and stated is not None):
+        return None if best is None else "as stated"
+    parts = [f"axes {best['axes']}"]
+    if stated is None or best["order"] != stated["order"]:
+        parts.append(f"order {best['order']}")
+    if stated is None or best["layout"] != stated["layout"]:
+        parts.append(f"layout {best['layout']}")
+    parts.extend([best["factor"] or "", slip_text(best["slip"]) if best["slip"] else ""])
+    return "; ".join(filter(None, parts))
+
+
+def _cannot_tell(one: Entry) -> str | None:
+    """The sorts of ambiguity, each with its first reading."""
+    first = {ambiguity["sort"]: ambiguity["reading"] for ambiguity in reversed(one["cannot_tell"])}
+    return "; ".join(reversed(first.values())) or None
 
 
 def _crossed(document: Document) -> tuple[tuple[str, ...], list[list[object]]]:

@@ -6,12 +6,15 @@ from collections.abc import Iterator, Sequence
 
 from sitesym.reports.audit_phrases import (
     MOST_ITEMS,
+    SETTLED,
     Entry,
+    action_text,
     ambiguity_lines,
     index_text,
     percent,
     reading_text,
     short,
+    stability_answer,
     stated_text,
     symmetry_text,
 )
@@ -21,8 +24,6 @@ from sitesym.reports.layout import TEXT_WIDTH, cell_text, labelled, paragraph, t
 from sitesym.reports.markup import Document
 
 _LABEL = 13
-#: Records whose evidence is left out where there are many: nothing is to be done about them.
-_SETTLED = ("consistent", "no-constraint")
 
 
 def audit_text(document: Document) -> str:
@@ -31,9 +32,10 @@ def audit_text(document: Document) -> str:
     blocks = [record_text(one, len(records) == 1 or _is_open(one)) for one in records]
     if document["cross_checks"]:
         blocks.append(cross_checks_text(document["cross_checks"]))
-    blocks.append(
-        "\n".join([_line("summary", summary_text(document)), _line("tolerances", _tolerances(document))])
-    )
+    closing = [_line("summary", summary_text(document)), _line("tolerances", _tolerances(document))]
+    chosen = [f"{name} {_shown(value)}" for name, value in document["reading"].items() if value]
+    closing.extend([_line("reading", "; ".join(chosen))] if chosen else [])
+    blocks.append("\n".join(closing))
     blocks.append(footer(document))
     return "\n\n".join(blocks) + "\n"
 
@@ -57,28 +59,13 @@ def headline(one: Entry) -> Iterator[str]:
         yield paragraph(f"{name}: error: {error['what']}{value} ({one['place']})")
         yield paragraph(f"do: {error['next_step'] or error['rule'] or 'see the message'}", indent=2)
         return
-    verdict, *action = one["message"]
-    yield paragraph(f"{name}: {verdict}")
-    yield paragraph(f"do: {_action(one, action)}", indent=2)
-
-
-def _action(one: Entry, action: Sequence[str]) -> str:
-    """What to do about the symmetry, and about the stability where that speaks up."""
-    told, answer = " ".join(action), _stability_answer(one)
-    if not answer:
-        return told
-    unstable = f"elastically {answer}: see the conditions below before using it"
-    return f"{unstable}; symmetry asks for nothing" if one["verdict"] in _SETTLED else f"{told}; {unstable}"
-
-
-def _stability_answer(one: Entry) -> str:
-    """'unstable' or 'unreliable'; empty where nothing speaks against stability."""
-    answer = "" if one["stability"] is None else str(one["stability"]["answer"])
-    return "" if answer == "stable" else answer
+    yield paragraph(f"{name}: {one['message'][0]}")
+    yield paragraph(f"do: {action_text(one)}", indent=2)
 
 
 def _is_open(one: Entry) -> bool:
-    return one["verdict"] not in _SETTLED or bool(_stability_answer(one))
+    """Whether something is to be done: of many records these come with their evidence."""
+    return one["verdict"] not in SETTLED or bool(stability_answer(one))
 
 
 def _evidence(one: Entry) -> Iterator[str]:
@@ -94,15 +81,27 @@ def _evidence(one: Entry) -> Iterator[str]:
         if not as_stated:
             yield _line("best reading", reading_text(one["best"]))
         yield _line("axes" if as_stated else "its axes", _rows(one["best"]["rotation"]))
-    for rival in one["rivals"][:MOST_ITEMS]:
+    for rival in _rivals(one):
         yield _line("rival", reading_text(rival))
     if one["cannot_tell"]:
         yield _line("cannot tell", "\n".join(ambiguity_lines(one["cannot_tell"])))
     if one["tensor_symmetry"] is not None:
-        yield _line("tensor has", symmetry_text(one["tensor_symmetry"]))
+        yield _line("tensor has", symmetry_text(one["tensor_symmetry"], vanishes=not one["independent"]))
     if one["stability"] is not None:
         is_compliance = one["quantity"] == "elastic-compliance"
         yield stability_text(one["stability"], one["measurement"]["unit"], is_compliance, 2 + _LABEL)
+
+
+def _rivals(one: Entry) -> Sequence[Entry]:
+    """Rivals worth a line; where nothing decides, those in the same axes stand under what it cannot tell."""
+    rivals: Sequence[Entry] = one["rivals"][:MOST_ITEMS]
+    if one["verdict"] != "cannot-tell":
+        return rivals
+    return [rival for rival in rivals if rival["axes"] != one["best"]["axes"]]
+
+
+def _shown(value: object) -> str:
+    return ", ".join(value) if isinstance(value, list) else str(value)
 
 
 def _line(label: str, text: str) -> str:
@@ -180,6 +179,6 @@ def summary_text(document: Document) -> str:
 
 def _tolerances(document: Document) -> str:
     return (
-        f"noise {percent(document['noise'])} of a tensor where no deviations are stated; "
+        f"noise {percent(document['noise'])} of a tensor where no uncertainty (sigma) is stated; "
         f"{document['tolerance_angstrom']:g} angstrom for the symmetry of crystals"
     )

@@ -216,6 +216,14 @@ def test_a_turn_that_changes_less_than_the_noise_is_not_listed() -> None:
     assert [one.sort for one in result.cannot_tell if one.sort in ("axes", "hand")] == ["hand"]
 
 
+def test_with_known_uncertainties_a_turn_is_listed_where_it_changes_more_than_these() -> None:
+    group = PointGroup.from_symbol("32")
+    for sigma, flips in ((0.01, ("11",)), (3.0, None)):
+        result = audited(D, QUARTZ_D, group, sigma=sigma)
+        turns = [one.flips for one in result.cannot_tell if one.sort == "axes"]
+        assert turns == ([flips] if flips else [])
+
+
 @pytest.mark.parametrize("symbol", ["312", "31m", "-4m2", "-62m", "2mm", "112"])
 def test_turns_and_components_are_named_in_the_axes_of_the_tensor(symbol: str) -> None:
     group, values = clean(E, symbol)

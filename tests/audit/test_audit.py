@@ -108,6 +108,17 @@ def test_broken_index_symmetry_is_found_even_where_the_class_forbids_nothing() -
     assert result.index_symmetry.largest == pytest.approx(1.0)
 
 
+def test_broken_index_symmetry_is_not_explained_by_other_axes() -> None:
+    values = np.diag([250.0, 200.0, 180.0, 60.0, 50.0, 40.0])
+    values[:3, :3] += [[0, 90, 80], [99, 0, 70], [80, 70, 0]]
+    measured = Measurement("c", STIFFNESS, values, axes="file", rounding=1.0)
+    result = audit(measured, PointGroup.from_symbol("mmm"))
+    assert (result.verdict, result.cause) == ("violates", "index-symmetry")
+    assert "12 and 21 differ" in result.message
+    assert result.stated is not None
+    assert result.stated.residual.within
+
+
 def test_a_field_index_written_last_is_recognised_by_index_symmetry() -> None:
     group = PointGroup.from_symbol("32")
     given = np.moveaxis(obeying(PIEZO, group), 0, 2)
@@ -197,6 +208,18 @@ def test_without_a_stated_order_a_telling_class_gives_the_order_and_another_cann
     unknown = audit(Measurement("c", STIFFNESS, mute, order=None, axes="lattice"), orthorhombic)
     assert unknown.verdict == "cannot-tell"
     assert unknown.rivals
+
+
+def test_with_known_uncertainties_the_class_of_the_data_agrees_with_them() -> None:
+    # Nearly hexagonal about x: by ten times the uncertainty, though within what the whole tensor leaves open.
+    values = np.diag([250.0, 200.0, 180.0, 60.0, 50.0, 40.0])
+    values[:3, :3] += [[0, 90, 80], [90, 0, 70], [80, 70, 0]]
+    measured = Measurement("c", STIFFNESS, values, axes="file", sigma=2.0)
+    result = audit(measured, PointGroup.from_symbol("4/mmm"))
+    assert (result.verdict, result.cause) == ("violates", "crystal")
+    assert result.tensor_symmetry is not None
+    assert (result.tensor_symmetry.symbol, result.tensor_symmetry.relation) == ("mmm", "lower")
+    assert "orthorhombic (mmm, axes as stated)" in result.message
 
 
 @pytest.mark.parametrize(

@@ -59,6 +59,7 @@ def violating() -> dict[str, Any]:
             "within": False,
             "axes": "ieee",
             "order": ORDER,
+            "layout": "matrix",
         },
         "best": reading(slip={"sort": "sign", "entries": ["12"], "expected": [-2.1], "exponent": 0}),
         "rivals": [reading(axes="file, turned by 30 degrees about [001]")],
@@ -172,6 +173,7 @@ def document(violating: dict[str, Any], unreadable: dict[str, Any]) -> dict[str,
         "unread_files": [{"file": "lost.yaml", "what": "the file cannot be read"}],
         "noise": 0.01,
         "tolerance_angstrom": 0.01,
+        "reading": {"frame": None, "block": "q", "symmetry_from": None, "distinguish": ["label", "moment"]},
         "versions": {"sitesym": "0.0.0", "ase": None},
         "caution": "measure",
     }
@@ -210,6 +212,7 @@ def test_text_gives_every_finding_and_says_what_it_leaves_out(document: dict[str
         "1 of 1 cross-checks fail",
         "1 file could not be read",
         "noise 1 % of a tensor",
+        "reading block q; distinguish label, moment",
     ):
         assert said in text
 
@@ -230,7 +233,7 @@ def test_an_unstable_crystal_is_shown_even_where_the_tensor_obeys(
     entry = stability_entry(elastic_stability(kind("elastic-stiffness"), stiffness, group))
     good = violating | {"verdict": "consistent", "stability": entry, "quantity": "elastic-stiffness"}
     text = " ".join(render(document | {"records": [good, good]}, "text").split())
-    assert "do: elastically unstable: see the conditions below before using it; symmetry asks" in text
+    assert "do: elastically unstable: see the conditions before using it; symmetry asks" in text
     assert "elastic unstable" in text
     assert "Eg (2x) -1 c11 - c12 > 0 -1 no" in text
 
@@ -239,6 +242,7 @@ def test_csv_survives_a_re_read(document: dict[str, Any]) -> None:
     first, second = csv.DictReader(io.StringIO(render(document, "csv")))
     assert (first["id"], first["forbidden"], first["relations"]) == ("a|b_1", "6", "13")
     assert first["stated_p_value"] == "1e-30"
+    assert first["cannot_tell"].startswith("order 11 22 33 12 23 13; columns 4-6 halved; ")
     assert (second["verdict"], second["error_code"]) == ("", "tensor-input")
     assert "line\nbreak" in second["error_message"]
 
@@ -250,7 +254,27 @@ def test_tables_escape_names_and_show_errors(document: dict[str, Any]) -> None:
     assert r"x\%" in latex
     assert "s = 1/c" in markdown
     rows = [line for line in markdown.splitlines() if line.startswith("| ")]
-    assert {line.count(" | ") for line in rows[:4]} == {7}
+    assert {line.count(" | ") for line in rows[:4]} == {8}
+
+
+def test_tables_say_what_the_best_reading_is_and_what_symmetry_cannot_tell(
+    document: dict[str, Any], violating: dict[str, Any]
+) -> None:
+    other = {"order": "11 22 33 12 23 13", "factor": "columns 4-6 doubled"}
+    records = [
+        violating,
+        violating | {"verdict": "consistent-otherwise", "best": reading(**other)},
+        violating | {"verdict": "consistent", "best": reading()},
+        violating | {"verdict": "cannot-tell", "best": reading(), "stated": None},
+    ]
+    text = render(document | {"records": records}, "markdown")
+    first, second, third, fourth = (line for line in text.splitlines() if line.startswith("| a"))
+    assert "axes ieee; slip: sign of 12 reversed, expected -2.1" in first
+    assert "axes ieee; order 11 22 33 12 23 13; columns 4-6 doubled |" in second
+    assert "| as stated |" in third
+    assert f"axes ieee; order {ORDER}; layout matrix |" in fourth
+    assert r"12 23 13; columns 4-6 halved; axes turned by 180 degrees about \[001\]; the other hand" in first
+    assert "look the entry up; the largest entry is large |" in first
 
 
 def test_index_symmetry_names_the_entries_that_differ() -> None:
