@@ -3,10 +3,40 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import ArrayLike
 
 from sitesym.arrays import BoolArray, FloatArray, IntArray
-from sitesym.errors import AxesError, SymmetryError
+from sitesym.errors import AxesError, SitesymError, SymmetryError
 from sitesym.tolerances import ORTHOGONAL, SAME_MATRIX
+
+
+def number_array(values: ArrayLike, error: type[SitesymError] = SymmetryError) -> FloatArray:
+    """What numpy reads as numbers, with at least one axis. Raises ``error`` for texts and ragged lists."""
+    try:
+        given: FloatArray = np.asarray(values, dtype=np.float64)
+    except (TypeError, ValueError) as reason:
+        raise error(
+            "what is given is not an array of numbers",
+            value=repr(values)[:200],
+            rule="numbers in rows of equal length",
+            next_step="correct the array",
+        ) from reason
+    return np.atleast_1d(given)
+
+
+def directions(rows: ArrayLike) -> FloatArray:
+    """Three directions as unit vectors, shape (3, 3). Raises AxesError where one has no length."""
+    given = number_array(rows, AxesError)
+    lengths = np.linalg.norm(given, axis=-1, keepdims=True)
+    if given.shape != (3, 3) or not np.isfinite(given).all() or not lengths.all():
+        raise AxesError(
+            "these are not three directions",
+            value=repr(given.tolist()),
+            rule="rows X, Y, Z, shape (3, 3), finite and none of them zero",
+            next_step="give the direction wished for each axis",
+        )
+    units: FloatArray = given / lengths
+    return units
 
 
 def time_reversal_flags(flags: BoolArray | None, count: int) -> BoolArray:
@@ -37,7 +67,7 @@ def require_orthogonal(cart: FloatArray) -> None:
 
 def integer_matrices(rotations: IntArray) -> IntArray:
     """Matrices of any number type as integers. Raises SymmetryError where an entry is none."""
-    given: FloatArray = np.asarray(rotations, dtype=np.float64)
+    given = number_array(rotations)
     nearest = np.rint(given)
     if not np.abs(given - nearest).max(initial=0.0) <= SAME_MATRIX:
         raise SymmetryError(
@@ -52,7 +82,7 @@ def integer_matrices(rotations: IntArray) -> IntArray:
 
 def lattice_rows(lattice: FloatArray) -> FloatArray:
     """Rows a, b, c, shape (3, 3). Raises SymmetryError unless they are finite and independent."""
-    rows: FloatArray = np.asarray(lattice, dtype=np.float64)
+    rows = number_array(lattice)
     lengths = np.linalg.norm(rows, axis=-1) if rows.shape == (3, 3) else np.zeros(1)
     if not (np.isfinite(rows).all() and lengths.all() and abs(np.linalg.det(rows)) > 1e-9 * lengths.prod()):
         raise SymmetryError(
@@ -65,7 +95,7 @@ def lattice_rows(lattice: FloatArray) -> FloatArray:
 
 def proper_rotation(rotation: FloatArray) -> FloatArray:
     """New axes as rows, shape (3, 3). Raises AxesError unless they are right-handed and orthonormal."""
-    matrix: FloatArray = np.asarray(rotation, dtype=np.float64)
+    matrix = number_array(rotation, AxesError)
     if (
         matrix.shape != (3, 3)
         or not np.abs(matrix @ matrix.T - np.eye(3)).max() <= ORTHOGONAL

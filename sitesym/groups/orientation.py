@@ -14,6 +14,7 @@ from itertools import permutations, product
 import numpy as np
 
 from sitesym.arrays import FloatArray
+from sitesym.groups.inputs import directions
 from sitesym.groups.pointgroup import PointGroup
 
 
@@ -22,10 +23,10 @@ def standard_rotation(group: PointGroup, preferred: FloatArray | None = None) ->
     right-handed.
 
     ``preferred`` has as rows the directions wished for X, Y, Z (default: the present axes); it decides what
-    symmetry leaves open, including the senses. Returns R with v_standard = R v.
+    symmetry leaves open, including the senses. Returns R with v_standard = R v. Raises AxesError for wishes
+    that are no directions.
     """
-    wishes = np.eye(3) if preferred is None else np.asarray(preferred, dtype=np.float64)
-    wishes = wishes / np.linalg.norm(wishes, axis=1)[:, None]
+    wishes = np.eye(3) if preferred is None else directions(preferred)
     match group.system:
         case "triclinic" | "non-crystallographic":
             return _orthonormal(wishes[2], wishes[0])

@@ -15,6 +15,7 @@ from sitesym.groups.elements import Element, classify
 from sitesym.groups.inputs import (
     integer_matrices,
     lattice_rows,
+    number_array,
     proper_rotation,
     require_orthogonal,
     time_reversal_flags,
@@ -77,7 +78,7 @@ class PointGroup:
     @classmethod
     def from_cartesian(cls, rotations: FloatArray, time_reversal: BoolArray | None = None) -> PointGroup:
         """A group of orthogonal matrices (n, 3, 3). Raises NotAGroupError or SymmetryError."""
-        given: FloatArray = np.asarray(rotations, dtype=np.float64)
+        given = number_array(rotations)
         flags = time_reversal_flags(time_reversal, len(given))
         sequence = identity_first(given, flags)
         cart, flags = given[sequence], flags[sequence]
@@ -106,10 +107,17 @@ class PointGroup:
         return PointGroup(frozen(cart), self.rotations_frac, lattice, self.time_reversal, self.abstract)
 
     def subgroup(self, indices: list[int]) -> PointGroup:
-        """The subgroup made of the given elements, in the same axes. Raises NotAGroupError if they are
-        none.
+        """The subgroup made of the elements with these indices, in the same axes.
+
+        Raises NotAGroupError if they are no group, SymmetryError for an index that is none.
         """
         chosen = sorted(set(indices))
+        if chosen and not 0 <= chosen[0] <= chosen[-1] < self.order:
+            raise SymmetryError(
+                "an element of the subgroup does not exist",
+                value=f"indices {chosen[0]} to {chosen[-1]}",
+                rule=f"indices of elements run from 0 to {self.order - 1}",
+            )
         flags = self.time_reversal[chosen]
         if self.rotations_frac is not None and self.lattice is not None:
             return PointGroup.from_fractional(self.rotations_frac[chosen], self.lattice, flags)

@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from sitesym.errors import AxesError, NotAGroupError, SymmetryError
-from sitesym.groups import PointGroup
+from sitesym.groups import PointGroup, standard_rotation
 from sitesym.groups.symbols import SCHOENFLIES, rotation_about
 
 TURN_Z = np.array([[0, -1, 0], [1, 0, 0], [0, 0, 1]])
@@ -65,6 +65,34 @@ def test_a_lattice_without_volume_is_refused(lattice: np.ndarray) -> None:
 def test_fractions_in_a_lattice_basis_are_refused_and_not_cut_off() -> None:
     with pytest.raises(SymmetryError, match="integer"):
         PointGroup.from_fractional(np.array([ONE, 0.9 * -ONE]), np.eye(3))
+
+
+@pytest.mark.parametrize("rows", ["abc", [[1, 2], [3]], [["a"] * 3] * 3])
+def test_what_is_no_array_of_numbers_is_refused_with_its_value(rows: object) -> None:
+    group = PointGroup.from_symbol("32")
+    actions = (
+        (SymmetryError, lambda: PointGroup.from_cartesian(rows)),
+        (SymmetryError, lambda: PointGroup.from_fractional(rows, np.eye(3))),
+        (SymmetryError, lambda: PointGroup.from_fractional(np.eye(3)[None], rows)),
+        (AxesError, lambda: group.rotated(rows)),
+        (AxesError, lambda: standard_rotation(group, rows)),
+    )
+    for error, action in actions:
+        with pytest.raises(error) as caught:
+            action()
+        assert caught.value.value == repr(rows)
+
+
+@pytest.mark.parametrize("wishes", [np.zeros((3, 3)), np.eye(3)[:2], np.full((3, 3), np.nan)])
+def test_wishes_that_are_no_directions_are_refused(wishes: np.ndarray) -> None:
+    with pytest.raises(AxesError, match="not three directions"):
+        standard_rotation(PointGroup.from_symbol("1"), wishes)
+
+
+@pytest.mark.parametrize("index", [-1, 6])
+def test_a_subgroup_is_made_of_elements_that_exist(index: int) -> None:
+    with pytest.raises(SymmetryError, match="from 0 to 5"):
+        PointGroup.from_symbol("32").subgroup([0, index])
 
 
 def test_not_a_number_is_refused() -> None:
