@@ -16,9 +16,10 @@ from sitesym.audit.kept_groups import symmetry_tolerance
 from sitesym.audit.measurement import Measurement
 from sitesym.audit.messages import message
 from sitesym.audit.neumann import Subspaces, subspaces
+from sitesym.audit.orientations import orientations, stated_orientation
 from sitesym.audit.own_symmetry import tensor_symmetry, tensor_symmetry_in_own_axes
 from sitesym.audit.result import AuditResult, Deviation, IndexFinding, Reading, TensorSymmetry
-from sitesym.audit.search import Field, orientations, search, stated_orientation
+from sitesym.audit.search import Field, search
 from sitesym.audit.uncertainty import Noise, noise_of
 from sitesym.audit.variants import Variant, variants_of
 from sitesym.audit.verdicts import Finding, as_stated, explained, left_open

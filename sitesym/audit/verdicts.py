@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from sitesym.audit.measurement import Measurement
+from sitesym.audit.orientations import stated_orientation
 from sitesym.audit.other_crystal import OtherCrystal, other_crystal, other_crystal_in_own_axes
 from sitesym.audit.result import Ambiguity, Cause, Reading, Verdict
 from sitesym.audit.rotation_search import best_rotation
@@ -21,7 +22,6 @@ from sitesym.audit.search import (
     index_finding,
     judged_reading,
     residual_of,
-    stated_orientation,
     without_empty_factors,
 )
 from sitesym.audit.slips import Repair, repairs
