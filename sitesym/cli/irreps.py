@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Final
+
 import click
 import numpy as np
 
@@ -14,6 +16,9 @@ from sitesym.reports.irreps import irreps_document
 from sitesym.reports.irreps_report import irreps_text
 from sitesym.reports.render import render
 from sitesym.tensors import TensorKind, kind, kind_from_jahn
+
+#: Formats that can show the matrices of irreps.
+_WITH_MATRICES: Final = ("text", "json")
 
 
 @click.command("irreps")
@@ -39,6 +44,13 @@ def command(
     output: str | None,
 ) -> None:
     """Classes, exact characters, labels and functions of the point group of FILE, or SYMBOL, in ieee axes."""
+    if matrices and format_name not in _WITH_MATRICES:
+        raise UsageError(
+            "this format has no place for matrices",
+            format_name,
+            f"matrices stand in {' and '.join(_WITH_MATRICES)}",
+            "leave out --matrices, or choose one of these formats",
+        )
     subject = subject_of(file, symbol, tolerance_angstrom, reading=reading)
     axes = subject.axes("ieee")
     table = character_table(subject.group, np.array(axes["rotation_from_file"]))

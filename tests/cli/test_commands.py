@@ -69,6 +69,13 @@ def test_matrices_appear_in_text_on_request(run: Run) -> None:
     assert "-0.5+0.866025i" in run("irreps", "--group", "3", "--matrices").output
 
 
+@pytest.mark.parametrize("format_name", ["csv", "markdown", "latex"])
+def test_a_format_without_matrices_refuses_to_leave_them_out_silently(run: Run, format_name: str) -> None:
+    refused = run("irreps", "--group", "3", "--matrices", "--format", format_name)
+    assert refused.exit_code == 2
+    assert "text and json" in refused.stderr
+
+
 def test_screening_the_demo_structures(document: Call, structures: str) -> None:
     rows = document("screen", structures)["rows"]
     broken = [row for row in rows if row["status"] == "error"]
