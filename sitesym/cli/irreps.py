@@ -54,7 +54,8 @@ def command(
     subject = subject_of(file, symbol, tolerance_angstrom, reading=reading)
     axes = subject.axes("ieee")
     table = character_table(subject.group, np.array(axes["rotation_from_file"]))
-    document = irreps_document(table, axes, subject.crystal, None if name is None else _kind(name))
+    reduced = None if name is None else _kind(name)
+    document = irreps_document(table, axes, subject.crystal, reduced, subject.remarks)
     in_full = matrices and format_name == "text"
     write(irreps_text(document, matrices=True) if in_full else render(document, format_name), output)
 

@@ -4,7 +4,7 @@ group.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import asdict
 from typing import Any
 
@@ -23,11 +23,13 @@ def irreps_document(
     axes: Mapping[str, Any],
     crystal: Mapping[str, Any] | None = None,
     reduced: TensorKind | None = None,
+    remarks: Iterable[str] = (),
 ) -> Document:
     """The document `sitesym.irreps/1`.
 
     Cartesian matrices, functions and irrep matrices are written in the axes of the labels (the standard
-    orientation), which ``axes`` describes; directions in names are lattice directions.
+    orientation), which ``axes`` describes; directions in names are lattice directions. ``remarks``: what the
+    reader of the crystal's file had to say.
     """
     group = table.group.rotated(table.rotation)
     document: Document = {
@@ -47,6 +49,7 @@ def irreps_document(
         "joined": _joined(table),
         "checks": asdict(table.checks),
         "reduction": None if reduced is None else _reduction(table, reduced),
+        "remarks": list(remarks),
         "versions": library_versions(),
         "caution": CAUTION,
     }

@@ -64,6 +64,15 @@ def test_any_index_symmetry_is_reduced_by_its_jahn_symbol(document: Call, run: R
     assert "not closed" in refused.stderr
 
 
+@pytest.mark.parametrize("command", ["sites", "allowed", "irreps"])
+def test_an_average_structure_is_called_one_by_every_command(
+    document: Call, run: Run, structures: str, command: str
+) -> None:
+    file = str(Path(structures) / "perovskite_BaSrTiO3.cif")
+    assert any("average structure" in remark for remark in document(command, file)["remarks"])
+    assert "average structure" in run(command, file).output
+
+
 def test_matrices_appear_in_text_on_request(run: Run) -> None:
     assert "0.866025i" not in run("irreps", "--group", "3").output
     assert "-0.5+0.866025i" in run("irreps", "--group", "3", "--matrices").output
