@@ -53,10 +53,18 @@ def say(text: str) -> None:
 
 @contextlib.contextmanager
 def output_errors(output: str | None) -> Iterator[None]:
-    """Errors of the operating system while writing to a file or to standard output (None), as `write_pieces`
-    says."""
+    """Errors of the operating system and of encoding while writing to a file or to standard output (None),
+    as `write_pieces` says.
+    """
     try:
         yield
+    except UnicodeEncodeError as error:
+        raise UsageError(
+            "the output cannot be written",
+            f"{error.object[error.start : error.end]!a} in the encoding {error.encoding}",
+            "an encoding that has every character of the output",
+            "name a file with --output, which is UTF-8, or set PYTHONIOENCODING=utf-8",
+        ) from error
     except BrokenPipeError:
         if output is not None:
             raise

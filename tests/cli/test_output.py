@@ -52,6 +52,23 @@ def arguments(request: pytest.FixtureRequest, store: str, tmp_path: Path) -> lis
     return ways[request.param]
 
 
+@pytest.mark.parametrize("format_name", ["text", "json"])
+def test_a_character_the_terminal_does_not_have_is_an_error_with_code_2(
+    tmp_path: Path, format_name: str
+) -> None:
+    file = tmp_path / "k\xf6rnig.cif"
+    file.write_bytes((STRUCTURES / "quartz_SiO2.cif").read_bytes())
+    run = subprocess.run(
+        [*PROGRAM, "sites", str(file), "--format", format_name],
+        capture_output=True,
+        text=True,
+        env=os.environ | {"PYTHONIOENCODING": "ascii"},
+    )
+    assert run.returncode == 2
+    assert r"'\xf6' in the encoding ascii" in run.stderr
+    assert "Traceback" not in run.stderr
+
+
 @needs_a_full_device
 def test_a_full_disk_is_an_error_with_code_2(arguments: list[str]) -> None:
     with open("/dev/full", "w", encoding="utf-8") as full:
