@@ -84,6 +84,37 @@ def test_names_of_kinds_are_unique_and_their_symbols_are_read() -> None:
         assert k.indices
 
 
+#: Index symmetry and factors of each kind. Symmetries: H. A. Jahn, Acta Cryst. 2 (1949) 30, and J. F. Nye,
+#: Physical Properties of Crystals (1957), from memory. Factors: 2 where the contracted pair multiplies what is
+#: summed over once for 23 and once for 32 (stress, polarisations, fields, flux densities) or is an engineering
+#: strain; common practice. Brugger's third- and fourth-order stiffness has none.
+DEFINED = {
+    "pyroelectric": ("V", ()), "spontaneous-polarisation": ("V", ()),
+    "permittivity": ("[V2]", ()), "impermeability": ("[V2]", ()), "thermal-expansion": ("[V2]", ()),
+    "thermal-conductivity": ("[V2]", ()), "electrical-conductivity": ("[V2]", ()), "seebeck": ("V2", ()),
+    "gyration": ("e[V2]", ()), "hall": ("e{V2}V", ()),
+    "piezoelectric-strain": ("V[V2]", (2,)), "piezoelectric-stress": ("V[V2]", (1,)),
+    "piezoelectric-voltage": ("V[V2]", (2,)), "piezoelectric-stiffness": ("V[V2]", (1,)),
+    "electro-optic": ("[V2]V", (1,)), "second-harmonic": ("V[V2]", (1,)),
+    "second-harmonic-kleinman": ("[V3]", (1,)), "electrogyration": ("eV[V2]", (1,)),
+    "elastic-stiffness": ("[[V2]2]", (1, 1)), "elastic-compliance": ("[[V2]2]", (2, 2)),
+    "elasto-optic": ("[V2][V2]", (1, 1)), "piezo-optic": ("[V2][V2]", (1, 2)),
+    "electrostriction": ("[V2][V2]", (1, 2)), "kerr": ("[V2][V2]", (1, 2)),
+    "magnetoresistance": ("[V2][V2]", (1, 2)), "flexoelectric": ("V2[V2]", (1,)),
+    "third-harmonic": ("V[V3]", ()), "third-harmonic-kleinman": ("[V4]", ()),
+    "nonlinear-piezoelectric": ("V[[V2]2]", (1, 1)),
+    "third-order-elastic": ("[[V2]3]", (1, 1, 1)), "fourth-order-elastic": ("[[V2]4]", (1, 1, 1, 1)),
+    "displacement-parameter": ("[V2]", ()), "electric-field-gradient": ("[V2]", ()), "shielding": ("V2", ()),
+    "born-charge": ("V2", ()),
+}  # fmt: skip
+
+
+def test_kinds_have_the_index_symmetry_and_the_factors_of_the_trade() -> None:
+    defined = {k.name: (k.jahn, k.pair_factors) for k in all_kinds() if k.name in DEFINED}
+    assert defined == DEFINED
+    assert [k.name for k in all_kinds() if k.traceless] == ["electric-field-gradient"]
+
+
 def test_every_contracted_pair_of_a_kind_has_its_factor() -> None:
     for k in all_kinds():
         assert len(k.pair_factors) == contraction(k).blocks.count(6), k.name
