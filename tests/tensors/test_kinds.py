@@ -85,9 +85,9 @@ def test_names_of_kinds_are_unique_and_their_symbols_are_read() -> None:
 
 
 #: Index symmetry and factors of each kind. Symmetries: H. A. Jahn, Acta Cryst. 2 (1949) 30, and J. F. Nye,
-#: Physical Properties of Crystals (1957), from memory. Factors: 2 where the contracted pair multiplies what is
-#: summed over once for 23 and once for 32 (stress, polarisations, fields, flux densities) or is an engineering
-#: strain; common practice. Brugger's third- and fourth-order stiffness has none.
+#: Physical Properties of Crystals (1957), from memory. Factors: 2 where the contracted pair is summed over
+#: twice, for 23 and for 32 (stress, polarisations, fields, flux densities), or is an engineering strain; common
+#: practice. The third- and fourth-order stiffness of Brugger has none.
 DEFINED = {
     "pyroelectric": ("V", ()), "spontaneous-polarisation": ("V", ()),
     "permittivity": ("[V2]", ()), "impermeability": ("[V2]", ()), "thermal-expansion": ("[V2]", ()),
