@@ -86,7 +86,7 @@ def test_names_of_kinds_are_unique_and_their_symbols_are_read() -> None:
 
 #: Index symmetry and factors of each kind. Symmetries: H. A. Jahn, Acta Cryst. 2 (1949) 30, and J. F. Nye,
 #: Physical Properties of Crystals (1957), from memory. Factors: 2 where the contracted pair is summed over
-#: twice, for 23 and for 32 (stress, polarisations, fields, flux densities), or is an engineering strain; common
+#: twice, for 23 and 32 (stress, polarisations, fields, flux densities), or is an engineering strain; common
 #: practice. The third- and fourth-order stiffness of Brugger has none.
 DEFINED = {
     "pyroelectric": ("V", ()), "spontaneous-polarisation": ("V", ()),
