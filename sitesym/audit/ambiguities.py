@@ -14,13 +14,16 @@ import numpy as np
 
 from sitesym.arrays import FloatArray, frozen
 from sitesym.audit.equivalents import OTHER_HAND, Change, allowed_entries, axes_after, changes, words_of
-from sitesym.audit.neumann import subspaces
+from sitesym.audit.neumann import acting_group, subspaces
 from sitesym.audit.orders import order_text
 from sitesym.audit.result import Ambiguity, AmbiguitySort, Reading
+from sitesym.audit.rotation_words import direction_words, turn_text
 from sitesym.audit.search import Field, index_finding, residual_of
 from sitesym.audit.variants import Variant
 from sitesym.groups import PointGroup
-from sitesym.tensors import TensorKind
+from sitesym.groups.normaliser import directions_of_any_turn
+from sitesym.groups.symbols import rotation_about
+from sitesym.tensors import TensorKind, contraction
 
 #: Two tensors that are each within the tolerance of one tensor differ by at most so many tolerances.
 _DIFFERENT = 2.0
@@ -65,7 +68,7 @@ def ambiguities(field: Field, reading: Reading) -> tuple[Ambiguity, ...]:
     keys = [(v.order, v.layout, v.factor) for v in field.variants]
     number = keys.index((reading.order, reading.layout, reading.factor))
     base = _Base(field, reading.rotation, field.variants[number], field.noise_left(number))
-    return (*_variants(base), *_axes(base), *_entries(base))
+    return (*_variants(base), *_axes(base), *_principal_axes(base), *_entries(base))
 
 
 def _variants(base: _Base) -> Iterator[Ambiguity]:
@@ -145,6 +148,29 @@ def _other_axes(base: _Base, change: Change, flips: tuple[str, ...], mixes: bool
         flips,
         mixes,
     )
+
+
+def _principal_axes(base: _Base) -> Iterator[Ambiguity]:
+    """Turns that bring another principal axis of a symmetric 3x3 tensor along the unique axis of the crystal.
+
+    No operation of a monoclinic crystal tells which of the three lies there.
+    """
+    spaces, own = base.field.spaces, base.variant
+    kind = spaces.space.kind
+    unique = directions_of_any_turn(acting_group(kind, spaces.group))
+    if kind.rank != 2 or not contraction(kind).commuting or len(unique) != 1:
+        return
+    obeying = spaces.allowed.T @ base.coefficients
+    for axis in np.linalg.eigh(spaces.space.array(obeying))[1].T:
+        turn = rotation_about(axis, np.pi / 2.0)
+        moved = spaces.space.rotated(turn[None], obeying[:, None])[0, :, 0]
+        obeys = float(np.linalg.norm(spaces.forbidden_part(moved))) <= base.tolerance
+        if obeys and abs(axis @ unique[0]) < 0.5 and base.differs(float(np.linalg.norm(moved - obeying))):
+            axes = base.to_standard.T @ turn.T @ base.to_standard
+            there = direction_words(base.to_standard.T @ unique[0])
+            words = f"axes turned by {turn_text(axes)}, another principal axis along {there}"
+            rotation = frozen(axes @ base.rotation)
+            yield Ambiguity("axes", words, rotation, own.order, own.layout, own.factor, mixes=True)
 
 
 def _entries(base: _Base) -> Iterator[Ambiguity]:

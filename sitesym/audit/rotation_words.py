@@ -26,7 +26,8 @@ def direction_words(direction: FloatArray) -> str:
     """A Cartesian direction: ``[110]``, or its components where no small integers fit."""
     indices = small_integers(direction)
     if indices is None:
-        return f"({' '.join(f'{value:.4f}' for value in direction + 0.0)})"
+        # Adding zero turns -0.0 into 0.0.
+        return f"({' '.join(f'{value:.4f}' for value in np.round(direction, 4) + 0.0)})"
     return direction_text(indices)
 
 
