@@ -11,8 +11,10 @@ from signal import Signals
 import click
 
 from sitesym.cli.choices import batch_reading_options, reliability_options, split_names, spreadsheet_option
-from sitesym.cli.output import say, write
+from sitesym.cli.output import output_errors, say, write
 from sitesym.cli.progress import watched
+from sitesym.cli.table import parquet_file, say_settings
+from sitesym.errors import UsageError
 from sitesym.screening import Row, Screening, Settings, Store, Task, WorkItem, available_cores
 from sitesym.screening.columns import DEFAULT_PROPERTIES
 from sitesym.screening.engine import DEFAULT_LIMIT_MEGABYTES, DEFAULT_LIMIT_SECONDS, Crew
@@ -147,9 +149,10 @@ def command(
         symmetry_from,
         tuple(split_names(distinguish)),
     )
+    shown = format_name or ("text" if store_path is None else None)
+    _check_output(shown, output)
     task = Task(settings, limit_seconds, limit_memory, hashed=store_path is not None)
     run = Screening(task, _crew(workers, cluster))
-    shown = format_name or ("text" if store_path is None else None)
     table = _Table(inputs, settings, shown, output, spreadsheet_safe)
     if store_path is None:
         _screen_to_output(run, table)
@@ -158,6 +161,20 @@ def command(
     if run.stopped_by:
         say(f"stopped by {run.stopped_by}; what is done is kept")
         sys.exit(128 + Signals[run.stopped_by])
+
+
+def _check_output(format_name: str | None, output: str | None) -> None:
+    """Return when rows can be written; a run may take days, and would end without them. Raises UsageError."""
+    if format_name is None and output is not None:
+        raise UsageError(
+            "no format for the output", output, "with --store, rows are written only in a --format",
+            "add --format, or ask `sitesym table` afterwards",
+        )  # fmt: skip
+    if format_name == "parquet":
+        parquet_file(output)
+    if output is not None:
+        with output_errors(output), open(output, "a"):
+            pass
 
 
 def _crew(workers: int, cluster: str | None) -> Callable[[Task], Crew]:
@@ -181,6 +198,10 @@ def _screen_to_store(run: Screening, table: _Table, path: str, retry: bool) -> N
     with Store.writing(path, table.settings) as store, run:
         for _ in table.watched(run.into(store, table.items(), retry), run, bar=True):
             pass
+        if not run.stopped_by:
+            store.drop_unseen()
+        if table.format_name is not None:
+            say_settings(store.settings_documents())
         table.write(store.rows())
     _summarise(run, to_standard_error=table.format_name is not None)
 
@@ -189,7 +210,10 @@ def _summarise(run: Screening, *, to_standard_error: bool) -> None:
     from sitesym.reports.screen_summary import summary_lines
 
     lines = [f"{run.already_done} done before, {run.done} now"] if run.already_done else []
-    text = "\n".join((*lines, *summary_lines(run.tally)))
+    # Nothing new is no news, and says nothing about the inputs.
+    if run.tally.rows or not (run.already_done or run.stopped_by):
+        lines.extend(summary_lines(run.tally))
+    text = "\n".join(lines) or "nothing done"
     if to_standard_error:
         say(text)
     else:

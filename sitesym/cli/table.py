@@ -71,12 +71,26 @@ def command(
     if settings_wanted:
         write_pieces((f"{json.dumps(entry)}\n" for entry in settings), output)
         return
-    if len(settings) > 1:
-        say(f"rows were made with {len(settings)} different settings; --settings shows them")
+    say_settings(settings)
     named = split_names(columns)
     names = [] if named == ["all"] else named or default_columns(table.columns, format_name)
     query = table.query(where, sort, names, limit)
     write_rows(table.rows(query), query.columns, format_name, output, spreadsheet_safe=spreadsheet_safe)
+
+
+def say_settings(settings: Sequence[object]) -> None:
+    """Say on standard error when not all rows of a store were made alike."""
+    if len(settings) > 1:
+        say(f"rows were made with {len(settings)} different settings; `sitesym table --settings` shows them")
+
+
+def parquet_file(output: str | None) -> str:
+    """The file that Parquet goes to. Raises UsageError where there is none."""
+    if output is None:
+        raise UsageError(
+            "Parquet is not for a terminal", "no --output", "a Parquet file is binary", "add --output PATH"
+        )
+    return output
 
 
 def write_rows(
@@ -98,9 +112,6 @@ def write_rows(
 
 
 def _write_parquet(rows: Iterable[Row], columns: Sequence[Column], output: str | None) -> None:
-    if output is None:
-        raise UsageError(
-            "Parquet is not for a terminal", "no --output", "a Parquet file is binary", "add --output PATH"
-        )
-    with output_errors(output):
-        write_parquet(rows, columns, output)
+    path = parquet_file(output)
+    with output_errors(path):
+        write_parquet(rows, columns, path)

@@ -24,6 +24,8 @@ OPERATORS: Final = {"=": "=", "==": "=", "!=": "<>", "<": "<", "<=": "<=", ">": 
 _CONDITION = re.compile(r"\s*(\w+)\s*(!=|<=|>=|==|=|<|>|~)\s*(.*?)\s*", re.DOTALL)
 _TRUTH: Final = {"yes": True, "true": True, "1": True, "no": False, "false": False, "0": False}
 _MISSING: Final = "none"
+#: The largest integer of SQLite; no table has more rows.
+_MOST: Final = 2**63 - 1
 
 
 @dataclass(frozen=True)
@@ -58,7 +60,7 @@ class Query:
         parts.append("ORDER BY " + ", ".join((*keys, stored_order)))
         if self.limit is not None:
             parts.append("LIMIT ?")
-            parameters.append(self.limit)
+            parameters.append(min(self.limit, _MOST))
         return " ".join(parts), parameters
 
 

@@ -34,6 +34,28 @@ UNSETTLED: Final = frozenset({"crashed", "timed-out", "out-of-memory"})
 #: Order of rows: by source, its units by number, the structures of a unit as they stand in it.
 ORDER: Final = "source, length(item_frame), item_frame, part"
 
+#: A unit of this run: written by it, or found done.
+_SEE: Final = "INSERT OR IGNORE INTO seen VALUES (?)"
+
+# Sources some of whose units were seen lose the others. That an archive breaks off is a unit of the archive
+# itself, whose members have sources of their own: after its path an exclamation mark, before '"' in ASCII.
+_DROP_UNSEEN: Final = """
+    CREATE TEMP TABLE stale AS
+        WITH unseen AS (SELECT id, source, frame FROM items WHERE id NOT IN (SELECT item FROM seen)),
+            read AS (
+                SELECT source FROM (SELECT DISTINCT source FROM unseen) AS some WHERE EXISTS (
+                    SELECT 1 FROM items
+                    WHERE items.source = some.source AND id IN (SELECT item FROM seen)))
+        SELECT id FROM unseen WHERE source IN (SELECT source FROM read)
+            OR frame LIKE 'after member %' AND EXISTS (
+                SELECT 1 FROM items
+                WHERE items.source > unseen.source || '!' AND items.source < unseen.source || '"'
+                    AND id IN (SELECT item FROM seen));
+    DELETE FROM structures WHERE item IN (SELECT id FROM stale);
+    DELETE FROM items WHERE id IN (SELECT id FROM stale);
+    DROP TABLE stale;
+"""
+
 
 class Store:
     """An open store. `writing` and `reading` open one; use it as a context manager."""
@@ -54,11 +76,12 @@ class Store:
         """
         name = os.fspath(path)
         with _store_errors(name):
-            lock = WriterLock(name)
+            # One lock for a store, also where a link leads to it.
+            lock = WriterLock(os.path.realpath(name))
         store = None
         try:
             with _store_errors(name):
-                store = cls(name, sqlite3.connect(name, isolation_level=None), lock)
+                store = cls(name, sqlite3.connect(os.path.abspath(name), isolation_level=None), lock)
                 store._prepare(settings)
         except BaseException:
             lock.release() if store is None else store.close()
@@ -77,7 +100,7 @@ class Store:
                 "look at the path, or screen with --store first",
             )
         with _store_errors(name):
-            connection = sqlite3.connect(f"file:{quote(os.path.abspath(name))}?mode=ro", uri=True)
+            connection = sqlite3.connect(_read_only_uri(os.path.abspath(name)), uri=True)
             check_version(connection, name)
         return cls(name, connection, None)
 
@@ -103,12 +126,14 @@ class Store:
         """Whether the unit is done with these settings and this content; with ``retry``, one that ended its
         process is not."""
         known = self._connection.execute(
-            "SELECT content_hash, status FROM items WHERE source = ? AND frame = ? AND settings = ?",
+            "SELECT content_hash, status, id FROM items WHERE source = ? AND frame = ? AND settings = ?",
             (storable(item.source), storable(item.frame), self._settings),
         ).fetchone()
-        if known is None or (retry and known[1] in UNSETTLED):
+        if known is None or (retry and known[1] in UNSETTLED) or known[0] != content_hash(item):
             return False
-        return bool(known[0] == content_hash(item))
+        with _store_errors(self.path):
+            self._connection.execute(_SEE, (known[2],))
+        return True
 
     def put(self, item: WorkItem, digest: str, rows: Sequence[Row]) -> None:
         """Write the rows of a unit, in place of those it had; permanent with the next `commit`.
@@ -126,6 +151,7 @@ class Store:
                 " settings = excluded.settings, status = excluded.status RETURNING id",
                 (*key, digest, self._settings, statuses[0] if statuses else "ok"),
             ).fetchone()
+            self._connection.execute(_SEE, (number,))
             self._connection.execute("DELETE FROM structures WHERE item = ?", (number,))
             self._connection.executemany(
                 self._insert, ([number, part, *_values(row)] for part, row in enumerate(rows))
@@ -133,6 +159,15 @@ class Store:
             self._pending += 1
             if self._pending >= COMMIT_UNITS or monotonic() - self._since > COMMIT_SECONDS:
                 self.commit()
+
+    def drop_unseen(self) -> None:
+        """After all items: drop rows of what the sources of this run no longer hold, as lines cut off a file.
+
+        A file that is gone, or was not named, keeps its rows. Raises StoreError.
+        """
+        self.commit()
+        with _store_errors(self.path):
+            self._connection.executescript(f"BEGIN IMMEDIATE; {_DROP_UNSEEN} COMMIT;")
 
     def commit(self) -> None:
         """Make permanent what was written. Raises StoreError."""
@@ -170,6 +205,7 @@ class Store:
         check_version(connection, self.path)
         connection.execute("PRAGMA journal_mode = WAL")
         connection.execute("PRAGMA synchronous = NORMAL")
+        connection.execute("CREATE TEMP TABLE seen (item INTEGER PRIMARY KEY)")
         migrate(connection)
         connection.execute("BEGIN IMMEDIATE")
         add_columns(connection, settings.columns)
@@ -184,6 +220,13 @@ class Store:
         names = [column.name for column in settings.columns if column.name != "source"]
         marks = ", ".join("?" * (len(names) + 2))
         self._insert = f"INSERT INTO structures (item, part, {', '.join(names)}) VALUES ({marks})"
+
+
+def _read_only_uri(path: str) -> str:
+    """What opens a store to read it. SQLite coordinates readers and writers by files beside the store; where
+    it may make none, and no run has left any, nobody writes."""
+    alone = not os.access(os.path.dirname(path), os.W_OK) and not os.path.exists(f"{path}-wal")
+    return f"file:{quote(os.fsencode(path))}?mode=ro{'&immutable=1' if alone else ''}"
 
 
 def typed_row(columns: Sequence[Column], values: Sequence[Any]) -> Row:

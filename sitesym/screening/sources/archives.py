@@ -103,6 +103,13 @@ def _item(
             return None
         if is_link:
             raise _unsafe("the member is a link", identity)
+        if named_format(parts[-1]) == "db":
+            raise ReadingError(
+                "a database inside an archive is not read",
+                identity,
+                "an ASE database is read row by row from a file of its own",
+                "take it out and name it",
+            )
         return WorkItem.of_bytes(
             source, frame, identity, storable(parts[-1]), _content(content, size, source)
         )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import codecs
 import json
 import os
 from collections.abc import Callable, Iterator
@@ -47,11 +48,13 @@ def listed_items(path: str, items_of: Callable[[str, str], Iterator[WorkItem]]) 
     """
     folder = os.path.dirname(os.path.abspath(path))
     for number, line in _lines(path):
+        if isinstance(line, bytes) and b"\0" in line:
+            line = _no_path(line)
         if isinstance(line, SitesymError):
             name = f"{storable(os.path.basename(path))}#{number}"
             yield WorkItem.of_error(os.path.abspath(path), f"line {number}", name, line)
         else:
-            entry = os.fsdecode(line.rstrip(b"\r\n"))
+            entry = os.fsdecode(line.removeprefix(codecs.BOM_UTF8).rstrip(b"\r\n"))
             yield from items_of(os.path.join(folder, entry), storable(entry))
 
 
@@ -75,6 +78,11 @@ def _skip_line(stream: IO[bytes] | GzipFile, size: int) -> int:
     while (piece := stream.readline(LARGEST_ENTRY_BYTES)) and not piece.endswith(b"\n"):
         size += len(piece)
     return size + len(piece)
+
+
+def _no_path(line: bytes) -> ReadingError:
+    rule, step = "a path holds no NUL character", "write the list as text in UTF-8"
+    return ReadingError("the line is no path", repr(line[:80]), rule, step)
 
 
 def _structure(line: bytes, source: str, frame: str) -> WorkItem:
