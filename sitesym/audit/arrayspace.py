@@ -110,8 +110,6 @@ class ArraySpace:
         m = coordinates.shape[1]
         if m == 0:
             return np.zeros((len(rotations), self.size, 0))
-        if not m:
-            return np.zeros((len(rotations), self.size, 0))
         by_length = {3: rotations, 6: pair_rotations(rotations)}
         result = coordinates[None]
         # Each pass turns the leading axis and moves it behind the others.

@@ -99,7 +99,7 @@ def _bare(
 def _detailed(field: Field, index: IndexFinding, finding: Finding) -> AuditResult:
     """The result with what was found component by component and about symmetry."""
     measurement, frames, spaces = field.measurement, field.frames, field.spaces
-    if finding.cause == "unexplained" and not index.holds:
+    if finding.cause in ("unexplained", "not-searched") and not index.holds:
         finding = replace(finding, cause="index-symmetry")
     cannot_tell = ambiguities(field, finding.best) if finding.best and finding.obeys else ()
     finding = left_open(finding, measurement, cannot_tell)

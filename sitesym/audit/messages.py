@@ -127,6 +127,8 @@ def _violates(finding: Finding, index: IndexFinding, missing: str) -> tuple[str,
         case "index-symmetry":
             pairs = ", ".join(f"{p.first} and {p.second}" for p in index.broken[:3])
             return f"breaks index symmetry: {pairs} differ", "look these entries up at the source"
+        case "not-searched":
+            return f"{stated}; explanations were not searched for", "search for one, or look at the source"
     if finding.rivals:
         return (
             f"{stated}; a reading that fits exists, but chance would find one as good",

@@ -13,7 +13,9 @@ from sitesym.groups import PointGroup
 Verdict: TypeAlias = Literal["consistent", "consistent-otherwise", "violates", "cannot-tell", "no-constraint"]
 VERDICTS: Final = ("consistent", "consistent-otherwise", "violates", "cannot-tell", "no-constraint")
 
-Cause: TypeAlias = Literal["", "reading", "slip", "crystal", "index-symmetry", "unexplained"]
+Cause: TypeAlias = Literal[
+    "", "reading", "slip", "crystal", "index-symmetry", "unexplained", "not-searched"
+]
 
 
 @dataclass(frozen=True)
@@ -201,10 +203,10 @@ class AuditResult:
     ``stated``: the reading as stated (None where order or axes are unknown). ``best``: the reading that
     explains the tensor, or the slip; None when nothing does. ``rivals``: others that do about as well.
     ``cause``: what the verdict is put down to: another reading, a slip, a crystal of another class, broken
-    index symmetry, nothing found, or '' where nothing is wrong. ``equivalent_axes``: changes of axes that no
-    tensor of the kind can show in this class. ``cannot_tell``: everything that gives another tensor than the
-    reading the verdict rests on and obeys as well; empty where nothing obeys. ``message``: two lines, the
-    verdict and what to do.
+    index symmetry, nothing found, no search asked for, or '' where nothing is wrong. ``equivalent_axes``:
+    changes of axes that no tensor of the kind can show in this class. ``cannot_tell``: everything that gives
+    another tensor than the reading the verdict rests on and obeys as well; empty where nothing obeys.
+    ``message``: two lines, the verdict and what to do.
     """
 
     measurement: Measurement

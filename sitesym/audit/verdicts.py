@@ -60,7 +60,7 @@ def as_stated(field: Field) -> Finding:
     stated = judged_reading(field, first)
     if accepted(field, first):
         return Finding("consistent", "", stated, stated)
-    return Finding("violates", "unexplained", stated)
+    return Finding("violates", "not-searched", stated)
 
 
 def explained(field: Field) -> Finding:

@@ -178,6 +178,8 @@ def test_forbidden_components_and_broken_relations_stand_with_value_and_expected
     values = np.zeros((3, 6))
     values[0, 4], values[1, 3], values[2] = 0.4, 0.3, [-0.6, -0.6, 1.1, 0.2, 0.0, 0.0]
     result = audit(Measurement("e", PIEZO, values, axes="ieee"), PointGroup.from_symbol("6mm"), explain=False)
+    assert result.cause == "not-searched"
+    assert "explanations were not searched for" in result.message
     (forbidden,) = result.forbidden
     assert (forbidden.component, forbidden.value, forbidden.expected) == ("34", 0.2, 0.0)
     (relation,) = result.relations
