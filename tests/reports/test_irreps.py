@@ -88,6 +88,13 @@ def test_latex_writes_labels_characters_and_elements_as_formulas() -> None:
     assert "pyroelectric = $A_{u} + ({}^{1}E_{u} + {}^{2}E_{u})$" in text
 
 
+def test_csv_has_the_real_part_before_the_imaginary_one() -> None:
+    rows = csv.DictReader(io.StringIO(render(document_of("3"), "csv")))
+    row = next(row for row in rows if (row["irrep"], row["class"]) == ("1E", "3+ [001]"))
+    assert row["character"] == "exp(2*pi*i/3)"
+    assert (float(row["real_part"]), float(row["imaginary_part"])) == pytest.approx((-0.5, 0.75**0.5))
+
+
 @pytest.mark.parametrize("format_name", ["text", "markdown"])
 def test_readable_formats_list_the_elements_of_each_class(format_name: str) -> None:
     text = render(document_of("3m"), format_name).replace("\\", "")
