@@ -189,6 +189,14 @@ def test_a_site_says_for_which_atom_its_tensors_stand(
     assert ("at the other atoms of the orbit they are turned" in text) == turned
 
 
+@pytest.mark.parametrize("format_name", ["text", "markdown", "latex"])
+def test_the_new_axes_are_the_rows_of_the_rotation(allowed: Document, format_name: str) -> None:
+    allowed["axes"]["rotation_from_file"] = [[0.0, 1.0, 0.0], [0.0, 0.0, 1.0], [1.0, 0.0, 0.0]]
+    text = " ".join(render(allowed, format_name).split())
+    for name, row in (("x", "0.000000 1.000000 0.000000"), ("z", "1.000000 0.000000 0.000000")):
+        assert f"{name} = ( {row})" in text
+
+
 def test_csv_says_of_every_row_what_its_number_stands_on(allowed: Document) -> None:
     allowed["site"] = SITE
     allowed["axes"]["rotation_from_file"] = [[0.0, 1.0, 0.0], [-1.0, -0.0, 0.0], [0.0, 0.0, 1.0]]
