@@ -139,13 +139,28 @@ def _allowed_entries(kind: TensorKind, group: PointGroup, key: bytes) -> Allowed
 def equivalent_axes(
     kind: TensorKind, group: PointGroup, to_standard: FloatArray
 ) -> tuple[EquivalentAxes, ...]:
-    """Turns of the axes that keep the allowed form and change the components, and the change of hand.
+    """Turns of the axes that keep the allowed form and change the components, the change of hand, and both
+    together where that reverses other components again.
 
     ``group`` in the standard orientation, to which ``to_standard`` (3, 3) takes the tensor's axes: in these
     the turns and the components are named.
     """
     entries = allowed_entries(kind, group, to_standard)
-    found = [(change, *entries.effect(change)) for change in changes(kind, group)]
+    found = [
+        EquivalentAxes(words_of(change, to_standard), *entries.effect(change))
+        for change in changes(kind, group)
+    ]
     # Reversed signs say more than a mixture, and come first.
-    found.sort(key=lambda one: one[2])
-    return tuple(EquivalentAxes(words_of(c, to_standard), flips, mixes) for c, flips, mixes in found)
+    found.sort(key=lambda axes: axes.mixes)
+    return (*found, *_with_the_other_hand(found, entries.names))
+
+
+def _with_the_other_hand(found: list[EquivalentAxes], names: tuple[str, ...]) -> Iterator[EquivalentAxes]:
+    """Turns that only reverse components together with the change of hand, where one is among those found."""
+    known = {(), *(axes.flips for axes in found)}
+    for hand in (axes for axes in found if axes.turn == OTHER_HAND):
+        for turned in (axes for axes in found if not axes.mixes and axes is not hand):
+            flips = tuple(name for name in names if (name in turned.flips) != (name in hand.flips))
+            if flips not in known:
+                known.add(flips)
+                yield EquivalentAxes(f"{turned.turn} and {OTHER_HAND}", flips, mixes=False)

@@ -13,9 +13,7 @@ from sitesym.groups import PointGroup
 Verdict: TypeAlias = Literal["consistent", "consistent-otherwise", "violates", "cannot-tell", "no-constraint"]
 VERDICTS: Final = ("consistent", "consistent-otherwise", "violates", "cannot-tell", "no-constraint")
 
-Cause: TypeAlias = Literal[
-    "", "reading", "slip", "crystal", "index-symmetry", "unexplained", "not-searched"
-]
+Cause: TypeAlias = Literal["", "reading", "slip", "crystal", "index-symmetry", "unexplained", "not-searched"]
 
 
 @dataclass(frozen=True)
@@ -138,7 +136,7 @@ class Reading:
 
 @dataclass(frozen=True)
 class EquivalentAxes:
-    """A turn of the axes that symmetry cannot detect, in the axes of the reading.
+    """A turn of the axes, a change of hand, or both, that symmetry cannot detect, in the axes of the reading.
 
     ``turn``: in words. ``flips``: independent components that change sign. ``mixes``: whether it does more to
     the components than change signs.

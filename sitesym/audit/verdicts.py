@@ -84,9 +84,7 @@ def _unstated(field: Field) -> Finding:
     return Finding(verdict, "", None, judged_reading(field, best), rivals)
 
 
-def left_open(
-    finding: Finding, measurement: Measurement, cannot_tell: tuple[Ambiguity, ...]
-) -> Finding:
+def left_open(finding: Finding, measurement: Measurement, cannot_tell: tuple[Ambiguity, ...]) -> Finding:
     """The finding; where the order or the axes were not stated and others obey as well, it cannot tell."""
     open_sorts = {"axes"} if isinstance(measurement.axes, str) and measurement.axes == "unknown" else set()
     open_sorts |= {"order"} if measurement.order is None else set()
