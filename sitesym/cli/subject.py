@@ -91,9 +91,24 @@ def subject_of(
             "give one of them",
         )
     if symbol is not None:
+        _require_no_file_options(finder, reading)
         return Subject(PointGroup.from_symbol(symbol))
     symmetry = symmetry_of_file(str(file), tolerance_angstrom, finder, ladder, reading)
     return Subject(symmetry.point_group, symmetry)
+
+
+def _require_no_file_options(finder: str, reading: ReadingChoices | None) -> None:
+    """Raises UsageError for options that a point group would ignore."""
+    given = [f"--{name.replace('_', '-')}" for name, value in (reading or {}).items() if value]
+    if finder != DEFAULT_FINDER:
+        given.append("--finder")
+    if given:
+        raise UsageError(
+            "a point group is not read from a file",
+            ", ".join(given),
+            "these options go with FILE",
+            "leave them out, or give FILE instead of --group",
+        )
 
 
 def symmetry_of_file(

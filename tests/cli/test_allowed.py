@@ -112,6 +112,8 @@ def test_a_site_has_the_tensors_of_its_own_group(document: Call, structures: str
         (["--group", "32", "--rotation", "1 0 0 0 1 0 0 0 -1"], "left-handed"),
         (["--group", "32", "--axes", "ieee", "--rotation", "1 0 0 0 1 0 0 0 1"], "--axes given"),
         (["--group", "32", "--site", "Si1"], "FILE"),
+        (["--group", "32", "--block", "one"], "--block"),
+        (["--group", "32", "--symmetry-from", "hall", "--finder", "both"], "--symmetry-from, --finder"),
         (["--group", "32", "--axes", "sideways"], "sideways"),
         (["--group", "32", "--format", "yaml"], "yaml"),
         ([], "FILE or --group"),
