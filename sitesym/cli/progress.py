@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import threading
 from collections.abc import Callable, Iterable, Iterator
+from contextlib import contextmanager
 from time import monotonic
 from typing import Final
 
@@ -22,13 +23,9 @@ def watched(rows: Iterable[Row], run: Screening, count: Callable[[], int], *, ba
 
 
 def _with_lines(rows: Iterable[Row], run: Screening) -> Iterator[Row]:
-    start = last = monotonic()
-    for row in rows:
-        yield row
-        now = monotonic()
-        if now - last >= LINE_SECONDS:
-            last = now
-            say(_state(run, now - start))
+    start = monotonic()
+    with _every(LINE_SECONDS, lambda: say(_state(run, monotonic() - start))):
+        yield from rows
 
 
 def _with_bar(rows: Iterable[Row], run: Screening, count: Callable[[], int]) -> Iterator[Row]:
@@ -36,18 +33,36 @@ def _with_bar(rows: Iterable[Row], run: Screening, count: Callable[[], int]) -> 
     from rich.progress import BarColumn, Progress, TextColumn, TimeRemainingColumn
 
     columns = (TextColumn("{task.description}"), BarColumn(), TimeRemainingColumn(elapsed_when_finished=True))
-    start = last = monotonic()
+    start = monotonic()
     with Progress(*columns, console=Console(stderr=True), transient=True) as progress:
         task = progress.add_task("starting", total=None)
         counting = threading.Thread(target=lambda: progress.update(task, total=count()), daemon=True)
         counting.start()
-        for row in rows:
-            yield row
-            now = monotonic()
-            if now - last >= BAR_SECONDS:
-                last = now
-                done = run.done + run.already_done
-                progress.update(task, completed=done, description=_state(run, now - start))
+
+        def show() -> None:
+            done = run.done + run.already_done
+            progress.update(task, completed=done, description=_state(run, monotonic() - start))
+
+        with _every(BAR_SECONDS, show):
+            yield from rows
+
+
+@contextmanager
+def _every(seconds: float, show: Callable[[], None]) -> Iterator[None]:
+    """Meanwhile show something every so often, also while no row comes: much may be done already, or hang."""
+    ended = threading.Event()
+
+    def go_on() -> None:
+        while not ended.wait(seconds):
+            show()
+
+    beside = threading.Thread(target=go_on, daemon=True)
+    beside.start()
+    try:
+        yield
+    finally:
+        ended.set()
+        beside.join()
 
 
 def _state(run: Screening, seconds: float) -> str:

@@ -6,6 +6,7 @@ import os
 import signal
 import subprocess
 import sys
+import time
 from collections.abc import Callable, Iterator
 from pathlib import Path
 
@@ -14,7 +15,7 @@ import pytest
 from sitesym.cli.output import write_pieces
 from sitesym.cli.progress import watched
 from sitesym.errors import UsageError
-from sitesym.screening import Screening, Settings, Store, Task, WorkItem
+from sitesym.screening import Row, Screening, Settings, Store, Task, WorkItem
 from sitesym.screening.failures import blank_row
 from sitesym.screening.work import content_hash
 
@@ -129,12 +130,18 @@ def test_a_file_on_a_full_disk_is_named() -> None:
 def test_progress_that_nobody_can_read_does_not_end_a_run(
     monkeypatch: pytest.MonkeyPatch, capfd: pytest.CaptureFixture[str]
 ) -> None:
-    monkeypatch.setattr("sitesym.cli.progress.LINE_SECONDS", 0.0)
+    """It is shown while no row comes, too: the first takes long."""
+    monkeypatch.setattr("sitesym.cli.progress.LINE_SECONDS", 0.01)
     run = Screening(Task(Settings(), 1.0, 1.0), lambda task: None)  # type: ignore[arg-type, return-value]
-    rows = [{"id": number} for number in range(3)]
-    read: Callable[[], list[object]] = lambda: list(watched(iter(rows), run, lambda: 0, bar=False))  # noqa: E731
+    rows: list[Row] = [{"id": number} for number in range(3)]
+
+    def slow() -> Iterator[Row]:
+        time.sleep(0.2)
+        yield from rows
+
+    read: Callable[[], list[object]] = lambda: list(watched(slow(), run, lambda: 0, bar=False))  # noqa: E731
     assert read() == rows
-    assert len(capfd.readouterr().err.splitlines()) == 3
+    assert "0 done, 0 failed" in capfd.readouterr().err.splitlines()[0]
     with open("/dev/full", "w", encoding="utf-8") as full:
         kept = os.dup(2)
         os.dup2(full.fileno(), 2)

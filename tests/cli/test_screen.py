@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import os
+import shutil
 import signal
 import subprocess
 import sys
@@ -39,7 +40,7 @@ def test_a_second_run_finds_everything_done(run: Run, lines: Path, tmp_path: Pat
     assert "101 structures (100 ok, 1 error)" in first.stdout
     assert "salt 100: the POSCAR ends before its atoms" in first.stdout
     second = run("screen", str(lines), "--store", str(tmp_path / "store"), *FAST, "--format", "jsonl")
-    assert "101 done before, 0 now" in second.stderr
+    assert second.stderr.rstrip().endswith("101 done before, 0 now")
     rows = [json.loads(line) for line in second.stdout.splitlines()]
     assert [row["id"] for row in rows] == [f"salt {number}" for number in range(101)]
 
@@ -50,6 +51,47 @@ def test_a_store_in_use_and_one_that_is_none_end_with_code_3(run: Run, lines: Pa
     assert (busy.exit_code, "another run is writing to the store" in busy.stderr) == (3, True)
     foreign = run("screen", str(lines), "--store", str(lines), *FAST)
     assert (foreign.exit_code, "file is not a database" in foreign.stderr) == (3, True)
+
+
+def test_a_file_that_holds_fewer_structures_leaves_no_old_rows(run: Run, lines: Path, tmp_path: Path) -> None:
+    store = ("--store", str(tmp_path / "store"), *FAST)
+    run("screen", str(lines), *store)
+    lines.write_text(
+        "".join(lines.read_text(encoding="utf-8").splitlines(keepends=True)[:7]), encoding="utf-8"
+    )
+    again = run("screen", str(lines), *store, "--format", "jsonl")
+    assert len(again.stdout.splitlines()) == 7
+
+
+def test_rows_of_other_settings_are_pointed_out(run: Run, lines: Path, tmp_path: Path) -> None:
+    store = ("--store", str(tmp_path / "store"), *FAST)
+    run("screen", str(lines), *store)
+    shutil.copy(lines, tmp_path / "other.jsonl")
+    both = run("screen", str(tmp_path / "other.jsonl"), *store, "--tolerance", "0.1", "--format", "csv")
+    assert "rows were made with 2 different settings" in both.stderr
+
+
+@pytest.mark.parametrize(
+    ("options", "said"),
+    [
+        (("--format", "parquet"), "add --output"),
+        (("--format", "parquet", "--store", "store"), "add --output"),
+        (("--store", "store", "--output", "rows.csv"), "add --format"),
+        (("--format", "json", "--output", "nowhere/rows.json"), "cannot be written"),
+    ],
+)
+def test_rows_that_cannot_be_written_stop_the_run_before_it_begins(
+    run: Run,
+    lines: Path,
+    tmp_path: Path,
+    monkeypatch: pytest.MonkeyPatch,
+    options: tuple[str, ...],
+    said: str,
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    result = run("screen", str(lines), *FAST, *options)
+    assert (result.exit_code, said in result.stderr) == (2, True), result.stderr
+    assert not (tmp_path / "store").exists()
 
 
 def test_a_signal_leaves_a_store_that_resumes(run: Run, lines: Path, tmp_path: Path) -> None:

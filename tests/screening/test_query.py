@@ -75,6 +75,7 @@ def test_order_puts_missing_values_last_and_keeps_the_stored_order_of_equals(fou
     assert found("status != ok", sort=("atoms",)) == ["broken"]
     assert found("polar = no", sort=("polar", "atoms:desc")) == ["triclinic", "quartz", "salt"]
     assert found(sort=("seconds:desc",), limit=2) == ["triclinic", "zincite"]
+    assert found(sort=("seconds:desc",), limit=10**30) == found(sort=("seconds:desc",))
     assert found("status ~ o", sort=("point_group:asc",))[:4] == ["triclinic", "quartz", "zincite", "salt"]
     assert found(sort=("atoms:desc",))[-1] == "broken"
 

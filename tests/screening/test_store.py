@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import sqlite3
 from collections.abc import Iterator
 from pathlib import Path
@@ -207,3 +208,70 @@ def test_a_store_that_is_not_there_is_said_to_be_missing_and_is_not_made(path: P
     with pytest.raises(StoreError, match="there is no such store"):
         Store.reading(path)
     assert not path.exists()
+
+
+@pytest.mark.parametrize("name", ["undecodable \udcff", "a ?x=1#y %20 b", ":memory:", "file:x?mode=memory"])
+def test_any_file_name_is_that_of_a_file(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, name: str) -> None:
+    monkeypatch.chdir(tmp_path)
+    unit = item("line 1")
+    with Store.writing(name, SETTINGS) as store:
+        put(store, unit)
+    assert (tmp_path / name).is_file()
+    assert stored(Path(name)) == [row(unit)]
+
+
+def test_no_name_is_no_store(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    (tmp_path / "here").mkdir()
+    monkeypatch.chdir(tmp_path / "here")
+    with pytest.raises(StoreError):
+        Store.writing("", SETTINGS)
+
+
+def test_a_link_leads_to_the_same_lock(path: Path, tmp_path: Path) -> None:
+    (tmp_path / "link").symlink_to(path)
+    with Store.writing(path, SETTINGS), pytest.raises(StoreError, match="another run is writing"):
+        Store.writing(tmp_path / "link", SETTINGS)
+
+
+def test_a_store_in_a_folder_that_is_read_only_is_read(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Those who run the tests may be allowed everything: what the system says is put in its place."""
+    unit = item("line 1")
+    with Store.writing(path, SETTINGS) as store:
+        put(store, unit)
+    before = set(path.parent.iterdir())
+    monkeypatch.setattr(os, "access", lambda place, mode: not mode & os.W_OK)
+    with Store.reading(path) as store:
+        assert list(store.rows()) == [row(unit)]
+        assert set(path.parent.iterdir()) == before
+
+
+def test_a_source_that_is_read_again_loses_what_it_no_longer_holds(path: Path) -> None:
+    """One frame that became two, a list that became shorter; a file that was not named keeps its rows."""
+
+    def run(*units: WorkItem) -> list[tuple[object, object]]:
+        with Store.writing(path, SETTINGS) as store:
+            for unit in units:
+                if not store.holds(unit):
+                    put(store, unit)
+            store.drop_unseen()
+        return [(row["source"], row["frame"]) for row in stored(path)]
+
+    whole, one, two = (WorkItem.of_text("/x", frame, "x", "content", "vasp") for frame in ("", "one", "two"))
+    other = WorkItem.of_text("/y", "", "y", "content", "vasp")
+    assert run(whole, other) == [("/x", ""), ("/y", "")]
+    assert run(one, two) == [("/x", "one"), ("/x", "two"), ("/y", "")]
+    assert run(two) == [("/x", "two"), ("/y", "")]
+    assert run(other) == [("/x", "two"), ("/y", "")]
+
+
+def test_an_archive_that_is_whole_again_loses_its_error(path: Path) -> None:
+    member = WorkItem.of_text("/a.zip!x.cif", "member 1", "x.cif", "content", "cif")
+    cut = WorkItem.of_error("/a.zip", "after member 1", "a.zip", StoreError("cut", "", "", ""))
+    elsewhere = WorkItem.of_error("/b.zip", "after member 1", "b.zip", StoreError("cut", "", "", ""))
+    for units, wanted in (((member, cut, elsewhere), 3), ((member,), 2)):
+        with Store.writing(path, SETTINGS) as store:
+            for unit in units:
+                put(store, unit)
+            store.drop_unseen()
+        assert len(stored(path)) == wanted
+    assert [row["source"] for row in stored(path)] == ["/a.zip!x.cif", "/b.zip"]

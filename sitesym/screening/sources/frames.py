@@ -50,16 +50,17 @@ def _frames(stream: IO[bytes], path: str) -> Iterator[bytes | SitesymError]:
 
 
 def _frame(stream: IO[bytes], head: bytes, path: str) -> bytes | SitesymError:
-    lines, size, wanted = [head], len(head), int(head.strip()[:12]) + 2
-    while len(lines) < wanted:
+    # One text that grows: of a hostile file with tiny lines a list of them would be ten times as large.
+    text, lines, wanted = bytearray(head), 1, int(head.strip()[:12]) + 2
+    while lines < wanted:
         line = stream.readline(LARGEST_ENTRY_BYTES)
-        size += len(line)
-        if size > LARGEST_ENTRY_BYTES:
-            return too_large_entry("the frame", size, path)
+        if len(text) + len(line) > LARGEST_ENTRY_BYTES:
+            return too_large_entry("the frame", len(text) + len(line), path)
         if not line:
-            return _broken(f"the file ends after {len(lines)} of {wanted} lines of a frame", path)
-        lines.append(line)
-    return b"".join(lines)
+            return _broken(f"the file ends after {lines} of {wanted} lines of a frame", path)
+        text += line
+        lines += 1
+    return bytes(text)
 
 
 def _broken(value: str, path: str) -> CountMismatchError:

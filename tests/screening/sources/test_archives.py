@@ -166,3 +166,14 @@ def test_memory_does_not_grow_with_the_members_of_a_tar(tmp_path: Path) -> None:
         return size
 
     assert peak(600) < peak(200) + 100_000
+
+
+def test_a_database_in_an_archive_says_what_to_do(tmp_path: Path) -> None:
+    with zipfile.ZipFile(tmp_path / "a.zip", "w") as archive:
+        archive.writestr("rows.db", b"SQLite format 3\0")
+    (item,) = work_items([tmp_path / "a.zip"])
+    assert item.error is not None
+    assert (item.error.what, item.error.next_step) == (
+        "a database inside an archive is not read",
+        "take it out and name it",
+    )

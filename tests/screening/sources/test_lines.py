@@ -98,3 +98,17 @@ def test_a_list_is_of_paths_relative_to_itself(tmp_path: Path, in_short: InShort
         ("a b.cif", "path", ""),
     ]
     assert Path(items[1].source) == tmp_path / "c.cif"
+
+
+def test_a_list_may_begin_with_the_mark_of_utf_8_and_a_line_with_nul_is_an_error(
+    tmp_path: Path, in_short: InShort
+) -> None:
+    (tmp_path / "a.cif").write_text("")
+    (tmp_path / "list.txt").write_bytes(b"\xef\xbb\xbfa.cif\r\nb\0c.cif\na.cif\n")
+    items = list(work_items([tmp_path / "list.txt"]))
+    assert in_short(items) == [
+        ("a.cif", "path", ""),
+        ("list.txt#2", "error", "unreadable"),
+        ("a.cif", "path", ""),
+    ]
+    assert Path(items[0].source) == tmp_path / "a.cif"
