@@ -138,8 +138,9 @@ def command(
 
     With --store, rows are kept in FILE as they come. A run that was stopped goes on there; only what is new
     or has changed (content, settings, versions) is done again. At its end, rows of what a file no longer
-    holds are dropped; those of files that are gone or not named stay. Rows are read with `sitesym table FILE`, or
-    with --format. Formats csv and jsonl are written row by row; the others hold all rows in memory.
+    holds are dropped; those of files that are gone or not named stay. Rows are read with `sitesym table
+    FILE`, or with --format. Formats csv and jsonl are written row by row, parquet in groups of rows; the
+    others hold all rows in memory.
     """
     settings = Settings(
         tolerance_angstrom,
