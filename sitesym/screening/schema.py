@@ -46,6 +46,29 @@ STEPS: Final = (_first_version(),)
 VERSION: Final = len(STEPS)
 
 
+#: The units of one run, written by it or found done; it goes with the connection.
+SEEN: Final = "CREATE TEMP TABLE seen (item INTEGER PRIMARY KEY)"
+
+#: Sources some of whose units were seen lose the others. That an archive breaks off is a unit of the archive
+#: itself, whose members have sources of their own: after its path an exclamation mark, before '"' in ASCII.
+DROP_UNSEEN: Final = """
+    CREATE TEMP TABLE stale AS
+        WITH unseen AS (SELECT id, source, frame FROM items WHERE id NOT IN (SELECT item FROM seen)),
+            read AS (
+                SELECT source FROM (SELECT DISTINCT source FROM unseen) AS some WHERE EXISTS (
+                    SELECT 1 FROM items
+                    WHERE items.source = some.source AND id IN (SELECT item FROM seen)))
+        SELECT id FROM unseen WHERE source IN (SELECT source FROM read)
+            OR frame LIKE 'after member %' AND EXISTS (
+                SELECT 1 FROM items
+                WHERE items.source > unseen.source || '!' AND items.source < unseen.source || '"'
+                    AND id IN (SELECT item FROM seen));
+    DELETE FROM structures WHERE item IN (SELECT id FROM stale);
+    DELETE FROM items WHERE id IN (SELECT id FROM stale);
+    DROP TABLE stale;
+"""
+
+
 def migrate(connection: sqlite3.Connection) -> None:
     """Bring a new or older store, as `check_version` allows, to `VERSION`: all steps or none."""
     version = connection.execute("PRAGMA user_version").fetchone()[0]

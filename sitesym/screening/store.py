@@ -20,7 +20,14 @@ from urllib.parse import quote
 from sitesym.errors import StoreError
 from sitesym.screening.columns import Column, Row
 from sitesym.screening.lock import WriterLock
-from sitesym.screening.schema import add_columns, check_version, columns_in, migrate
+from sitesym.screening.schema import (
+    DROP_UNSEEN,
+    SEEN,
+    add_columns,
+    check_version,
+    columns_in,
+    migrate,
+)
 from sitesym.screening.settings import Settings
 from sitesym.screening.work import WorkItem, content_hash, storable
 
@@ -34,27 +41,8 @@ UNSETTLED: Final = frozenset({"crashed", "timed-out", "out-of-memory"})
 #: Order of rows: by source, its units by number, the structures of a unit as they stand in it.
 ORDER: Final = "source, length(item_frame), item_frame, part"
 
-#: A unit of this run: written by it, or found done.
-_SEE: Final = "INSERT OR IGNORE INTO seen VALUES (?)"
-
-# Sources some of whose units were seen lose the others. That an archive breaks off is a unit of the archive
-# itself, whose members have sources of their own: after its path an exclamation mark, before '"' in ASCII.
-_DROP_UNSEEN: Final = """
-    CREATE TEMP TABLE stale AS
-        WITH unseen AS (SELECT id, source, frame FROM items WHERE id NOT IN (SELECT item FROM seen)),
-            read AS (
-                SELECT source FROM (SELECT DISTINCT source FROM unseen) AS some WHERE EXISTS (
-                    SELECT 1 FROM items
-                    WHERE items.source = some.source AND id IN (SELECT item FROM seen)))
-        SELECT id FROM unseen WHERE source IN (SELECT source FROM read)
-            OR frame LIKE 'after member %' AND EXISTS (
-                SELECT 1 FROM items
-                WHERE items.source > unseen.source || '!' AND items.source < unseen.source || '"'
-                    AND id IN (SELECT item FROM seen));
-    DELETE FROM structures WHERE item IN (SELECT id FROM stale);
-    DELETE FROM items WHERE id IN (SELECT id FROM stale);
-    DROP TABLE stale;
-"""
+#: So many units of a run are noted in one go.
+SEEN_UNITS: Final = 1000
 
 
 class Store:
@@ -66,6 +54,7 @@ class Store:
         self._lock = lock
         self._settings = 0
         self._pending = 0
+        self._seen: list[tuple[int]] = []
         self._since = monotonic()
 
     @classmethod
@@ -131,8 +120,7 @@ class Store:
         ).fetchone()
         if known is None or (retry and known[1] in UNSETTLED) or known[0] != content_hash(item):
             return False
-        with _store_errors(self.path):
-            self._connection.execute(_SEE, (known[2],))
+        self._see(known[2])
         return True
 
     def put(self, item: WorkItem, digest: str, rows: Sequence[Row]) -> None:
@@ -151,7 +139,7 @@ class Store:
                 " settings = excluded.settings, status = excluded.status RETURNING id",
                 (*key, digest, self._settings, statuses[0] if statuses else "ok"),
             ).fetchone()
-            self._connection.execute(_SEE, (number,))
+            self._see(number)
             self._connection.execute("DELETE FROM structures WHERE item = ?", (number,))
             self._connection.executemany(
                 self._insert, ([number, part, *_values(row)] for part, row in enumerate(rows))
@@ -165,9 +153,10 @@ class Store:
 
         A file that is gone, or was not named, keeps its rows. Raises StoreError.
         """
+        self._remember_seen()
         self.commit()
         with _store_errors(self.path):
-            self._connection.executescript(f"BEGIN IMMEDIATE; {_DROP_UNSEEN} COMMIT;")
+            self._connection.executescript(f"BEGIN IMMEDIATE; {DROP_UNSEEN} COMMIT;")
 
     def commit(self) -> None:
         """Make permanent what was written. Raises StoreError."""
@@ -200,12 +189,25 @@ class Store:
                 self._lock.release()
                 self._lock = None
 
+    def _see(self, number: int) -> None:
+        """Note a unit of this run, written by it or found done."""
+        self._seen.append((number,))
+        if len(self._seen) >= SEEN_UNITS:
+            self._remember_seen()
+
+    def _remember_seen(self) -> None:
+        with _store_errors(self.path):
+            self._connection.execute("SAVEPOINT seen")
+            self._connection.executemany("INSERT OR IGNORE INTO seen VALUES (?)", self._seen)
+            self._connection.execute("RELEASE seen")
+        self._seen.clear()
+
     def _prepare(self, settings: Settings) -> None:
         connection = self._connection
         check_version(connection, self.path)
         connection.execute("PRAGMA journal_mode = WAL")
         connection.execute("PRAGMA synchronous = NORMAL")
-        connection.execute("CREATE TEMP TABLE seen (item INTEGER PRIMARY KEY)")
+        connection.execute(SEEN)
         migrate(connection)
         connection.execute("BEGIN IMMEDIATE")
         add_columns(connection, settings.columns)
