@@ -6,6 +6,7 @@
     ├── ReadingError             a file that cannot be turned into a crystal
     │   ├── UnknownFormatError
     │   ├── FileTooLargeError
+    │   ├── BrokenSourceError
     │   ├── UnsafePathError
     │   ├── EmptyStructureError
     │   ├── CountMismatchError
@@ -87,6 +88,10 @@ class UnknownFormatError(ReadingError):
     """A file whose format is not known, or that does not say what it must (a POSCAR without symbols)."""
 
     code = "unknown-format"
+
+
+class BrokenSourceError(ReadingError):
+    """A file, an archive or a database that cannot be read to its end; what lies beyond is not known."""
 
 
 class FileTooLargeError(ReadingError):

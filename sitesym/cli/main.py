@@ -6,6 +6,7 @@ Exit codes: 0 done; 1 the answer to a yes-or-no question is no; 2 usage; 3 input
 from __future__ import annotations
 
 import importlib
+import signal
 from typing import Any, Final
 
 import click
@@ -15,6 +16,7 @@ from sitesym.errors import SitesymError, UsageError
 
 EXIT_USAGE: Final = 2
 EXIT_INPUT: Final = 3
+EXIT_INTERRUPTED: Final = 128 + signal.SIGINT
 
 #: Name of each subcommand and what it does; its module is sitesym.cli.<name>.
 COMMANDS: Final = {
@@ -48,9 +50,12 @@ class CommandTable(click.Group):
             formatter.write_dl(list(COMMANDS.items()))
 
     def invoke(self, ctx: click.Context) -> Any:
-        """Run the subcommand; errors of sitesym go to standard error, without a traceback."""
+        """Run the subcommand; errors of sitesym and Ctrl-C go to standard error, without a traceback."""
         try:
             return super().invoke(ctx)
+        except (KeyboardInterrupt, click.Abort):
+            click.echo("stopped by SIGINT", err=True)
+            ctx.exit(EXIT_INTERRUPTED)
         except SitesymError as error:
             click.echo(f"error: {error}", err=True)
             ctx.exit(EXIT_USAGE if isinstance(error, UsageError) else EXIT_INPUT)
@@ -63,5 +68,5 @@ class CommandTable(click.Group):
 def main() -> None:
     """From a crystal structure file to its site symmetries, irreps and allowed tensor components.
 
-    Exit codes: 0 done; 1 the answer is no; 2 usage; 3 input not readable or not valid.
+    Exit codes: 0 done; 1 the answer is no; 2 usage; 3 input not readable or not valid; 130 Ctrl-C.
     """

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import importlib
 import os
+import re
 from collections import deque
 from collections.abc import Iterator
 from time import monotonic
@@ -34,6 +35,8 @@ BATCHES_AT_LEAST: Final = 4
 WINDOW: Final = 50_000
 
 _CONNECT_SECONDS: Final = 30
+#: Protocol, host and port of a scheduler; without a protocol it is TCP.
+_ADDRESS: Final = re.compile(r"([a-z]+://)?\S+:\d+")
 #: For how long the number of threads is taken for true.
 _FRESH_SECONDS: Final = 2.0
 
@@ -183,7 +186,8 @@ class ClusterPool:
                 # The client would wait for the file for ever.
                 os.stat(self._address)
             return self._dask.Client(**where, timeout=_CONNECT_SECONDS, set_as_default=False)
-        except (OSError, ValueError) as error:
+        except (OSError, ValueError, AssertionError, KeyError, TypeError) as error:
+            # The last three come of a file that no scheduler has written.
             raise ScreeningError(
                 "the scheduler of the cluster does not answer",
                 f"{self._address}: {error}",
@@ -193,9 +197,16 @@ class ClusterPool:
 
 
 def _local_workers(address: str) -> int:
-    """N of local:N, 0 for the address of a scheduler. Raises UsageError."""
+    """N of local:N, 0 for the address of a scheduler. Raises UsageError for what is neither."""
     kind, _, number = address.partition(":")
     if kind != "local":
+        if not (address.endswith(".json") or _ADDRESS.fullmatch(address)):
+            raise UsageError(
+                "the address of the cluster is not understood",
+                address,
+                "tcp://host:port, the scheduler file (.json) it wrote, or local:N",
+                "write for example --cluster tcp://host:8786",
+            )
         return 0
     if not number.isdecimal() or int(number) < 1:
         raise UsageError(

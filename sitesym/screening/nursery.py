@@ -90,9 +90,17 @@ class Nursery:
         except subprocess.TimeoutExpired:
             self._process.kill()
             code = self._process.wait()
+        said = last_words(self._words.fileno()) or f"exit code {code}"
+        if self._ready:
+            return ScreeningError(
+                "the process that makes the workers has ended",
+                said,
+                "it lives as long as the run",
+                "look for what has ended it (memory?), then run again: a store goes on where it was",
+            )
         return ScreeningError(
             "worker processes cannot be started",
-            last_words(self._words.fileno()) or f"exit code {code}",
+            said,
             "workers run the same Python with the same packages",
             "look at the message; it is the end of what the process wrote",
         )

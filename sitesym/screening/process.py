@@ -6,6 +6,7 @@ import os
 import signal
 import tempfile
 from collections import deque
+from contextlib import suppress
 from multiprocessing import Pipe
 from typing import Final
 
@@ -27,8 +28,7 @@ class WorkerProcess:
         self._task = task
         self._nursery = nursery
         self.connection, other = Pipe()
-        # Appending, so that the worker may cut the file and go on writing at its start.
-        self._words = tempfile.TemporaryFile(mode="ab+")  # noqa: SIM115  closed in `end`
+        self._words = tempfile.TemporaryFile()  # noqa: SIM115  closed in `end`
         self._number: int | None = None
         try:
             self._number = nursery.worker(other, self._words.fileno())
@@ -55,10 +55,11 @@ class WorkerProcess:
         return answer
 
     def end(self) -> None:
-        """End the process now, whatever it does."""
+        """End the process now, whatever it does, also where what has made it is gone."""
         if self._number is not None:
-            os.kill(self._number, signal.SIGKILL)
-            self._exit_code()
+            with suppress(ProcessLookupError, ScreeningError):
+                os.kill(self._number, signal.SIGKILL)
+                self._exit_code()
         self.connection.close()
         self._words.close()
 

@@ -46,18 +46,20 @@ STEPS: Final = (_first_version(),)
 VERSION: Final = len(STEPS)
 
 
-#: The units of one run, written by it or found done; it goes with the connection.
-SEEN: Final = "CREATE TEMP TABLE seen (item INTEGER PRIMARY KEY)"
+#: The units of one run, written by it or found done, and whether the source could not be read beyond one; it
+#: goes with the connection.
+SEEN: Final = "CREATE TEMP TABLE seen (item INTEGER PRIMARY KEY, breaks_off INTEGER NOT NULL)"
 
-#: Sources some of whose units were seen lose the others. That an archive breaks off is a unit of the archive
-#: itself, whose members have sources of their own: after its path an exclamation mark, before '"' in ASCII.
+#: Sources some of whose units were seen lose the others, unless they broke off. That an archive breaks off is
+#: a unit of the archive itself, whose members have sources of their own: after its path an exclamation mark,
+#: before '"' in ASCII.
 DROP_UNSEEN: Final = """
     CREATE TEMP TABLE stale AS
         WITH unseen AS (SELECT id, source, frame FROM items WHERE id NOT IN (SELECT item FROM seen)),
             read AS (
-                SELECT source FROM (SELECT DISTINCT source FROM unseen) AS some WHERE EXISTS (
-                    SELECT 1 FROM items
-                    WHERE items.source = some.source AND id IN (SELECT item FROM seen)))
+                SELECT items.source FROM items JOIN seen ON seen.item = items.id
+                WHERE items.source IN (SELECT source FROM unseen)
+                GROUP BY items.source HAVING max(seen.breaks_off) = 0)
         SELECT id FROM unseen WHERE source IN (SELECT source FROM read)
             OR frame LIKE 'after member %' AND EXISTS (
                 SELECT 1 FROM items

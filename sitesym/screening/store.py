@@ -17,7 +17,7 @@ from types import TracebackType
 from typing import Any, Final
 from urllib.parse import quote
 
-from sitesym.errors import StoreError
+from sitesym.errors import BrokenSourceError, StoreError
 from sitesym.screening.columns import Column, Row
 from sitesym.screening.lock import WriterLock
 from sitesym.screening.schema import (
@@ -54,7 +54,7 @@ class Store:
         self._lock = lock
         self._settings = 0
         self._pending = 0
-        self._seen: list[tuple[int]] = []
+        self._seen: list[tuple[int, bool]] = []
         self._since = monotonic()
 
     @classmethod
@@ -120,7 +120,7 @@ class Store:
         ).fetchone()
         if known is None or (retry and known[1] in UNSETTLED) or known[0] != content_hash(item):
             return False
-        self._see(known[2])
+        self._see(known[2], item)
         return True
 
     def put(self, item: WorkItem, digest: str, rows: Sequence[Row]) -> None:
@@ -139,7 +139,7 @@ class Store:
                 " settings = excluded.settings, status = excluded.status RETURNING id",
                 (*key, digest, self._settings, statuses[0] if statuses else "ok"),
             ).fetchone()
-            self._see(number)
+            self._see(number, item)
             self._connection.execute("DELETE FROM structures WHERE item = ?", (number,))
             self._connection.executemany(
                 self._insert, ([number, part, *_values(row)] for part, row in enumerate(rows))
@@ -151,7 +151,7 @@ class Store:
     def drop_unseen(self) -> None:
         """After all items: drop rows of what the sources of this run no longer hold, as lines cut off a file.
 
-        A file that is gone, or was not named, keeps its rows. Raises StoreError.
+        A file that is gone, was not named, or could not be read to its end keeps its rows. Raises StoreError.
         """
         self._remember_seen()
         self.commit()
@@ -189,16 +189,16 @@ class Store:
                 self._lock.release()
                 self._lock = None
 
-    def _see(self, number: int) -> None:
+    def _see(self, number: int, item: WorkItem) -> None:
         """Note a unit of this run, written by it or found done."""
-        self._seen.append((number,))
+        self._seen.append((number, isinstance(item.error, BrokenSourceError)))
         if len(self._seen) >= SEEN_UNITS:
             self._remember_seen()
 
     def _remember_seen(self) -> None:
         with _store_errors(self.path):
             self._connection.execute("SAVEPOINT seen")
-            self._connection.executemany("INSERT OR IGNORE INTO seen VALUES (?)", self._seen)
+            self._connection.executemany("INSERT OR IGNORE INTO seen VALUES (?, ?)", self._seen)
             self._connection.execute("RELEASE seen")
         self._seen.clear()
 

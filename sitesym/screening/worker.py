@@ -137,6 +137,8 @@ def _words() -> str:
         return ""
     words = os.pread(2, MOST_WORDS, 0)
     os.ftruncate(2, 0)
+    # What is written next begins where the file is at, which is after what has been cut.
+    os.lseek(2, 0, os.SEEK_SET)
     text = " ".join(words.decode("utf-8", errors="replace").split())
     return f"standard error: {text}" if text else ""
 

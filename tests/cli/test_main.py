@@ -79,3 +79,13 @@ def test_standard_output_that_takes_nothing_is_an_error_and_no_answer() -> None:
     assert run.returncode == 2
     assert "the output cannot be written" in run.stderr
     assert "Traceback" not in run.stderr
+
+
+def test_an_interruption_ends_with_the_code_of_its_signal(monkeypatch: pytest.MonkeyPatch) -> None:
+    def interrupted(*_: object) -> None:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr("sitesym.cli.output.write_pieces", interrupted)
+    result = CliRunner().invoke(main, ["conventions"])
+    assert result.exit_code == 130
+    assert result.stderr == "stopped by SIGINT\n"

@@ -134,6 +134,22 @@ def test_a_batch_is_answered_in_its_order_by_a_process_that_stays_warm(lines: Pa
         end_run("run")
 
 
+@pytest.mark.parametrize("address", ["nonsense", "tcp://host", "", "host:port"])
+def test_an_address_without_a_port_is_refused(address: str) -> None:
+    pytest.importorskip("distributed", reason="Dask is an extra")
+    with pytest.raises(UsageError, match="host:port"):
+        ClusterPool(TASK, address)
+
+
+@pytest.mark.parametrize("content", ["{}", "xx", '{"address": 1}'])
+def test_a_file_that_no_scheduler_wrote_is_an_error(tmp_path: Path, content: str) -> None:
+    pytest.importorskip("distributed", reason="Dask is an extra")
+    path = tmp_path / "scheduler.json"
+    path.write_text(content)
+    with pytest.raises(ScreeningError, match="does not answer"), ClusterPool(TASK, str(path)):
+        pass
+
+
 @pytest.mark.parametrize("address", ["local:0", "local:many", "local:"])
 def test_a_local_cluster_of_no_workers_is_refused(address: str) -> None:
     pytest.importorskip("distributed", reason="Dask is an extra")
@@ -141,7 +157,7 @@ def test_a_local_cluster_of_no_workers_is_refused(address: str) -> None:
         ClusterPool(TASK, address)
 
 
-@pytest.mark.parametrize("address", ["nowhere", "tcp://127.0.0.1:9", "missing.json"])
+@pytest.mark.parametrize("address", ["127.0.0.1:9", "tcp://127.0.0.1:9", "missing.json"])
 def test_a_scheduler_that_does_not_answer_is_an_error(address: str, monkeypatch: pytest.MonkeyPatch) -> None:
     pytest.importorskip("distributed", reason="Dask is an extra")
     monkeypatch.setattr(cluster, "_CONNECT_SECONDS", 1)

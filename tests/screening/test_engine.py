@@ -151,11 +151,21 @@ def test_words_of_native_code_are_in_the_remarks_of_their_row_alone(tmp_path: Pa
     (tmp_path / "a.vasp").write_text(salt_text())
     (tmp_path / "b.vasp").write_text("whisper")
     (tmp_path / "b.good").write_text(salt_text())
-    (tmp_path / "c.vasp").write_text(salt_text())
+    (tmp_path / "c.vasp").write_text("whisper")
+    (tmp_path / "c.good").write_text(salt_text())
+    (tmp_path / "d.vasp").write_text(salt_text())
     found = poisoned(tmp_path, workers=1)
-    assert [found[name]["remarks"] for name in sorted(found)] == [
-        None, "standard error: native code: a warning", None,
-    ]  # fmt: skip
+    said = "standard error: native code: a warning"
+    assert [found[name]["remarks"] for name in sorted(found)] == [None, said, said, None]
+
+
+def test_a_run_ends_though_what_makes_its_workers_is_gone(folder: Path) -> None:
+    pool = Pool(Task(FAST, 60.0, 1000.0), 1)
+    with Screening(pool.task, lambda _: pool) as run:
+        rows = run.rows(work_items([folder]))
+        assert next(rows)["id"] == "deep/AlN.extxyz"
+        os.kill(pool._nursery._process.pid, signal.SIGKILL)
+        assert len(list(rows)) == 4
 
 
 def test_hostile_names_are_kept_as_text(tmp_path: Path) -> None:

@@ -9,7 +9,7 @@ from pathlib import Path
 
 import pytest
 
-from sitesym.errors import StoreError
+from sitesym.errors import BrokenSourceError, StoreError
 from sitesym.screening import Row, Settings, Store, WorkItem, columns_for
 from sitesym.screening.failures import blank_row
 from sitesym.screening.schema import APPLICATION_ID, VERSION
@@ -275,3 +275,14 @@ def test_an_archive_that_is_whole_again_loses_its_error(path: Path) -> None:
             store.drop_unseen()
         assert len(stored(path)) == wanted
     assert [row["source"] for row in stored(path)] == ["/a.zip!x.cif", "/b.zip"]
+
+
+def test_a_source_that_broke_off_keeps_what_lies_beyond(path: Path) -> None:
+    lines = [item(f"line {number}") for number in (1, 2, 3)]
+    cut = WorkItem.of_error("lines", "line 2", "lines#2", BrokenSourceError("cut"))
+    for units in (lines, [lines[0], cut]):
+        with Store.writing(path, SETTINGS) as store:
+            for unit in units:
+                put(store, unit)
+            store.drop_unseen()
+    assert [row["frame"] for row in stored(path)] == ["line 1", "line 2", "line 3"]

@@ -7,7 +7,7 @@ import sqlite3
 from collections.abc import Iterator
 from typing import Any, Final
 
-from sitesym.errors import ReadingError
+from sitesym.errors import BrokenSourceError, ReadingError
 from sitesym.screening.sources.texts import storable
 from sitesym.screening.work import WorkItem
 
@@ -62,10 +62,10 @@ def _as_json(row: Any) -> str:
     return text
 
 
-def _unreadable(error: Exception, path: str) -> ReadingError:
+def _unreadable(error: Exception, path: str) -> BrokenSourceError:
     if isinstance(error, ReadingError):
-        return ReadingError(error.what, error.value, error.rule, error.next_step, storable(path))
-    return ReadingError(
+        return BrokenSourceError(error.what, error.value, error.rule, error.next_step, storable(path))
+    return BrokenSourceError(
         "the database cannot be read to its end",
         f"{type(error).__name__}: {error}",
         "an ASE database in SQLite",

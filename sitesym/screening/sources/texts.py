@@ -9,7 +9,7 @@ import zlib
 from pathlib import Path
 from typing import IO, Final
 
-from sitesym.errors import FileTooLargeError, ReadingError
+from sitesym.errors import BrokenSourceError, FileTooLargeError
 from sitesym.screening.work import storable as storable
 
 #: Limit of one entry that is held in memory: a member of an archive, a line, a frame (bytes).
@@ -29,10 +29,10 @@ def open_bytes(path: str | os.PathLike[str]) -> IO[bytes] | gzip.GzipFile:
     return lzma.open(path, "rb") if suffix == ".xz" else open(path, "rb")
 
 
-def broken_stream(path: str | os.PathLike[str], error: BaseException) -> ReadingError:
+def broken_stream(path: str | os.PathLike[str], error: BaseException) -> BrokenSourceError:
     """A source that cannot be opened, or that ends before it should."""
     reason = error.strerror if isinstance(error, OSError) and error.strerror else str(error)
-    return ReadingError(
+    return BrokenSourceError(
         "the source cannot be read to its end",
         f"{type(error).__name__}: {reason}",
         "a complete file that may be read",
