@@ -21,6 +21,9 @@ def empty_gaps(lattice: FloatArray, positions_frac: FloatArray) -> FloatArray:
 
 def vacuum_remarks(lattice: FloatArray, positions_frac: FloatArray) -> tuple[str, ...]:
     """A warning for a cell with gaps wider than `VACUUM_GAP_ANGSTROM` along a, b or c; else nothing."""
+    # No gap is wider than the period across its planes, and most cells are small.
+    if plane_spacings(lattice).max() <= VACUUM_GAP_ANGSTROM:
+        return ()
     gaps = empty_gaps(lattice, positions_frac)
     wide = np.flatnonzero(gaps > VACUUM_GAP_ANGSTROM)
     if not len(wide):
