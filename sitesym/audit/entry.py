@@ -3,18 +3,20 @@
 from __future__ import annotations
 
 import os
+from collections.abc import Sequence
 from typing import TypeAlias
 
 import numpy as np
 from numpy.typing import ArrayLike
 
+from sitesym.arrays import FloatArray
 from sitesym.audit.auditing import DEFAULT_NOISE, audit
 from sitesym.audit.crystal_references import CrystalReference, CrystalShelf
 from sitesym.audit.frames import Subject
 from sitesym.audit.measurement import Measurement
-from sitesym.audit.records import stated_order
+from sitesym.audit.records import proper_axes, stated_order
 from sitesym.audit.result import AuditResult
-from sitesym.errors import UsageError
+from sitesym.errors import TensorInputError, UsageError
 from sitesym.tensors import TensorKind, kind
 from sitesym.tolerances import DEFAULT_TOLERANCE_ANGSTROM
 
@@ -28,7 +30,7 @@ def audit_tensor(
     quantity: str | TensorKind | None = None,
     *,
     axes: str | ArrayLike = "unknown",
-    order: str = "unknown",
+    order: str | Sequence[str] = "unknown",
     unit: str = "unknown",
     sigma: ArrayLike | None = None,
     noise: float = DEFAULT_NOISE,
@@ -63,18 +65,36 @@ def audit_tensor(
             "a quantity goes with an array",
             "name it, for example quantity='piezoelectric-stress'",
         )
-    values = np.asarray(tensor, dtype=np.float64)
+    values = _numbers(tensor, "the tensor")
     tensor_kind = kind(quantity) if isinstance(quantity, str) else quantity
     measurement = Measurement(
         "tensor",
         tensor_kind,
         values,
-        order=stated_order(tensor_kind, order, values.shape),
-        axes=axes if isinstance(axes, str) else np.asarray(axes, dtype=np.float64),
+        order=stated_order(
+            tensor_kind, order if isinstance(order, str) else " ".join(order or ()), values.shape
+        ),
+        axes=axes.strip().lower() if isinstance(axes, str) else proper_axes(_numbers(axes, "the axes")),
         unit=unit,
-        sigma=None if sigma is None else np.asarray(sigma, dtype=np.float64),
+        sigma=None if sigma is None else _numbers(sigma, "sigma"),
     )
     return audit(measurement, subject, noise, explain)
+
+
+def _numbers(value: ArrayLike, name: str) -> FloatArray:
+    """Real numbers as an array. Raises TensorInputError for anything else."""
+    try:
+        array = np.asarray(value)
+        if not np.iscomplexobj(array):
+            return np.asarray(array, dtype=np.float64)
+    except (TypeError, ValueError):
+        pass
+    raise TensorInputError(
+        f"{name} is no array of real numbers",
+        str(value)[:60],
+        "rows of equal length, every entry a real number",
+        "give numbers, zeros too",
+    )
 
 
 def _subject(crystal: CrystalLike, tolerance_angstrom: float) -> Subject:

@@ -166,7 +166,11 @@ def _axes(fields: Fields) -> StatedAxes:
     value = fields.get("axes")
     if value is None or (isinstance(value, str) and not value.lstrip().startswith("[")):
         return str(value).strip().lower() if value else UNKNOWN
-    matrix, _ = array_given(value, "axes")
+    return proper_axes(array_given(value, "axes")[0])
+
+
+def proper_axes(matrix: FloatArray) -> FloatArray:
+    """Directions (3, 3), rows of any length, as a proper orthogonal matrix. Raises TensorInputError."""
     lengths = np.linalg.norm(matrix, axis=1) if matrix.shape == (3, 3) else np.zeros(3)
     if not np.isfinite(matrix).all() or not lengths.all():
         raise _bad_axes(f"shape {matrix.shape}" if matrix.shape != (3, 3) else str(matrix.tolist()))

@@ -6,7 +6,9 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from sitesym.audit.frames import standard_groups
 from sitesym.audit.measurement import Measurement
+from sitesym.audit.neumann import acting_group
 from sitesym.audit.orientations import stated_orientation
 from sitesym.audit.other_crystal import OtherCrystal, other_crystal, other_crystal_in_own_axes
 from sitesym.audit.result import Ambiguity, Cause, Reading, Verdict
@@ -26,10 +28,13 @@ from sitesym.audit.search import (
 )
 from sitesym.audit.slips import Repair, repairs
 from sitesym.audit.turns import smallest_turn, turn_of
+from sitesym.groups.normaliser import normalises
 
 #: A reading is preferred to a slip unless the slip is this much (in the logarithm) more likely.
 _PREFERENCE = 1.0
 _MOST_SLIPS = 6
+#: Entries of the matrices of a class that its own turn may move.
+_SAME_AXES = 1e-3
 #: Chance finds the like of such a reading less than once in 10^8 searches.
 _BEYOND_DOUBT = -20.0
 
@@ -119,11 +124,28 @@ def _explained(field: Field, fits: list[Candidate]) -> Finding:
         alike = tuple(s for s in slips[1:] if s.score <= slip_score + RIVAL)[:_MOST_SLIPS]
         return Finding("violates", "slip", None, slip, (*alike, *readings[:1]), crystal)
     turned = _turned(field)
-    if turned is not None and turned.score <= min(EARNED, crystal_score + RIVAL):
+    if turned is not None and (
+        turned.score <= min(EARNED, crystal_score + RIVAL) or _keeps_lower_class(field, turned, crystal)
+    ):
         return Finding("consistent-otherwise", "reading", None, turned, tuple(readings[:1]))
     rivals = (*readings[:1], *([turned] if turned is not None else []), *slips[:1])
     crystal = _wider(field, crystal)
     return Finding("violates", "unexplained" if crystal is None else "crystal", None, None, rivals, crystal)
+
+
+def _keeps_lower_class(field: Field, turned: Reading, crystal: OtherCrystal | None) -> bool:
+    """Whether the lower class that the tensor shows is that of the crystal seen in turned axes: a turn about
+    its main axis leaves it as it is, and in the turned axes the tensor obeys the whole class.
+    """
+    if crystal is None or not crystal.is_lower or turned.turn is None or turned.score > EARNED:
+        return False
+    kind = field.spaces.space.kind
+    lower = standard_groups().get(crystal.symbol)
+    if lower is None:
+        return False
+    ieee = field.frames.standard_from_file
+    turn = ieee @ turned.rotation.T @ field.orientations[0].rotation @ ieee.T
+    return normalises(acting_group(kind, lower), turn, _SAME_AXES)
 
 
 def _is_beyond_doubt(reading: Reading) -> bool:

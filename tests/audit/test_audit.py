@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
 import pytest
 
+import sitesym
 from sitesym import PointGroup, kind
 from sitesym.audit import Measurement, audit
 from sitesym.errors import TensorInputError, UsageError
@@ -236,3 +239,40 @@ def test_an_array_that_cannot_be_read_is_refused(values: np.ndarray, text: str) 
 def test_a_noise_that_is_no_fraction_is_refused() -> None:
     with pytest.raises(UsageError, match="noise"):
         audit(Measurement("m", PIEZO, QUARTZ_E, axes="ieee"), PointGroup.from_symbol("32"), noise=5.0)
+
+
+@pytest.mark.parametrize(
+    "wrong",
+    [
+        {"axes": [[1, 0, 0], [0.5, 1, 0], [0, 0, 1]]},
+        {"axes": [[1, 0, 0], [0, 1, 0], [0, 0, -1]]},
+        {"axes": [[1, 0], [0, 1]]},
+        {"sigma": "much"},
+        {"tensor": [[1, 2], [3]]},
+        {"tensor": [["a"] * 6] * 3},
+        {"tensor": [[1j] * 6] * 3},
+    ],
+)
+def test_a_call_refuses_axes_and_numbers_that_a_record_would_refuse(wrong: dict[str, Any]) -> None:
+    given: dict[str, Any] = {"tensor": np.ones((3, 6)), "order": "11 22 33 23 13 12", **wrong}
+    with pytest.raises(TensorInputError):
+        sitesym.audit(given.pop("tensor"), "32", "piezoelectric-strain", **given)
+
+
+@pytest.mark.parametrize("symbol", ["4/mmm", "-3m", "3m"])
+def test_a_turn_about_the_main_axis_is_no_other_crystal(symbol: str) -> None:
+    """A stiffness of class 4/m or -3 is one of class 4/mmm or -3m in axes turned about z."""
+    from sitesym.tensors import to_full
+
+    elastic = kind("elastic-stiffness")
+    group = PointGroup.from_symbol(symbol)
+    angle = np.radians(17.0)
+    turn = np.array([[np.cos(angle), -np.sin(angle), 0], [np.sin(angle), np.cos(angle), 0], [0, 0, 1]])
+    rows = [[270, 175, 147, 9, 0, 0], [175, 270, 147, -9, 0, 0], [147, 147, 480, 0, 0, 0]]
+    rows += [[9, -9, 0, 124, 0, 0], [0, 0, 0, 0, 124, 9], [0, 0, 0, 0, 9, 47.5]]
+    if symbol == "4/mmm":
+        rows = [[270, 175, 147, 0, 0, 0], [175, 270, 147, 0, 0, 0], [147, 147, 480, 0, 0, 0]]
+        rows += [[0, 0, 0, 124, 0, 0], [0, 0, 0, 0, 124, 0], [0, 0, 0, 0, 0, 193]]
+    values = to_matrix(elastic, turned(to_full(elastic, np.array(rows)), turn))
+    found = audit(Measurement("a", elastic, values, axes="ieee"), group)
+    assert (found.verdict, found.cause) == ("consistent-otherwise", "reading")
